@@ -1,0 +1,49 @@
+//! The commands of the program, one file each.
+
+pub mod demo;
+pub mod folder;
+pub mod listen;
+pub mod serve;
+
+use std::process::ExitCode;
+
+use clap::{Parser, Subcommand};
+
+use crate::domain::failure::Failure;
+
+/// Batch and stability records of suspension products, from a formulation to a signed pull.
+#[derive(Parser)]
+#[command(name = "supernate", version, about, arg_required_else_help = true)]
+struct Arguments {
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Subcommand)]
+enum Command {
+    Serve(serve::Arguments),
+    Demo(demo::Arguments),
+}
+
+/// Runs the command of the arguments; 0 where it did what was asked, 1 where not, 2 where it was not understood.
+pub fn run() -> ExitCode {
+    let filter = tracing_subscriber::EnvFilter::try_from_default_env()
+        .unwrap_or_else(|_| tracing_subscriber::EnvFilter::new("info"));
+    tracing_subscriber::fmt().json().with_env_filter(filter).with_writer(std::io::stderr).init();
+    let outcome = match Arguments::parse().command {
+        Command::Serve(arguments) => serve::run(&arguments),
+        Command::Demo(arguments) => demo::run(&arguments),
+    };
+    match outcome {
+        Ok(()) => ExitCode::SUCCESS,
+        Err(failure) => {
+            tell(&failure);
+            ExitCode::FAILURE
+        }
+    }
+}
+
+#[allow(clippy::print_stderr)]
+fn tell(failure: &Failure) {
+    eprintln!("supernate: {failure}");
+}

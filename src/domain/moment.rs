@@ -1,0 +1,172 @@
+//! Instants in UTC with the site's zone, and calendar dates of the site.
+
+use chrono::{DateTime, Datelike, Days, Months, NaiveDate, Offset, SecondsFormat, TimeZone, Utc};
+use chrono_tz::Tz;
+
+/// An instant with the zone of the site, so that its calendar date and offset are known.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Moment {
+    pub utc: DateTime<Utc>,
+    pub zone: Tz,
+}
+
+impl Moment {
+    pub fn new(utc: DateTime<Utc>, zone: Tz) -> Moment {
+        Moment { utc, zone }
+    }
+
+    /// The instant as stored: UTC, milliseconds, `2026-12-01T13:06:23.000Z`. Sorts as text.
+    pub fn stored(&self) -> String {
+        self.utc.to_rfc3339_opts(SecondsFormat::Millis, true)
+    }
+
+    /// Reads what [`Moment::stored`] wrote.
+    pub fn from_stored(text: &str, zone: Tz) -> Option<Moment> {
+        let utc = DateTime::parse_from_rfc3339(text).ok()?.with_timezone(&Utc);
+        Some(Moment { utc, zone })
+    }
+
+    /// The calendar date of the site at this instant.
+    pub fn date(&self) -> NaiveDate {
+        self.utc.with_timezone(&self.zone).date_naive()
+    }
+
+    /// The site's offset from UTC at this instant, in minutes.
+    pub fn offset_minutes(&self) -> i32 {
+        self.utc.with_timezone(&self.zone).offset().fix().local_minus_utc() / 60
+    }
+
+    /// `3 Mar 2027, 09:05 (+01:00)`: site time with its offset, month in letters.
+    pub fn shown(&self) -> String {
+        let local = self.utc.with_timezone(&self.zone);
+        format!("{}, {} ({})", date_shown(local.date_naive()), local.format("%H:%M"), local.format("%:z"))
+    }
+
+    /// `14:32:07`, site time, for the save line.
+    pub fn clock_shown(&self) -> String {
+        self.utc.with_timezone(&self.zone).format("%H:%M:%S").to_string()
+    }
+
+    /// RFC 3339 in site time with the offset, for exports.
+    pub fn exported(&self) -> String {
+        self.utc.with_timezone(&self.zone).to_rfc3339_opts(SecondsFormat::Millis, false)
+    }
+
+    /// The instant of a wall-clock time of the site; at a clock change the earlier of two, the later of none.
+    pub fn of_site(date: NaiveDate, hour: u32, minute: u32, zone: Tz) -> Option<Moment> {
+        let local = date.and_hms_opt(hour, minute, 0)?;
+        let utc = match zone.from_local_datetime(&local) {
+            chrono::LocalResult::Single(found) => found.with_timezone(&Utc),
+            chrono::LocalResult::Ambiguous(earlier, _) => earlier.with_timezone(&Utc),
+            chrono::LocalResult::None => zone
+                .from_local_datetime(&(local + chrono::Duration::hours(1)))
+                .earliest()?
+                .with_timezone(&Utc),
+        };
+        Some(Moment { utc, zone })
+    }
+
+    pub fn plus_minutes(&self, minutes: i64) -> Moment {
+        Moment { utc: self.utc + chrono::Duration::minutes(minutes), zone: self.zone }
+    }
+
+    pub fn plus_seconds(&self, seconds: i64) -> Moment {
+        Moment { utc: self.utc + chrono::Duration::seconds(seconds), zone: self.zone }
+    }
+}
+
+/// `3 Mar 2027`: the one way a date is shown.
+pub fn date_shown(date: NaiveDate) -> String {
+    format!("{} {} {}", date.day(), date.format("%b"), date.year())
+}
+
+/// `2027-03-03`, as stored.
+pub fn date_stored(date: NaiveDate) -> String {
+    date.format("%Y-%m-%d").to_string()
+}
+
+pub fn date_from_stored(text: &str) -> Option<NaiveDate> {
+    NaiveDate::parse_from_str(text, "%Y-%m-%d").ok()
+}
+
+/// Adds calendar months; a day that does not exist becomes the last day of the month
+/// (31 Jan + 1 month = 28 or 29 Feb). Common practice for due dates.
+pub fn plus_months(date: NaiveDate, months: u32) -> NaiveDate {
+    date.checked_add_months(Months::new(months)).unwrap_or(date)
+}
+
+pub fn plus_days(date: NaiveDate, days: i64) -> NaiveDate {
+    let moved = if days >= 0 {
+        date.checked_add_days(Days::new(days.unsigned_abs()))
+    } else {
+        date.checked_sub_days(Days::new(days.unsigned_abs()))
+    };
+    moved.unwrap_or(date)
+}
+
+/// `2 days late`, `closes today`, `closes in 3 days`: always shown beside the date itself.
+pub fn until_shown(today: NaiveDate, last_day: NaiveDate) -> String {
+    match (last_day - today).num_days() {
+        0 => "closes today 23:59".to_string(),
+        1 => "closes tomorrow 23:59".to_string(),
+        days if days > 1 => format!("closes in {days} days"),
+        -1 => "1 day late".to_string(),
+        days => format!("{} days late", -days),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn day(text: &str) -> NaiveDate {
+        date_from_stored(text).unwrap()
+    }
+
+    /// req_C14: due date by calendar months, clipped at the month's end, also in leap years.
+    #[test]
+    fn months_clip_at_the_end_of_the_month() {
+        let table = [
+            ("2026-01-31", 1, "2026-02-28"),
+            ("2028-01-31", 1, "2028-02-29"),
+            ("2026-08-31", 6, "2027-02-28"),
+            ("2027-08-31", 6, "2028-02-29"),
+            ("2028-02-29", 12, "2029-02-28"),
+            ("2026-12-01", 3, "2027-03-01"),
+            ("2026-11-30", 3, "2027-02-28"),
+            ("2026-10-31", 18, "2028-04-30"),
+            ("2026-05-15", 36, "2029-05-15"),
+        ];
+        for (start, months, expected) in table {
+            assert_eq!(plus_months(day(start), months), day(expected), "{start} + {months}");
+        }
+    }
+
+    #[test]
+    fn the_date_is_the_sites_date_and_the_offset_is_shown() {
+        let utc = "2026-06-30T23:30:00Z".parse::<DateTime<Utc>>().unwrap();
+        let moment = Moment::new(utc, chrono_tz::Europe::London);
+        assert_eq!(moment.date(), day("2026-07-01"));
+        assert_eq!(moment.shown(), "1 Jul 2026, 00:30 (+01:00)");
+        assert_eq!(moment.offset_minutes(), 60);
+        assert_eq!(Moment::from_stored(&moment.stored(), moment.zone), Some(moment));
+    }
+
+    #[test]
+    fn the_hour_that_does_not_exist_and_the_hour_that_exists_twice_have_one_instant() {
+        let zone = chrono_tz::Europe::London;
+        let missing = Moment::of_site(day("2026-03-29"), 1, 30, zone).unwrap();
+        assert_eq!(missing.stored(), "2026-03-29T01:30:00.000Z");
+        let twice = Moment::of_site(day("2026-10-25"), 1, 30, zone).unwrap();
+        assert_eq!(twice.stored(), "2026-10-25T00:30:00.000Z");
+    }
+
+    #[test]
+    fn relative_words_count_site_days() {
+        let today = day("2026-12-01");
+        assert_eq!(until_shown(today, day("2026-12-01")), "closes today 23:59");
+        assert_eq!(until_shown(today, day("2026-12-02")), "closes tomorrow 23:59");
+        assert_eq!(until_shown(today, day("2026-12-05")), "closes in 4 days");
+        assert_eq!(until_shown(today, day("2026-11-29")), "2 days late");
+    }
+}

@@ -1,0 +1,111 @@
+//! What an act or a signature is about.
+
+/// The kind of a record that has its own history, signature or address.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+pub enum Kind {
+    Site,
+    Account,
+    Customer,
+    Product,
+    Presentation,
+    Material,
+    Formulation,
+    FormulationVersion,
+    Method,
+    MethodVersion,
+    Specification,
+    SpecificationVersion,
+    ShelfLife,
+    Instrument,
+    Lot,
+    Condition,
+    Chamber,
+    Protocol,
+    ProtocolVersion,
+    Study,
+    Pull,
+    Sample,
+    Investigation,
+    Import,
+}
+
+impl Kind {
+    pub const ALL: [Kind; 24] = [
+        Kind::Site,
+        Kind::Account,
+        Kind::Customer,
+        Kind::Product,
+        Kind::Presentation,
+        Kind::Material,
+        Kind::Formulation,
+        Kind::FormulationVersion,
+        Kind::Method,
+        Kind::MethodVersion,
+        Kind::Specification,
+        Kind::SpecificationVersion,
+        Kind::ShelfLife,
+        Kind::Instrument,
+        Kind::Lot,
+        Kind::Condition,
+        Kind::Chamber,
+        Kind::Protocol,
+        Kind::ProtocolVersion,
+        Kind::Study,
+        Kind::Pull,
+        Kind::Sample,
+        Kind::Investigation,
+        Kind::Import,
+    ];
+
+    /// The table of the record, and the word stored beside its number.
+    pub fn code(self) -> &'static str {
+        match self {
+            Kind::Site => "site",
+            Kind::Account => "account",
+            Kind::Customer => "customer",
+            Kind::Product => "product",
+            Kind::Presentation => "presentation",
+            Kind::Material => "material",
+            Kind::Formulation => "formulation",
+            Kind::FormulationVersion => "formulation_version",
+            Kind::Method => "method",
+            Kind::MethodVersion => "method_version",
+            Kind::Specification => "specification",
+            Kind::SpecificationVersion => "specification_version",
+            Kind::ShelfLife => "shelf_life_assignment",
+            Kind::Instrument => "instrument",
+            Kind::Lot => "lot",
+            Kind::Condition => "condition",
+            Kind::Chamber => "chamber",
+            Kind::Protocol => "protocol",
+            Kind::ProtocolVersion => "protocol_version",
+            Kind::Study => "study",
+            Kind::Pull => "pull",
+            Kind::Sample => "sample",
+            Kind::Investigation => "investigation",
+            Kind::Import => "import",
+        }
+    }
+
+    pub fn from_code(code: &str) -> Option<Kind> {
+        Kind::ALL.into_iter().find(|kind| kind.code() == code)
+    }
+
+    /// The kind in words, for a page.
+    pub fn words(self) -> String {
+        self.code().replace('_', " ")
+    }
+}
+
+/// One record by kind and number.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub struct Subject {
+    pub kind: Kind,
+    pub id: i64,
+}
+
+impl Subject {
+    pub fn new(kind: Kind, id: i64) -> Subject {
+        Subject { kind, id }
+    }
+}

@@ -1,0 +1,1 @@
+//! Facts become documents and drawings: charts, tables, the lot file. Pure.

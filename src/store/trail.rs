@@ -1,0 +1,414 @@
+//! The trail: SQL functions and generated triggers that leave a line per changed record, and the chain over acts.
+
+use std::sync::Arc;
+use std::sync::atomic::Ordering;
+
+use rusqlite::functions::{Context, FunctionFlags};
+use rusqlite::types::ValueRef;
+use rusqlite::{Connection, Row, named_params};
+
+use super::door::{Change, Current};
+use super::{Answer, Reader};
+use crate::domain::act::Act;
+use crate::domain::digest::{Encoder, sha256};
+use crate::domain::reason::Reason;
+use crate::domain::subject::Subject;
+
+/// Tables without a trail of their own (decision B3); `tests/house` holds the list.
+pub const TECHNICAL_TABLES: [&str; 11] = [
+    "trail_act",
+    "trail_change",
+    "trail_seal",
+    "trail_subject",
+    "session",
+    "sign_in_counter",
+    "draft",
+    "submission_key",
+    "reading_log",
+    "counter",
+    "refinery_schema_history",
+];
+
+/// Trailed tables whose rows may be updated: accounts and codes, and versions until they are signed.
+/// Every other trailed table is insert-only.
+pub const UPDATABLE_TABLES: [&str; 6] = [
+    "account",
+    "account_code",
+    "formulation_version",
+    "method_version",
+    "specification_version",
+    "protocol_version",
+];
+
+/// Registers what triggers and verification call.
+pub(in crate::store) fn register_functions(connection: &Connection, current: &Arc<Current>) -> Answer<()> {
+    let plain = FunctionFlags::SQLITE_UTF8 | FunctionFlags::SQLITE_INNOCUOUS;
+    let pure = plain | FunctionFlags::SQLITE_DETERMINISTIC;
+    let act = Arc::clone(current);
+    connection.create_scalar_function("current_act", 0, plain, move |_| {
+        match act.act.load(Ordering::SeqCst) {
+            0 => Err(rusqlite::Error::UserFunctionError("records change only inside an act".into())),
+            act => Ok(act),
+        }
+    })?;
+    let line = Arc::clone(current);
+    connection.create_scalar_function("next_line", 0, plain, move |_| {
+        Ok(line.line.fetch_add(1, Ordering::SeqCst) + 1)
+    })?;
+    connection.create_scalar_function("row_digest", -1, pure, |context| Ok(row_digest(context).to_vec()))?;
+    connection.create_scalar_function("changed_fields", -1, pure, |context| Ok(changed_fields(context)))?;
+    Ok(())
+}
+
+/// SHA-256 over (column, type, value) of the non-null columns sorted by name; arguments come in pairs.
+fn row_digest(context: &Context<'_>) -> [u8; 32] {
+    let mut columns: Vec<(&str, ValueRef<'_>)> = (0..context.len() / 2)
+        .filter_map(|pair| {
+            let name = context.get_raw(pair * 2).as_str().ok()?;
+            Some((name, context.get_raw(pair * 2 + 1)))
+        })
+        .filter(|(_, value)| !matches!(value, ValueRef::Null))
+        .collect();
+    columns.sort_by_key(|(name, _)| *name);
+    let mut encoder = Encoder::new();
+    for (name, value) in columns {
+        encoder.text(name);
+        encode(&mut encoder, value);
+    }
+    encoder.digest()
+}
+
+fn encode(encoder: &mut Encoder, value: ValueRef<'_>) {
+    match value {
+        ValueRef::Null => encoder.null(),
+        ValueRef::Integer(number) => encoder.integer(number),
+        ValueRef::Real(number) => encoder.real(number),
+        ValueRef::Text(bytes) => encoder.text(&String::from_utf8_lossy(bytes)),
+        ValueRef::Blob(bytes) => encoder.blob(bytes),
+    };
+}
+
+/// JSON of the fields that differ; arguments come in threes: column, old, new. A hash is never written out.
+fn changed_fields(context: &Context<'_>) -> String {
+    let mut fields = serde_json::Map::new();
+    for at in (0..context.len()).step_by(3) {
+        let (old, new) = (context.get_raw(at + 1), context.get_raw(at + 2));
+        if old == new {
+            continue;
+        }
+        let name = context.get_raw(at).as_str().unwrap_or_default();
+        let pair = if name.ends_with("_hash") || name.ends_with("_digest") {
+            serde_json::json!(["kept from the trail", "kept from the trail"])
+        } else {
+            serde_json::json!([as_json(old), as_json(new)])
+        };
+        fields.insert(name.to_string(), pair);
+    }
+    serde_json::Value::Object(fields).to_string()
+}
+
+fn as_json(value: ValueRef<'_>) -> serde_json::Value {
+    match value {
+        ValueRef::Null => serde_json::Value::Null,
+        ValueRef::Integer(number) => number.into(),
+        ValueRef::Real(number) => number.into(),
+        ValueRef::Text(bytes) => String::from_utf8_lossy(bytes).into(),
+        ValueRef::Blob(bytes) => crate::domain::digest::hex(bytes).into(),
+    }
+}
+
+/// The trailed tables with their columns, in the order of their names.
+pub(in crate::store) fn trailed_tables(connection: &Connection) -> Answer<Vec<(String, Vec<String>)>> {
+    let reader = Reader::over(connection);
+    let names = reader.all(
+        "select name from sqlite_schema
+         where type = 'table' and name not like 'sqlite\\_%' escape '\\'
+         order by name",
+        [],
+        |row| row.get::<_, String>(0),
+    )?;
+    let mut tables = Vec::new();
+    for name in names.into_iter().filter(|name| !TECHNICAL_TABLES.contains(&name.as_str())) {
+        let columns = reader.all(
+            "select name from pragma_table_info(:table) order by name",
+            named_params! { ":table": name },
+            |row| row.get::<_, String>(0),
+        )?;
+        tables.push((name, columns));
+    }
+    Ok(tables)
+}
+
+pub(in crate::store) fn drop_triggers(connection: &Connection) -> Answer<()> {
+    let names = Reader::over(connection).all(
+        "select name from sqlite_schema where type = 'trigger' and name like 'trail\\_%' escape '\\'",
+        [],
+        |row| row.get::<_, String>(0),
+    )?;
+    for name in names {
+        connection.execute_batch(&format!("drop trigger {name}"))?;
+    }
+    Ok(())
+}
+
+/// Makes the triggers of every trailed table. Names come from the schema itself, never from a person.
+pub(in crate::store) fn make_triggers(connection: &Connection) -> Answer<()> {
+    for (table, columns) in trailed_tables(connection)? {
+        let pairs = columns.iter().map(|name| format!("'{name}', new.{name}")).collect::<Vec<_>>().join(", ");
+        let threes = columns
+            .iter()
+            .map(|name| format!("'{name}', old.{name}, new.{name}"))
+            .collect::<Vec<_>>()
+            .join(", ");
+        connection.execute_batch(&format!(
+            "create trigger trail_insert_{table} after insert on {table} begin
+                 insert into trail_change (act, line, record, row, kind, digest)
+                 values (current_act(), next_line(), '{table}', new.id, 'insert', row_digest({pairs}));
+             end;
+             create trigger trail_delete_{table} before delete on {table} begin
+                 select raise(abort, 'records are never deleted');
+             end;"
+        ))?;
+        let update = if UPDATABLE_TABLES.contains(&table.as_str()) {
+            format!(
+                "create trigger trail_update_{table} after update on {table} begin
+                     select case when new.id <> old.id then raise(abort, 'numbers never change') end;
+                     insert into trail_change (act, line, record, row, kind, digest, changes)
+                     values (current_act(), next_line(), '{table}', new.id, 'update', row_digest({pairs}),
+                         changed_fields({threes}));
+                 end;"
+            )
+        } else {
+            format!(
+                "create trigger trail_update_{table} before update on {table} begin
+                     select raise(abort, 'observations are never changed; a correction is a new row');
+                 end;"
+            )
+        };
+        connection.execute_batch(&update)?;
+    }
+    Ok(())
+}
+
+pub(in crate::store) fn next_act(reader: &Reader<'_>) -> Answer<i64> {
+    reader.one("act", "select coalesce(max(id), 0) + 1 from trail_act", [], |row| row.get(0))
+}
+
+pub(in crate::store) fn insert_act(
+    change: &Change<'_>,
+    act: Act,
+    role: Option<&str>,
+    reason: &Reason,
+    detail: Option<&str>,
+    outcome: &str,
+) -> Answer<()> {
+    let actor = change.actor();
+    change.insert(
+        "insert into trail_act (id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail,
+             reason, session, address, outcome)
+         values (:id, :at, :offset, :zone, :account, :user_name, :full_name, :role, :act, :detail,
+             :reason, :session, :address, :outcome)",
+        named_params! {
+            ":id": change.act(),
+            ":at": actor.at.stored(),
+            ":offset": actor.at.offset_minutes(),
+            ":zone": actor.at.zone.name(),
+            ":account": actor.account,
+            ":user_name": actor.user_name,
+            ":full_name": actor.full_name,
+            ":role": role,
+            ":act": act.code(),
+            ":detail": detail,
+            ":reason": reason.text(),
+            ":session": actor.session,
+            ":address": actor.address,
+            ":outcome": outcome,
+        },
+    )?;
+    Ok(())
+}
+
+pub(in crate::store) fn concerns(change: &Change<'_>, subject: Subject) -> Answer<()> {
+    change.execute(
+        "insert into trail_subject (kind, subject, act)
+         values (:kind, :subject, :act)
+         on conflict do nothing",
+        named_params! { ":kind": subject.kind.code(), ":subject": subject.id, ":act": change.act() },
+    )?;
+    Ok(())
+}
+
+/// The chain before its first entry: the digest of the word itself, the same for every site. The site's uuid
+/// enters with the first act.
+pub fn chain_start() -> [u8; 32] {
+    sha256(b"supernate trail 1")
+}
+
+/// Closes the act: entry bytes chained to the seal before.
+pub(in crate::store) fn seal(change: &Change<'_>) -> Answer<()> {
+    let act = change.act();
+    let before = seal_of(change, act - 1)?.unwrap_or_else(chain_start);
+    let digest = link(&before, &entry_bytes(change, act)?);
+    change.insert(
+        "insert into trail_seal (act, digest) values (:act, :digest)",
+        named_params! { ":act": act, ":digest": digest },
+    )?;
+    Ok(())
+}
+
+/// hᵢ = SHA-256(0x02 ‖ hᵢ₋₁ ‖ entryᵢ), decision B1.
+pub(in crate::store) fn link(before: &[u8; 32], entry: &[u8]) -> [u8; 32] {
+    let mut bytes = Vec::with_capacity(33 + entry.len());
+    bytes.push(2);
+    bytes.extend_from_slice(before);
+    bytes.extend_from_slice(entry);
+    sha256(&bytes)
+}
+
+pub(in crate::store) fn seal_of(reader: &Reader<'_>, act: i64) -> Answer<Option<[u8; 32]>> {
+    reader.maybe("select digest from trail_seal where act = :act", named_params! { ":act": act }, |row| {
+        row.get(0)
+    })
+}
+
+/// The bytes of one chain entry: the act's row, then its lines in order.
+pub(in crate::store) fn entry_bytes(reader: &Reader<'_>, act: i64) -> Answer<Vec<u8>> {
+    let mut encoder = Encoder::new();
+    reader.one(
+        "act",
+        "select id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail, reason, session,
+             address, outcome
+         from trail_act where id = :act",
+        named_params! { ":act": act },
+        |row| encode_row(&mut encoder, row, 14),
+    )?;
+    let lines = reader.all(
+        "select line, record, row, kind, digest, changes from trail_change where act = :act order by line",
+        named_params! { ":act": act },
+        |row| encode_row(&mut encoder, row, 6),
+    )?;
+    encoder.integer(lines.len() as i64);
+    Ok(encoder.bytes().to_vec())
+}
+
+fn encode_row(encoder: &mut Encoder, row: &Row<'_>, columns: usize) -> rusqlite::Result<()> {
+    for column in 0..columns {
+        encode(encoder, row.get_ref(column)?);
+    }
+    Ok(())
+}
+
+/// One act as a history shows it.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct ActLine {
+    pub act: i64,
+    /// As stored: UTC.
+    pub at: String,
+    pub user_name: String,
+    pub full_name: String,
+    pub role: Option<String>,
+    pub code: String,
+    pub detail: Option<String>,
+    pub reason: Option<String>,
+    pub outcome: String,
+    pub digest: String,
+}
+
+const ACT_COLUMNS: &str =
+    "a.id, a.at, a.user_name, a.full_name, a.role, a.act, a.detail, a.reason, a.outcome,
+    lower(hex(s.digest))";
+
+fn act_line(row: &Row<'_>) -> rusqlite::Result<ActLine> {
+    Ok(ActLine {
+        act: row.get(0)?,
+        at: row.get(1)?,
+        user_name: row.get(2)?,
+        full_name: row.get(3)?,
+        role: row.get(4)?,
+        code: row.get(5)?,
+        detail: row.get(6)?,
+        reason: row.get(7)?,
+        outcome: row.get(8)?,
+        digest: row.get(9)?,
+    })
+}
+
+/// The history of one record, oldest first.
+pub fn of_subject(reader: &Reader<'_>, subject: Subject) -> Answer<Vec<ActLine>> {
+    reader.all(
+        &format!(
+            "select {ACT_COLUMNS}
+             from trail_subject t join trail_act a on a.id = t.act join trail_seal s on s.act = a.id
+             where t.kind = :kind and t.subject = :subject
+             order by a.id"
+        ),
+        named_params! { ":kind": subject.kind.code(), ":subject": subject.id },
+        act_line,
+    )
+}
+
+/// One act.
+pub fn act(reader: &Reader<'_>, act: i64) -> Answer<ActLine> {
+    reader.one(
+        "act with this number",
+        &format!("select {ACT_COLUMNS} from trail_act a join trail_seal s on s.act = a.id where a.id = :act"),
+        named_params! { ":act": act },
+        act_line,
+    )
+}
+
+/// The newest acts before one, newest first: a page of the whole trail.
+pub fn before(reader: &Reader<'_>, before: Option<i64>, limit: i64) -> Answer<Vec<ActLine>> {
+    reader.all(
+        &format!(
+            "select {ACT_COLUMNS}
+             from trail_act a join trail_seal s on s.act = a.id
+             where a.id < coalesce(:before, 9223372036854775807)
+             order by a.id desc
+             limit :limit"
+        ),
+        named_params! { ":before": before, ":limit": limit },
+        act_line,
+    )
+}
+
+/// One changed record inside an act.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct ChangeLine {
+    pub record: String,
+    pub row: i64,
+    pub kind: String,
+    pub digest: String,
+    pub changes: Option<String>,
+}
+
+pub fn changes_of(reader: &Reader<'_>, act: i64) -> Answer<Vec<ChangeLine>> {
+    reader.all(
+        "select record, row, kind, lower(hex(digest)), changes
+         from trail_change
+         where act = :act
+         order by line",
+        named_params! { ":act": act },
+        |row| {
+            Ok(ChangeLine {
+                record: row.get(0)?,
+                row: row.get(1)?,
+                kind: row.get(2)?,
+                digest: row.get(3)?,
+                changes: row.get(4)?,
+            })
+        },
+    )
+}
+
+/// The instant of the newest act, to notice a clock that was set back.
+pub fn newest_at(reader: &Reader<'_>) -> Answer<Option<String>> {
+    reader.maybe("select at from trail_act order by id desc limit 1", [], |row| row.get(0))
+}
+
+/// The newest act and its seal: the head of the chain.
+pub fn head(reader: &Reader<'_>) -> Answer<Option<(i64, String)>> {
+    reader.maybe("select act, lower(hex(digest)) from trail_seal order by act desc limit 1", [], |row| {
+        Ok((row.get(0)?, row.get(1)?))
+    })
+}

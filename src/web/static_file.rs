@@ -1,0 +1,43 @@
+//! The style sheet and the script module, served under an address that holds their digest.
+
+use std::sync::LazyLock;
+
+use super::reply::{Outcome, Reply};
+use super::route::{Route, public};
+use super::visit::Visit;
+use crate::domain::digest::sha256_hex;
+use crate::domain::failure::Failure;
+
+pub const ROUTES: &[Route] = &[public("/static/{digest}/{name}", file)];
+
+const FILES: [(&str, &str, &str); 3] = [
+    ("mark.svg", "image/svg+xml", include_str!("../../templates/static/mark.svg")),
+    ("look.css", "text/css; charset=utf-8", include_str!("../../templates/static/look.css")),
+    ("supernate.mjs", "text/javascript; charset=utf-8", include_str!("../../templates/static/supernate.mjs")),
+];
+
+static DIGESTS: LazyLock<Vec<String>> = LazyLock::new(|| {
+    FILES.iter().map(|(_, _, text)| sha256_hex(text.as_bytes())[..16].to_string()).collect()
+});
+
+/// The address of a file: `/static/<digest>/<name>`, cached for ever.
+pub fn address(name: &str) -> String {
+    let digest =
+        FILES.iter().zip(DIGESTS.iter()).find(|((known, _, _), _)| *known == name).map(|(_, digest)| digest);
+    format!("/static/{}/{name}", digest.map(String::as_str).unwrap_or_default())
+}
+
+fn file(visit: &Visit) -> Outcome {
+    let name = visit.param("name")?;
+    let found = FILES.iter().find(|(known, _, _)| *known == name);
+    let (name, media_type, text) = found.ok_or_else(|| Failure::missing("file with this name"))?;
+    if address(name) != visit.path {
+        return Err(Failure::missing("file with this digest"));
+    }
+    Ok(Reply::File {
+        media_type,
+        name: name.to_string(),
+        bytes: text.as_bytes().to_vec(),
+        is_attachment: false,
+    })
+}

@@ -1,0 +1,7 @@
+//! Stories: what people do, through the router.
+
+#[path = "../support/mod.rs"]
+mod support;
+
+mod people;
+mod trail;

@@ -1,0 +1,82 @@
+//! The one door: what it lets through, what it writes down, what it refuses.
+
+use crate::support::Lab;
+use supernate::domain::act::Act;
+use supernate::domain::failure::Failure;
+use supernate::domain::reason::Reason;
+use supernate::store;
+
+#[test]
+fn the_same_submit_five_times_makes_one_record() {
+    let lab = Lab::new();
+    let person = lab.administrator();
+    let page = format!("/people/{}", lab.actor("ilse.brandt").account);
+    let mut pairs = person.get(&page).form(&format!("{page}/state"));
+    pairs.retain(|(name, _)| name != "why");
+    pairs.push(("why".to_string(), "left the company today".to_string()));
+    let before = acts_named(&lab, "DisableAccount");
+    let answers: Vec<_> = (0..5).map(|_| person.posts(&format!("{page}/state"), &pairs)).collect();
+    for answer in &answers {
+        assert_eq!((answer.status, answer.location.clone()), (303, Some(page.clone())), "{}", answer.text());
+    }
+    assert_eq!(acts_named(&lab, "DisableAccount"), before + 1);
+    pairs.retain(|(name, _)| name != "why");
+    pairs.push(("why".to_string(), "for quite another reason".to_string()));
+    assert_eq!(person.posts(&format!("{page}/state"), &pairs).status, 409);
+}
+
+fn acts_named(lab: &Lab, code: &str) -> usize {
+    let lines = lab.app.db.read(|reader| store::trail::before(reader, None, 10_000)).unwrap();
+    lines.iter().filter(|line| line.code == code).count()
+}
+
+#[test]
+fn an_act_that_fails_leaves_nothing_behind() {
+    let lab = Lab::new();
+    let actor = lab.actor("nell.farrow");
+    let before = lab.app.db.read(store::trail::head).unwrap();
+    let outcome: Result<(), Failure> =
+        lab.app.db.change(&actor, Act::ChangeSetting, &Reason::none(), |change| {
+            store::setting::set(change, "site.greeting", "hello")?;
+            Err(Failure::missing("thing"))
+        });
+    assert!(outcome.is_err());
+    assert_eq!(lab.app.db.read(store::trail::head).unwrap(), before);
+    assert_eq!(lab.app.db.read(|reader| store::setting::get(reader, "site.greeting")).unwrap(), None);
+}
+
+#[test]
+fn another_program_cannot_write_to_the_file() {
+    let lab = Lab::new();
+    let file = lab.folder.0.join("supernate.sqlite");
+    let other = rusqlite::Connection::open(&file).unwrap();
+    let error = other.execute("insert into setting (name, value) values ('a', 'b')", []).unwrap_err();
+    assert!(error.to_string().contains("current_act"), "{error}");
+    for statement in [
+        "update trail_act set reason = 'x'",
+        "delete from trail_seal",
+        "update trail_change set digest = x'00'",
+        "delete from account",
+        "update account_roles set roles = 'administrator'",
+    ] {
+        assert!(other.execute(statement, []).is_err(), "{statement}");
+    }
+}
+
+#[test]
+fn every_change_of_an_act_has_its_line_and_secrets_stay_out_of_it() {
+    let lab = Lab::new();
+    let page = "/me";
+    lab.analyst().does(
+        page,
+        "/me/password",
+        &[("present", crate::support::PASSWORD), ("password", "seven slow barges on the canal")],
+    );
+    let lines = lab.app.db.read(|reader| store::trail::before(reader, None, 1)).unwrap();
+    assert_eq!(lines[0].code, "ChangePassword");
+    let changes = lab.app.db.read(|reader| store::trail::changes_of(reader, lines[0].act)).unwrap();
+    assert_eq!(changes.len(), 1);
+    assert_eq!(changes[0].record, "account");
+    let fields = changes[0].changes.clone().unwrap();
+    assert!(fields.contains("password_hash") && !fields.contains("argon2"), "{fields}");
+}
