@@ -1,10 +1,37 @@
 //! What people do, one function per act: load, decide, store. No SQL here, no HTTP, no rule.
 
 pub mod account;
+pub mod attachment;
+pub mod chamber;
+pub mod check;
+pub mod condition;
+pub mod container;
+pub mod formulation;
+pub mod import;
+pub mod instrument;
+pub mod investigation;
+pub mod lot;
+pub mod lot_decision;
+pub mod lot_file;
+pub mod material;
+pub mod method;
+pub mod product;
+pub mod protocol;
+pub mod pull;
+pub mod qualification;
+pub mod reading;
+pub mod result;
+pub mod review;
+pub mod sample;
 pub mod secret;
 pub mod session;
 pub mod setting;
+pub mod shelf_life;
 pub mod sign_in;
 pub mod signature;
 pub mod site;
+pub mod specification;
+pub mod stage;
+pub mod study;
+pub mod verify;
 pub mod version;

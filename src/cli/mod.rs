@@ -1,9 +1,16 @@
 //! The commands of the program, one file each.
 
+pub mod account;
+pub mod backup;
 pub mod demo;
 pub mod folder;
+pub mod identity;
+pub mod import;
 pub mod listen;
+pub mod lot_file;
+pub mod restore;
 pub mod serve;
+pub mod verify;
 
 use std::process::ExitCode;
 

@@ -1,1 +1,8 @@
 //! Facts become documents and drawings: charts, tables, the lot file. Pure.
+
+pub mod chart;
+pub mod cylinder;
+pub mod export;
+pub mod lot_file;
+pub mod table;
+pub mod zip;

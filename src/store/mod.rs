@@ -1,15 +1,46 @@
 //! The only room that speaks SQL: one writer behind the one door, a few read-only connections.
 
 pub mod account;
+pub mod attachment;
+pub mod chamber;
+pub mod check;
+pub mod condition;
+pub mod container;
 pub mod door;
+pub mod find;
+pub mod flag;
+pub mod formulation;
+pub mod import;
+pub mod instrument;
+pub mod investigation;
+pub mod lot;
+pub mod lot_decision;
+pub mod lot_file;
+pub mod material;
+pub mod method;
 pub mod migrate;
+pub mod product;
+pub mod protocol;
+pub mod pull;
+pub mod qualification;
+pub mod reading;
+pub mod result;
+pub mod review;
+pub mod sample;
+pub mod series;
 pub mod session;
 pub mod setting;
+pub mod shelf_life;
 pub mod signature;
 pub mod site;
+pub mod specification;
+pub mod stage;
+pub mod study;
 pub mod submission;
 pub mod trail;
+pub mod verify;
 pub mod version;
+pub mod week;
 
 use rusqlite::types::{FromSql, ToSql, ToSqlOutput, ValueRef};
 use rusqlite::{Connection, OptionalExtension, Params, Row};

@@ -3,5 +3,30 @@
 #[path = "../support/mod.rs"]
 mod support;
 
+mod attachments;
+mod backups;
+mod benches;
+mod checks;
+mod conflicts;
+mod definitions;
+mod demos;
+mod formulations;
+mod imports;
+mod instruments;
+mod investigations;
+mod judgements;
+mod lot_decisions;
+mod lot_files;
+mod lots;
+mod methods;
 mod people;
+mod protocols;
+mod redispersions;
+mod reviews;
+mod searches;
+mod sedimentations;
+mod specifications;
+mod studies;
 mod trail;
+mod verification;
+mod weeks;

@@ -1,0 +1,1 @@
+//! Formulations and their versions.

@@ -1,0 +1,1 @@
+//! Instruments: calibration, daily checks, in and out of service.

@@ -1,0 +1,1 @@
+//! Investigations of results out of specification.

@@ -1,0 +1,1 @@
+//! Methods and their versions.

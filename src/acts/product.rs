@@ -1,0 +1,1 @@
+//! Products, their presentations and customers.

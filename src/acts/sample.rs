@@ -1,0 +1,1 @@
+//! Samples: every test hangs on one.

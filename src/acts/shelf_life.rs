@@ -1,0 +1,1 @@
+//! Assigned shelf lives.

@@ -1,0 +1,1 @@
+//! Specifications and their versions.

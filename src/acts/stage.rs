@@ -1,0 +1,1 @@
+//! The stages of a container at the bench.

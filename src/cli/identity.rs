@@ -1,0 +1,1 @@
+//! Whose act a command is.

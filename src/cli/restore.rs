@@ -1,0 +1,1 @@
+//! Restoring a backup.

@@ -1,0 +1,1 @@
+//! Chambers: where containers stand.

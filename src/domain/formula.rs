@@ -1,0 +1,1 @@
+//! Formulas of numeric tests in exact decimals.

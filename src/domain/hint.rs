@@ -1,0 +1,1 @@
+//! Checks of a reading while it can still be read again.

@@ -1,0 +1,1 @@
+//! From readings to a reportable value and its verdict.

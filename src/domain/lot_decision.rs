@@ -1,0 +1,1 @@
+//! Release or rejection of a lot.

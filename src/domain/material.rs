@@ -1,0 +1,1 @@
+//! Materials: what a formulation is made of.

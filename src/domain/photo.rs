@@ -1,0 +1,1 @@
+//! Three clicks on a photo.

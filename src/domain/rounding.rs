@@ -1,0 +1,1 @@
+//! Rounding of exact decimals.

@@ -1,0 +1,1 @@
+//! Studies: a lot ageing by a protocol.

@@ -1,0 +1,1 @@
+//! Whether a result agrees with the trend of its lot.

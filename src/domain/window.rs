@@ -1,0 +1,1 @@
+//! When a pull may be taken.

@@ -1,0 +1,1 @@
+//! Trend charts as SVG.

@@ -1,0 +1,1 @@
+//! The little cylinder: sediment, clarity, inversions.

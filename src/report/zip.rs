@@ -1,0 +1,1 @@
+//! The lot file as one archive.

@@ -1,0 +1,1 @@
+//! Containers on study and their ledger.

@@ -1,0 +1,1 @@
+//! Finding lots and records.

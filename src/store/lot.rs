@@ -1,0 +1,1 @@
+//! Lots: what was made.

@@ -1,0 +1,1 @@
+//! Protocols and their versions.

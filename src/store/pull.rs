@@ -1,0 +1,1 @@
+//! Pulls: ages that come due, their windows and what happened to them.

@@ -1,0 +1,1 @@
+//! Who is qualified for which method, until when.

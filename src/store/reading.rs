@@ -1,0 +1,1 @@
+//! Readings: observations at the bench.

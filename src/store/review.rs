@@ -1,0 +1,1 @@
+//! The review of a pull and its signature.

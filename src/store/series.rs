@@ -1,0 +1,1 @@
+//! The results of one test over ages, for charts.

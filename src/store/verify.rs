@@ -1,0 +1,1 @@
+//! Verification of chain, seals, rows and signatures.

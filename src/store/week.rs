@@ -1,0 +1,1 @@
+//! The lab manager’s week.

@@ -1,0 +1,5 @@
+//! Photos and files.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

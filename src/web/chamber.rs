@@ -1,0 +1,5 @@
+//! Chambers: where containers stand.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Storage conditions.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! The index of definitions.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

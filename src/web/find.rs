@@ -1,0 +1,5 @@
+//! Finding lots and records.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Imported results.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

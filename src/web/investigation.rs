@@ -1,0 +1,5 @@
+//! Investigations of results out of specification.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Lots: what was made.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Release or rejection of a lot.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

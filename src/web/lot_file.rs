@@ -1,0 +1,5 @@
+//! Everything about one lot.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Methods and their versions.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Protocols and their versions.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

@@ -1,0 +1,5 @@
+//! Assigned shelf lives.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

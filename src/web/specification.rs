@@ -1,0 +1,5 @@
+//! Specifications and their versions.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];

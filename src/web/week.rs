@@ -1,0 +1,5 @@
+//! The lab manager’s week.
+
+use super::route::Route;
+
+pub const ROUTES: &[Route] = &[];
