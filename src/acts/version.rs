@@ -1,7 +1,6 @@
 //! Writing, signing and approving a version of a definition: the same life for all four kinds.
 
 use super::signature::{Approval, Authorship, Signed};
-use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::{Failure, Stale};
 use crate::domain::reason::Reason;
@@ -13,26 +12,6 @@ use crate::store;
 use crate::store::door::{Change, Db};
 use crate::store::version::Version;
 
-/// The act of writing a version of this kind.
-fn draft_act(of: Versioned) -> Act {
-    match of {
-        Versioned::Formulation => Act::DraftFormulationVersion,
-        Versioned::Method => Act::DraftMethodVersion,
-        Versioned::Specification => Act::DraftSpecificationVersion,
-        Versioned::Protocol => Act::DraftProtocolVersion,
-    }
-}
-
-/// The act of signing or approving a version of this kind.
-pub fn sign_act(of: Versioned) -> Act {
-    match of {
-        Versioned::Formulation => Act::SignFormulationVersion,
-        Versioned::Method => Act::ApproveMethodVersion,
-        Versioned::Specification => Act::ApproveSpecificationVersion,
-        Versioned::Protocol => Act::ApproveProtocolVersion,
-    }
-}
-
 /// What is written into a version: why it exists and its canonical JSON.
 #[derive(Clone, Debug)]
 pub struct Written {
@@ -42,7 +21,7 @@ pub struct Written {
 
 /// Starts the next version of a definition as a draft. One draft at a time.
 pub fn draft(db: &Db, actor: &Actor, of: Versioned, parent: i64, written: &Written) -> Result<i64, Failure> {
-    db.change(actor, draft_act(of), &Reason::stated(&written.reason), |change| {
+    db.change(actor, of.draft_act(), &Reason::stated(&written.reason), |change| {
         draft_inside(change, of, parent, written)
     })
 }
@@ -81,7 +60,7 @@ pub fn rewrite(
     written: &Written,
     seen: &str,
 ) -> Result<(), Failure> {
-    db.change(actor, draft_act(of), &Reason::stated(&written.reason), |change| {
+    db.change(actor, of.draft_act(), &Reason::stated(&written.reason), |change| {
         let version = store::version::get(change, of, id)?;
         if version.state != VersionState::Draft {
             return Err(VersionRefusal::VersionFrozen.into());
@@ -117,7 +96,7 @@ pub fn sign(
     signed: &Signed<Authorship>,
     check: ContentCheck<'_>,
 ) -> Result<(), Failure> {
-    let act = if of == Versioned::Formulation { sign_act(of) } else { draft_act(of) };
+    let act = if of == Versioned::Formulation { of.sign_act() } else { of.draft_act() };
     db.change(actor, act, &Reason::none(), |change| {
         let version = store::version::get(change, of, id)?;
         may_sign(version.state)?;
@@ -140,7 +119,7 @@ pub fn approve(
     signed: &Signed<Approval>,
     check: ContentCheck<'_>,
 ) -> Result<(), Failure> {
-    db.change(actor, sign_act(of), &Reason::none(), |change| {
+    db.change(actor, of.sign_act(), &Reason::none(), |change| {
         let version = store::version::get(change, of, id)?;
         let signatures = store::signature::of(change, of.kind(), id)?;
         let authors: Vec<i64> =

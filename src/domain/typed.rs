@@ -32,16 +32,8 @@ pub enum NumberFault {
     OutsidePossible { label: String, text: String, least: Decimal, most: Decimal },
     #[error("{label} is recorded in {unit}, and “{text}” carries another unit. Type the value in {unit}.")]
     WrongUnit { label: String, text: String, unit: String },
-    #[error(
-        "{label}: “{text}” can be read as {as_decimal} or as {as_thousands}. Type {as_decimal_plain} or {as_thousands}."
-    )]
-    TwoReadings {
-        label: String,
-        text: String,
-        as_decimal: String,
-        as_decimal_plain: String,
-        as_thousands: String,
-    },
+    #[error("{label}: “{text}” can be {as_decimal} or {as_thousands}. Type it without the comma.")]
+    TwoReadings { label: String, text: String, as_decimal: String, as_thousands: String },
     #[error("{label} is a count. Type a whole number such as 17.")]
     NotWhole { label: String },
 }
@@ -164,7 +156,6 @@ fn two_readings(label: &str, typed: &str, unsigned: &str, rule: &NumberRule) -> 
     Some(NumberFault::TwoReadings {
         label: label.to_string(),
         text: typed.to_string(),
-        as_decimal_plain: as_decimal.clone(),
         as_decimal,
         as_thousands,
     })

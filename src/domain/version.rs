@@ -1,5 +1,6 @@
 //! Versions of definitions: a draft is written, its author signs, a second person approves, and it is frozen.
 
+use super::act::Act;
 use super::refusal::NamedReason;
 use super::signature::SignatureRefusal;
 use super::subject::Kind;
@@ -20,6 +21,26 @@ impl Versioned {
             Versioned::Method => Kind::MethodVersion,
             Versioned::Specification => Kind::SpecificationVersion,
             Versioned::Protocol => Kind::ProtocolVersion,
+        }
+    }
+
+    /// The act of writing a version; its author signs by the same act, except a formulation's.
+    pub fn draft_act(self) -> Act {
+        match self {
+            Versioned::Formulation => Act::DraftFormulationVersion,
+            Versioned::Method => Act::DraftMethodVersion,
+            Versioned::Specification => Act::DraftSpecificationVersion,
+            Versioned::Protocol => Act::DraftProtocolVersion,
+        }
+    }
+
+    /// The act of approving a version, and of signing a formulation version as its author.
+    pub fn sign_act(self) -> Act {
+        match self {
+            Versioned::Formulation => Act::SignFormulationVersion,
+            Versioned::Method => Act::ApproveMethodVersion,
+            Versioned::Specification => Act::ApproveSpecificationVersion,
+            Versioned::Protocol => Act::ApproveProtocolVersion,
         }
     }
 

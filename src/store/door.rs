@@ -7,7 +7,7 @@ use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 
 use rusqlite::{Connection, OpenFlags, Params};
 
-use super::{Answer, Reader, migrate, submission, trail};
+use super::{Answer, Reader, migrate, submission, trail, trigger};
 use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::Failure;
@@ -102,7 +102,7 @@ impl Db {
         let current = Arc::new(Current::default());
         let mut connection = Connection::open(path)?;
         prepare(&connection, durability)?;
-        trail::register_functions(&connection, &current)?;
+        trigger::register_functions(&connection, &current)?;
         let changed = migrate::bring_up_to_date(&mut connection, path)?;
         let db = Db {
             path: path.to_path_buf(),
@@ -272,7 +272,7 @@ fn open_reader(path: &Path, current: &Arc<Current>) -> Answer<Connection> {
     connection
         .execute_batch("pragma query_only = on; pragma busy_timeout = 5000; pragma trusted_schema = off;")?;
     connection.set_prepared_statement_cache_capacity(256);
-    trail::register_functions(&connection, current)?;
+    trigger::register_functions(&connection, current)?;
     Ok(connection)
 }
 

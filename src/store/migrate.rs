@@ -6,7 +6,7 @@ use rusqlite::Connection;
 use rusqlite::backup::Backup;
 
 use super::door::Db;
-use super::{Answer, Reader, trail};
+use super::{Answer, Reader, trigger};
 use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::Failure;
@@ -33,14 +33,14 @@ pub(in crate::store) fn bring_up_to_date(connection: &mut Connection, path: &Pat
         copy_online(connection, &backup_name(path, have))?;
     }
     connection.execute_batch("pragma foreign_keys = off")?;
-    trail::drop_triggers(connection)?;
+    trigger::drop_triggers(connection)?;
     let report = runner.set_abort_divergent(true).run(connection).map_err(Failure::fault)?;
     let broken =
         Reader::over(connection).all("pragma foreign_key_check", [], |row| row.get::<_, String>(0))?;
     if let Some(table) = broken.first() {
         return Err(Failure::Held(format!("After the migration, {table} has a row that points nowhere.")));
     }
-    trail::make_triggers(connection)?;
+    trigger::make_triggers(connection)?;
     connection.execute_batch("pragma foreign_keys = on")?;
     let names: Vec<String> = report
         .applied_migrations()

@@ -38,6 +38,7 @@ pub mod stage;
 pub mod study;
 pub mod submission;
 pub mod trail;
+pub mod trigger;
 pub mod verify;
 pub mod version;
 pub mod week;

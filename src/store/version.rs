@@ -48,7 +48,7 @@ impl Version {
 
 /// The select list with table and parent column of the kind. Both come from the code, never from a person.
 fn select(of: Versioned) -> String {
-    let (table, parent) = (of.kind().code(), of.parent().code());
+    let (table, parent, draft) = (of.kind().code(), of.parent().code(), of.draft_act().code());
     format!(
         "select v.id, v.{parent}, v.number, v.reason, v.content, v.imported is not null,
              exists (select 1 from signature where kind = '{table}' and subject = v.id and meaning = 'authorship'),
@@ -56,7 +56,9 @@ fn select(of: Versioned) -> String {
              a.account, a.full_name, a.at
          from {table} v
          join trail_act a on a.id = coalesce(
-             (select max(act) from trail_change where record = '{table}' and row = v.id and kind = 'update'), v.act)"
+             (select max(t.act) from trail_subject t join trail_act w on w.id = t.act
+              where t.kind = '{table}' and t.subject = v.id and w.act = '{draft}'
+                  and not exists (select 1 from signature where act = w.id)), v.act)"
     )
 }
 

@@ -11,10 +11,7 @@ use crate::store::trail::ActLine;
 
 /// A status as word and shape, with a count inside the words where one is given.
 #[derive(Clone, Debug, Template)]
-#[template(
-    ext = "html",
-    source = r##"<span class="status status-{{ slug }}"><svg class="mark" aria-hidden="true"><use href="#mark-{{ slug }}"/></svg>{{ words }}</span>"##
-)]
+#[template(path = "part/status.html")]
 pub struct StatusMark {
     slug: &'static str,
     words: String,

@@ -26,7 +26,7 @@ pub fn next_form(
     let is_author = version.author == actor.account;
     let (meaning, button) = match version.state {
         VersionState::Draft if is_author => (Meaning::Authorship, "Sign as author"),
-        VersionState::SignedByAuthor if !is_author && visit.may(acts::version::sign_act(of)) => {
+        VersionState::SignedByAuthor if !is_author && visit.may(of.sign_act()) => {
             (Meaning::Approval, "Approve this version")
         }
         _ => return Ok(None),

@@ -1,0 +1,11 @@
+//! The house keeps its own rules: arrows between rooms, sizes, coverage of acts and routes, schema and policy.
+
+#[path = "../support/mod.rs"]
+mod support;
+
+mod arrows;
+mod coverage;
+mod schema;
+mod sizes;
+mod templates;
+mod tree;

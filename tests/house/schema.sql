@@ -1,0 +1,790 @@
+CREATE INDEX account_roles_by_account on account_roles (account, id);
+
+CREATE INDEX account_state_by_account on account_state (account, id);
+
+CREATE INDEX arm_trigger_by_arm on arm_trigger (study_arm);
+
+CREATE INDEX attachment_by_subject on attachment (kind, subject);
+
+CREATE INDEX container_event_by_container on container_event (container);
+
+CREATE INDEX container_event_by_pull on container_event (pull) where pull is not null;
+
+CREATE INDEX exception_answer_by_flag on exception_answer (flag);
+
+CREATE INDEX flag_by_result on flag (result);
+
+CREATE INDEX instrument_event_by_instrument on instrument_event (instrument, kind, id);
+
+CREATE INDEX investigation_by_result on investigation (result);
+
+CREATE INDEX investigation_entry_by_investigation on investigation_entry (investigation);
+
+CREATE INDEX lot_by_bulk_lot on lot (bulk_lot) where bulk_lot is not null;
+
+CREATE INDEX lot_by_presentation on lot (presentation);
+
+CREATE INDEX lot_decision_by_lot on lot_decision (lot);
+
+CREATE INDEX lot_distribution_by_lot on lot_distribution (lot);
+
+CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
+
+CREATE INDEX presentation_by_product on presentation (product);
+
+CREATE INDEX pull_assignment_by_pull on pull_assignment (pull);
+
+CREATE INDEX pull_by_arm on pull (study_arm);
+
+CREATE INDEX pull_by_due on pull (latest_on, due_on);
+
+CREATE INDEX pull_event_by_pull on pull_event (pull);
+
+CREATE INDEX qualification_by_account on qualification (account, method_version);
+
+CREATE INDEX reading_by_test on reading (sample_test, replicate, field);
+
+CREATE INDEX result_check_by_test on result_check (sample_test);
+
+CREATE INDEX review_decision_by_sample on review_decision (sample);
+
+CREATE INDEX sample_by_lot on sample (lot);
+
+CREATE INDEX sample_test_by_test on sample_test (test, sample);
+
+CREATE INDEX session_by_account on session (account);
+
+CREATE INDEX setting_by_name on setting (name, id);
+
+CREATE INDEX shelf_life_by_presentation on shelf_life_assignment (presentation, effective_from);
+
+CREATE INDEX signature_by_subject on signature (kind, subject, meaning);
+
+CREATE INDEX specification_by_presentation on specification (presentation);
+
+CREATE INDEX stage_loss_by_sample on stage_loss (sample);
+
+CREATE INDEX study_by_lot on study (lot);
+
+CREATE TABLE account (
+    id integer primary key,
+    user_name text not null collate nocase unique,
+    full_name text not null,
+    kind text not null check (kind in ('person', 'system')),
+    identity_verified_by text,              -- who saw proof of identity (11.100)
+    password_hash text,                     -- PHC string; null until the person has set one
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE account_code (
+    id integer primary key,
+    account integer references account (id),   -- null: whoever redeems it becomes the first administrator
+    code_digest text not null unique,
+    expires_at text not null,
+    used_at text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE account_roles (
+    id integer primary key,
+    account integer not null references account (id),
+    roles text not null,                    -- comma-separated codes
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE account_state (
+    id integer primary key,
+    account integer not null references account (id),
+    state text not null check (state in ('enabled', 'disabled')),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE arm_trigger (
+    id integer primary key,
+    study_arm integer not null references study_arm (id),
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE attachment (
+    id integer primary key,
+    uuid blob not null unique,
+    kind text not null,
+    subject integer not null,
+    file_name text not null,
+    media_type text not null check (media_type in ('image/png', 'image/jpeg', 'application/pdf')),
+    size_bytes integer not null check (size_bytes > 0),
+    sha256 text not null,
+    about text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE chamber (
+    id integer primary key,
+    code text not null collate nocase unique,
+    name text not null,
+    condition integer not null references condition (id),
+    location text not null,
+    qualification_due_on text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE condition (
+    id integer primary key,
+    code text not null unique,              -- 25/60
+    name text not null,                     -- 25 °C/60 % RH
+    temperature_c text,
+    temperature_tolerance_c text,
+    humidity_percent text,
+    humidity_tolerance_percent text,
+    humidity_rule text not null check (humidity_rule in ('within', 'not more than', 'none')),
+    use text not null,                      -- long-term, intermediate, accelerated …, as the catalogue states
+    least_months integer,
+    source text not null,                   -- requirement row, or "imported"
+    in_catalogue integer not null check (in_catalogue in (0, 1)),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE container (
+    id integer primary key,
+    study_arm integer not null references study_arm (id),
+    number integer not null,
+    label text not null collate nocase unique,
+    purpose text not null check (purpose in ('pull', 'spare', 'retain', 'follow-through')),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (study_arm, number)
+) strict;
+
+CREATE TABLE container_event (
+    id integer primary key,
+    container integer not null references container (id),
+    kind text not null check (kind in ('pulled', 'broken', 'leaked', 'lost', 'investigation', 'partial pull',
+        're-pull', 'destroyed')),
+    pull integer references pull (id),
+    witness integer references account (id),
+    note text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE counter (
+    name text primary key,
+    value integer not null
+) strict, without rowid;
+
+CREATE TABLE customer (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE draft (
+    account integer not null,
+    page text not null,
+    number integer not null,
+    content text not null,
+    at text not null,
+    primary key (account, page)
+) strict, without rowid;
+
+CREATE TABLE exception_answer (
+    id integer primary key,
+    flag integer not null references flag (id),
+    answer text not null,
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE flag (
+    id integer primary key,
+    result integer not null references result (id),
+    kind text not null,                     -- out of specification, out of trend, not evaluable, spread, single value outside,
+                                            -- soft stop, late reading, in-use limit, first value outside
+    level text not null check (level in ('exception', 'mark', 'context')),
+    sentence text not null,
+    numbers text not null,                  -- JSON
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE formulation (
+    id integer primary key,
+    uuid blob not null unique,
+    product integer not null references product (id),
+    code text not null collate nocase unique,
+    name text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE formulation_version (
+    id integer primary key,
+    uuid blob not null unique,
+    formulation integer not null references formulation (id),
+    number integer not null,
+    reason text not null,
+    content text not null,
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (formulation, number)
+) strict;
+
+CREATE TABLE import (
+    id integer primary key,
+    uuid blob not null unique,
+    file_name text not null,
+    sha256 text not null unique,
+    row_count integer not null,
+    result_count integer not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE instrument (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    kind text not null,                     -- pH meter, viscometer, balance, cylinder, thermometer, other
+    needs_daily_check integer not null check (needs_daily_check in (0, 1)),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE instrument_event (
+    id integer primary key,
+    instrument integer not null references instrument (id),
+    kind text not null check (kind in ('calibrated', 'daily check', 'out of service', 'in service')),
+    performed_on text not null,
+    due_on text,
+    detail text,                            -- JSON: buffers, slope, reference
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE investigation (
+    id integer primary key,
+    uuid blob not null unique,
+    number integer not null unique,
+    result integer not null references result (id),
+    first_known_at text not null,
+    steered_by integer references account (id),
+    clock_due_on text,                      -- three working days, where the rule asks it
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE investigation_entry (
+    id integer primary key,
+    investigation integer not null references investigation (id),
+    kind text not null check (kind in ('finding', 'evidence', 'other lot considered', 'steered by', 'conclusion')),
+    text text not null,
+    other_lot integer references lot (id),
+    account integer references account (id),
+    signature integer references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE lot (
+    id integer primary key,
+    uuid blob not null unique,
+    number text not null collate nocase unique,
+    presentation integer not null references presentation (id),
+    formulation_version integer not null references formulation_version (id),
+    formulation_digest text not null,       -- of the version's content when the lot was made
+    made_on text,                           -- calendar date of the site; null only for imported lots
+    size text,
+    size_unit text,
+    scale text not null check (scale in ('laboratory', 'pilot', 'production', 'not stated')),
+    container_closure text not null,
+    bulk_lot integer references lot (id),   -- a packed lot inherits the history of its bulk lot
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE lot_decision (
+    id integer primary key,
+    lot integer not null references lot (id),
+    decision text not null check (decision in ('released', 'rejected')),
+    decided_on text not null,
+    shelf_life_assignment integer references shelf_life_assignment (id),
+    expires_on text,
+    signature integer not null references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE lot_distribution (
+    id integer primary key,
+    lot integer not null references lot (id),
+    first_on text not null,
+    markets text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE material (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    function text not null,
+    density_g_per_ml text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE method (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    kind text not null,                     -- appearance, redispersibility, ph, viscosity, sedimentation, sediment, numeric
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE method_version (
+    id integer primary key,
+    uuid blob not null unique,
+    method integer not null references method (id),
+    number integer not null,
+    reason text not null,
+    content text not null,
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (method, number)
+) strict;
+
+CREATE TABLE photo_mark (
+    id integer primary key,
+    attachment integer not null references attachment (id),
+    base_y text not null,
+    interface_y text not null,
+    fill_line_y text not null,
+    ratio text not null,
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE presentation (
+    id integer primary key,
+    uuid blob not null unique,
+    product integer not null references product (id),
+    code text not null collate nocase unique,
+    strength text not null,
+    pack text not null,
+    container_word text not null,           -- bottle, sachet, tube: how a container of it is called
+    fill_ml text,
+    market text not null,
+    permeability text not null check (permeability in ('impermeable', 'semi-permeable', 'not stated')),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE product (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    dosage_form text not null,
+    customer integer references customer (id),
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE protocol (
+    id integer primary key,
+    uuid blob not null unique,
+    presentation integer not null references presentation (id),
+    code text not null collate nocase unique,
+    title text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE protocol_version (
+    id integer primary key,
+    uuid blob not null unique,
+    protocol integer not null references protocol (id),
+    number integer not null,
+    reason text not null,
+    content text not null,
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (protocol, number)
+) strict;
+
+CREATE TABLE pull (
+    id integer primary key,
+    uuid blob not null unique,
+    study_arm integer not null references study_arm (id),
+    age_months integer,
+    age_days integer,                       -- in-use and imported ages are days
+    age_text text not null,                 -- "18 months", "day 14"
+    due_on text,                            -- null only for imported pulls
+    earliest_on text,
+    latest_on text,
+    test_within_days integer,
+    containers_needed integer not null,
+    is_last integer not null check (is_last in (0, 1)),
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE pull_assignment (
+    id integer primary key,
+    pull integer not null references pull (id),
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE pull_event (
+    id integer primary key,
+    pull integer not null references pull (id),
+    kind text not null check (kind in ('pulled', 'missed', 'cancelled')),
+    happened_at text,                       -- when containers left the chamber, if not at the act itself
+    happened_on text not null,              -- the site's date of it
+    identity_by text,                       -- scan, typed characters
+    note text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE qualification (
+    id integer primary key,
+    account integer not null references account (id),
+    method_version integer not null references method_version (id),
+    starts_on text not null,
+    ends_on text not null,
+    reference text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE reading (
+    id integer primary key,
+    sample_test integer not null references sample_test (id),
+    container integer references container (id),
+    replicate integer not null,
+    field text not null,
+    typed text not null,                    -- as typed
+    value text,                             -- exact decimal; null for words and for what could not be read
+    qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'not read')),
+    read_at text,                           -- when it was read, if not at the act itself (late entry)
+    due_at text,                            -- planned instant of a timed reading
+    instrument integer references instrument (id),
+    hints text,                             -- JSON: the hints it drew
+    hint_answer text check (hint_answer in ('kept', 'changed after hint')),
+    supersedes integer unique references reading (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE reading_log (
+    id integer primary key,
+    account integer not null,
+    path text not null,
+    at text not null
+) strict;
+
+CREATE TABLE refinery_schema_history(
+             version int4 PRIMARY KEY,
+             name VARCHAR(255),
+             applied_on VARCHAR(255),
+             checksum VARCHAR(255));
+
+CREATE TABLE result (
+    id integer primary key,
+    sample_test integer not null references sample_test (id),
+    version integer not null,
+    component text not null,
+    value text,                             -- the unrounded exact value that is judged
+    qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'none')),
+    shown text not null,                    -- rounded as the method says, or the words
+    unit text not null,
+    verdict text not null check (verdict in ('conforms', 'out of specification', 'no limit', 'no reportable value',
+        'not judged')),
+    detail text not null,                   -- JSON: replicates used, mean, spread, limits, way of comparing
+    sd text,                                -- imported means carry their spread and number
+    n integer,
+    imported integer references import (id),
+    import_line integer,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (sample_test, version, component)
+) strict;
+
+CREATE TABLE result_check (
+    id integer primary key,
+    sample_test integer not null references sample_test (id),
+    version integer not null,
+    verdict text not null check (verdict in ('checked', 'sent back')),
+    why text,
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE review_decision (
+    id integer primary key,
+    sample integer not null references sample (id),
+    decision text not null check (decision in ('agree', 'send back', 'not yet')),
+    content_digest text not null,
+    why text,
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE sample (
+    id integer primary key,
+    uuid blob not null unique,
+    number text not null collate nocase unique,
+    purpose text not null check (purpose in ('stability pull', 'release', 'in-process', 'bulk hold',
+        'retain check', 'investigation', 'complaint', 'development')),
+    lot integer not null references lot (id),
+    pull integer unique references pull (id),
+    specification_version integer references specification_version (id),
+    limit_set text not null check (limit_set in ('release', 'shelf-life', 'none')),
+    containers integer,
+    condition_on_receipt text,
+    handed_over_by text,
+    received_on text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE sample_test (
+    id integer primary key,
+    sample integer not null references sample (id),
+    position integer not null,
+    test text not null,
+    title text not null,
+    method_version integer not null references method_version (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (sample, test)
+) strict;
+
+CREATE TABLE session (
+    token_digest text primary key,
+    account integer not null references account (id),
+    started_at text not null,
+    last_seen text not null,
+    ended_at text,
+    address text,
+    agent text
+) strict, without rowid;
+
+CREATE TABLE setting (
+    id integer primary key,
+    name text not null,
+    value text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE shelf_life_assignment (
+    id integer primary key,
+    presentation integer not null references presentation (id),
+    market text not null,
+    storage_statement text not null,
+    months integer not null check (months > 0),
+    in_use_days integer check (in_use_days > 0),
+    basis text not null check (basis in ('tentative', 'verified')),
+    reference text not null,
+    effective_from text not null,
+    expiry_format text not null check (expiry_format in ('day', 'month')),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE sign_in_counter (
+    key text primary key,
+    failures integer not null,
+    last_at text not null,
+    wait_until text
+) strict, without rowid;
+
+CREATE TABLE signature (
+    id integer primary key,
+    kind text not null,                     -- of the signed record
+    subject integer not null,
+    meaning text not null,
+    account integer not null references account (id),
+    signer_name text not null,              -- frozen at signing
+    digest text not null,                   -- SHA-256 of the canonical record, hexadecimal
+    statement text,                         -- the signer's sentence, where one is asked
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE site (
+    id integer primary key check (id = 1),
+    uuid blob not null,
+    name text not null,
+    zone text not null,
+    is_demo integer not null check (is_demo in (0, 1)),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE specification (
+    id integer primary key,
+    uuid blob not null unique,
+    presentation integer not null references presentation (id),
+    code text not null collate nocase unique,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE specification_version (
+    id integer primary key,
+    uuid blob not null unique,
+    specification integer not null references specification (id),
+    number integer not null,
+    reason text not null,
+    content text not null,
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (specification, number)
+) strict;
+
+CREATE TABLE stage_loss (
+    id integer primary key,
+    sample integer not null references sample (id),
+    container integer references container (id),
+    stage text not null check (stage in ('before disturbance', 'redispersion', 'after redispersion')),
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE stop_override (
+    id integer primary key,
+    stop text not null check (stop in ('calibration', 'daily check', 'out of service', 'qualification')),
+    instrument integer references instrument (id),
+    account integer references account (id),
+    method_version integer references method_version (id),
+    valid_on text not null,
+    signature integer not null references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE study (
+    id integer primary key,
+    uuid blob not null unique,
+    number text not null collate nocase unique,
+    lot integer not null references lot (id),
+    protocol_version integer references protocol_version (id),          -- null only for imported studies
+    specification_version integer references specification_version (id),
+    programme text not null check (programme in ('primary', 'commitment', 'ongoing', 'development', 'imported')),
+    started_on text,                        -- time zero; null only for imported studies
+    rule_set text not null,                 -- the rules it is evaluated by, name and version
+    imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE study_arm (
+    id integer primary key,
+    study integer not null references study (id),
+    position integer not null,
+    condition integer not null references condition (id),
+    orientation text not null check (orientation in ('upright', 'inverted', 'horizontal', 'not stated')),
+    chamber integer references chamber (id),
+    limits_do text not null check (limits_do in ('OOS', 'significant-change rules', 'information', 'in-use limits')),
+    is_labelled_condition integer not null check (is_labelled_condition in (0, 1)),
+    is_contingent integer not null check (is_contingent in (0, 1)),
+    container_text text,                    -- the pack as an imported file names it
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (study, position)
+) strict;
+
+CREATE TABLE submission_key (
+    key text primary key,
+    account integer not null,
+    content_digest text not null,
+    act integer not null,
+    location text,
+    at text not null
+) strict, without rowid;
+
+CREATE TABLE trail_act (
+    id integer primary key,
+    at text not null,                       -- UTC, milliseconds
+    offset_minutes integer not null,        -- the site's offset at that instant
+    zone text not null,
+    account integer not null references account (id) deferrable initially deferred,
+    user_name text not null,                -- as it was then
+    full_name text not null,
+    role text,                              -- the role that permitted the act
+    act text not null,
+    detail text,                            -- what was done, in a sentence
+    reason text,
+    session text,                           -- first characters of the session's digest
+    address text,
+    outcome text not null check (outcome in ('done', 'denied'))
+) strict;
+
+CREATE TABLE trail_change (
+    act integer not null references trail_act (id) deferrable initially deferred,
+    line integer not null,
+    record text not null,                   -- table
+    row integer not null,
+    kind text not null check (kind in ('insert', 'update')),
+    digest blob not null,                   -- of the row after the change
+    changes text,                           -- for updates: changed fields, old and new
+    primary key (act, line)
+) strict, without rowid;
+
+CREATE TABLE trail_seal (
+    act integer primary key references trail_act (id) deferrable initially deferred,
+    digest blob not null
+) strict;
+
+CREATE TABLE trail_subject (
+    kind text not null,
+    subject integer not null,
+    act integer not null,
+    primary key (kind, subject, act)
+) strict, without rowid;
+
+CREATE TRIGGER guard_approval before insert on signature
+when new.meaning = 'approval' and exists (
+    select 1 from signature
+    where kind = new.kind and subject = new.subject and meaning = 'authorship' and account = new.account)
+begin select raise(abort, 'the approver is not an author'); end;
+
+CREATE TRIGGER guard_checker_is_not_reader before insert on result_check
+when new.verdict = 'checked' and exists (
+    select 1 from reading r join trail_act a on a.id = r.act
+    where r.sample_test = new.sample_test and a.account = new.account)
+begin select raise(abort, 'the checker is not a reader'); end;
+
+CREATE TRIGGER guard_container_leaves_once before insert on container_event
+when new.kind in ('pulled', 'broken', 'leaked', 'lost') and exists (
+    select 1 from container_event
+    where container = new.container and kind in ('pulled', 'broken', 'leaked', 'lost', 'destroyed'))
+begin select raise(abort, 'the container has left already'); end;
+
+CREATE TRIGGER guard_formulation_version before update on formulation_version
+when exists (select 1 from signature where kind = 'formulation_version' and subject = old.id)
+begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_method_version before update on method_version
+when exists (select 1 from signature where kind = 'method_version' and subject = old.id)
+begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_protocol_version before update on protocol_version
+when exists (select 1 from signature where kind = 'protocol_version' and subject = old.id)
+begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_reviewer_is_not_performer before insert on signature
+when new.kind = 'sample' and new.meaning = 'review' and (exists (
+    select 1 from reading r join sample_test t on t.id = r.sample_test join trail_act a on a.id = r.act
+    where t.sample = new.subject and a.account = new.account) or exists (
+    select 1 from result_check c join sample_test t on t.id = c.sample_test
+    where t.sample = new.subject and c.account = new.account))
+begin select raise(abort, 'the reviewer is not a performer'); end;
+
+CREATE TRIGGER guard_signature_system before insert on signature
+when (select kind from account where id = new.account) <> 'person'
+begin select raise(abort, 'a system account cannot sign'); end;
+
+CREATE TRIGGER guard_specification_version before update on specification_version
+when exists (select 1 from signature where kind = 'specification_version' and subject = old.id)
+begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_trail_act_delete before delete on trail_act
+begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_trail_act_update before update on trail_act
+begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_trail_change_delete before delete on trail_change
+begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_trail_change_update before update on trail_change
+begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_trail_seal_delete before delete on trail_seal
+begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_trail_seal_update before update on trail_seal
+begin select raise(abort, 'the trail is never changed'); end;
