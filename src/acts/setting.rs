@@ -4,17 +4,25 @@ use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::Failure;
 use crate::domain::reason::Reason;
+use crate::domain::setting::Setting;
 use crate::domain::subject::Kind;
 use crate::store;
 use crate::store::door::Db;
 
-/// Changes one setting; the history shows was and is.
-pub fn change(db: &Db, actor: &Actor, name: &str, value: &str, reason: &Reason) -> Result<(), Failure> {
+/// Changes settings; the history shows was and is. Values that stay as they are leave no row.
+pub fn change(db: &Db, actor: &Actor, values: &[(Setting, i64)], reason: &Reason) -> Result<(), Failure> {
     db.change(actor, Act::ChangeSetting, reason, |change| {
-        let was = store::setting::get(change, name)?.unwrap_or_else(|| "not set".to_string());
-        store::setting::set(change, name, value)?;
+        let mut told = Vec::new();
+        for (setting, value) in values {
+            setting.may_be(*value)?;
+            let was = setting.value(store::setting::get(change, setting.name)?.as_deref());
+            if was != *value {
+                store::setting::set(change, setting.name, &value.to_string())?;
+                told.push(format!("{}: was {was}, is {value}", setting.label));
+            }
+        }
         change.concerns(Kind::Site, 1)?;
-        change.tell(format!("{name}: was {was}, is {value}"));
+        change.tell(if told.is_empty() { "nothing differed".to_string() } else { told.join("; ") });
         Ok(())
     })
 }

@@ -39,6 +39,7 @@ pub mod review;
 pub mod role;
 pub mod rounding;
 pub mod sample;
+pub mod setting;
 pub mod shelf_life;
 pub mod signature;
 pub mod specification;

@@ -43,6 +43,7 @@ pub mod sample;
 pub mod sedimentation;
 pub mod serve;
 pub mod session;
+pub mod setting;
 pub mod shelf_life;
 pub mod show;
 pub mod specification;

@@ -122,7 +122,9 @@ fn nav(visit: &Visit) -> Vec<NavItem> {
         .collect();
     if actor.holds(Role::Administrator) {
         items.retain(|item| item.path == "/history");
-        items.push(NavItem { path: "/people", words: "People", is_here: is_under(&visit.path, "/people") });
+        for (path, words) in [("/people", "People"), ("/settings", "Settings")] {
+            items.push(NavItem { path, words, is_here: is_under(&visit.path, path) });
+        }
     }
     items
 }

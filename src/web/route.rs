@@ -62,6 +62,7 @@ pub fn all() -> Vec<Route> {
         super::session::ROUTES,
         super::home::ROUTES,
         super::account::ROUTES,
+        super::setting::ROUTES,
         super::history::ROUTES,
         super::help::ROUTES,
         super::definitions::ROUTES,

@@ -18,14 +18,12 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::failure::Failure;
 use crate::domain::moment::Moment;
 use crate::domain::role::Role;
+use crate::domain::setting::{BENCH_IDLE_MINUTES, IDLE_MINUTES};
 use crate::store;
 
 pub const SESSION_COOKIE: &str = "__Host-sid";
 /// Says that somebody signed in from this browser before; worth nothing else.
 pub const BROWSER_COOKIE: &str = "__Host-browser";
-/// Idle time in minutes; the bench is a shared place.
-const IDLE_MINUTES: i64 = 30;
-const IDLE_MINUTES_AT_BENCH: i64 = 15;
 /// The whole length of a session, in minutes.
 const WHOLE_MINUTES: i64 = 12 * 60;
 
@@ -52,7 +50,7 @@ pub fn signed_in(
     })?;
     let Some((session, account)) = found.filter(|(_, account)| account.is_enabled) else { return Ok(None) };
     let is_bench = route.is_some_and(|route| route.access == Access::Bench);
-    let idle = if is_bench { IDLE_MINUTES_AT_BENCH } else { IDLE_MINUTES };
+    let idle = super::setting::value(visit, if is_bench { BENCH_IDLE_MINUTES } else { IDLE_MINUTES })?;
     if is_older(&session.last_seen, visit.at, idle) || is_older(&session.started_at, visit.at, WHOLE_MINUTES)
     {
         visit.db().housekeeping(|work| store::session::end(work, &digest, visit.at))?;

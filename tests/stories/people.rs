@@ -183,3 +183,24 @@ fn a_form_of_another_origin_or_another_session_is_refused() {
     let other = lab.second_analyst().token();
     assert_eq!(lab.send(post_request("/me/password", form_body(&pairs), Some(&other))).status, 400);
 }
+
+#[test]
+fn the_administrator_sets_the_idle_time_within_its_bounds() {
+    let lab = Lab::new();
+    let wrong = lab.administrator().submits(
+        "/settings",
+        "/settings",
+        &[("session.idle-minutes", "45"), ("reason", "the tablets are in a locked room")],
+    );
+    assert_eq!(wrong.status, 409);
+    assert!(wrong.text().contains("45 is outside 5 to 30"), "{}", wrong.text());
+    lab.administrator().does(
+        "/settings",
+        "/settings",
+        &[("session.idle-minutes", "10"), ("reason", "the tablets are in a locked room")],
+    );
+    let token = lab.analyst().token();
+    lab.later_minutes(11);
+    assert_eq!(lab.get_with("/me", Some(&token)).status, 303);
+    assert_eq!(lab.manager().get("/settings").status, 403);
+}

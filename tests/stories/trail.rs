@@ -37,12 +37,12 @@ fn an_act_that_fails_leaves_nothing_behind() {
     let before = lab.app.db.read(store::trail::head).unwrap();
     let outcome: Result<(), Failure> =
         lab.app.db.change(&actor, Act::ChangeSetting, &Reason::none(), |change| {
-            store::setting::set(change, "site.greeting", "hello")?;
+            store::setting::set(change, "session.idle-minutes", "5")?;
             Err(Failure::missing("thing"))
         });
     assert!(outcome.is_err());
     assert_eq!(lab.app.db.read(store::trail::head).unwrap(), before);
-    assert_eq!(lab.app.db.read(|reader| store::setting::get(reader, "site.greeting")).unwrap(), None);
+    assert_eq!(lab.app.db.read(|reader| store::setting::get(reader, "session.idle-minutes")).unwrap(), None);
 }
 
 #[test]

@@ -1,0 +1,86 @@
+//! Settings of the site: what may be set, within which bounds, and what holds where nothing is set.
+
+use super::refusal::NamedReason;
+
+/// One setting: a whole number with a unit.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Setting {
+    /// As stored and used in forms.
+    pub name: &'static str,
+    /// With its unit.
+    pub label: &'static str,
+    pub hint: &'static str,
+    pub default: i64,
+    pub least: i64,
+    pub most: i64,
+}
+
+/// Minutes without a request after which a session ends.
+pub const IDLE_MINUTES: Setting = Setting {
+    name: "session.idle-minutes",
+    label: "Idle time before sign-out, minutes",
+    hint: "5 to 30 (NIST SP 800-63B, level 2).",
+    default: 30,
+    least: 5,
+    most: 30,
+};
+
+/// The same at the bench, which is a shared place.
+pub const BENCH_IDLE_MINUTES: Setting = Setting {
+    name: "bench.idle-minutes",
+    label: "Idle time at the bench, minutes",
+    hint: "5 to 30; 15 is common practice at a shared tablet.",
+    default: 15,
+    least: 5,
+    most: 30,
+};
+
+pub const ALL: [Setting; 2] = [IDLE_MINUTES, BENCH_IDLE_MINUTES];
+
+#[derive(Debug, PartialEq, Eq, thiserror::Error)]
+pub enum SettingRefusal {
+    #[error("{label}: {value} is outside {least} to {most}. Choose a value inside.")]
+    SettingOutside { name: String, label: String, value: i64, least: i64, most: i64 },
+}
+
+impl NamedReason for SettingRefusal {
+    fn field(&self) -> Option<String> {
+        let SettingRefusal::SettingOutside { name, .. } = self;
+        Some(name.clone())
+    }
+}
+
+impl Setting {
+    /// The value that holds: the stored one, or the default where none is stored or it is no number.
+    pub fn value(&self, stored: Option<&str>) -> i64 {
+        stored.and_then(|text| text.parse().ok()).unwrap_or(self.default)
+    }
+
+    /// Refuses a value outside the bounds.
+    pub fn may_be(&self, value: i64) -> Result<(), SettingRefusal> {
+        if (self.least..=self.most).contains(&value) {
+            return Ok(());
+        }
+        Err(SettingRefusal::SettingOutside {
+            name: self.name.to_string(),
+            label: self.label.to_string(),
+            value,
+            least: self.least,
+            most: self.most,
+        })
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn bounds_hold_and_defaults_stand_in() {
+        for (value, good) in [(4, false), (5, true), (30, true), (31, false)] {
+            assert_eq!(IDLE_MINUTES.may_be(value).is_ok(), good, "{value}");
+        }
+        assert_eq!(IDLE_MINUTES.value(None), 30);
+        assert_eq!(BENCH_IDLE_MINUTES.value(Some("10")), 10);
+    }
+}
