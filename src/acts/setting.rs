@@ -26,3 +26,12 @@ pub fn change(db: &Db, actor: &Actor, values: &[(Setting, i64)], reason: &Reason
         Ok(())
     })
 }
+
+/// The administrator has looked at the computer's clock and it is right.
+pub fn confirm_clock(db: &Db, actor: &Actor, reason: &Reason) -> Result<(), Failure> {
+    db.change(actor, Act::ConfirmClock, reason, |change| {
+        change.concerns(Kind::Site, 1)?;
+        change.tell(format!("it shows {}", actor.at.shown()));
+        Ok(())
+    })
+}

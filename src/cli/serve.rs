@@ -15,6 +15,7 @@ use crate::store;
 use crate::store::door::Durability;
 use crate::store::site::Site;
 use crate::web::app::App;
+use crate::web::guard::ClockGuard;
 
 /// Serves a data folder.
 ///
@@ -87,7 +88,16 @@ pub fn serve(
     let public_origin = origin.unwrap_or_else(|| format!("http://{address}"));
     let folder::Folder { path, db, secrets, _lock, .. } = opened;
     let shown = public_origin.clone();
-    let app = App { db, secrets, site, clock: Arc::new(Utc::now), folder: path, public_origin, demo_people };
+    let app = App {
+        db,
+        secrets,
+        site,
+        clock: Arc::new(Utc::now),
+        guard: Some(ClockGuard::starting(Utc::now(), std::time::Instant::now())),
+        folder: path,
+        public_origin,
+        demo_people,
+    };
     listen::run(Arc::new(app), address, |_| {
         println!("Supernate serves {shown}");
         ready(&shown);

@@ -49,6 +49,7 @@ acts! {
     IssueFirstCode, "issued the code for the first administrator", System;
     ReportMisuse, "reported repeated failed passwords", System;
     ChangeSetting, "changed a setting", Roles(&[Administrator]);
+    ConfirmClock, "confirmed the clock", Roles(&[Administrator]);
 
     SignIn, "signed in", Anyone;
     SignOut, "signed out", Anyone;

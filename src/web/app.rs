@@ -5,6 +5,7 @@ use std::sync::Arc;
 
 use chrono::{DateTime, Utc};
 
+use super::guard::ClockGuard;
 use crate::acts::secret::Secrets;
 use crate::domain::moment::Moment;
 use crate::store::door::Db;
@@ -19,6 +20,8 @@ pub struct App {
     pub secrets: Secrets,
     pub site: Site,
     pub clock: Clock,
+    /// Watches the computer's own clock; `None` where the clock was handed in.
+    pub guard: Option<ClockGuard>,
     /// The data folder; attachments live in its `files`.
     pub folder: PathBuf,
     /// The address people type, such as `https://stability.example`: what `Origin` is compared with.

@@ -14,6 +14,7 @@ pub mod field;
 pub mod find;
 pub mod form;
 pub mod formulation;
+pub mod guard;
 pub mod headers;
 pub mod help;
 pub mod history;

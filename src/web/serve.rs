@@ -231,6 +231,9 @@ fn sign_in_first(visit: &Visit, route: Option<Route>) -> Reply {
     })
 }
 
+/// What still works while writes are held for the clock: signing in and out, and confirming it.
+const MAY_GO_ON: [&str; 3] = ["/sign-in", "/sign-out", "/settings/clock"];
+
 /// Session, origin, form token and submission key, in this order; then the handler.
 fn guarded(visit: &mut Visit, route: Option<Route>, head: &Head) -> Result<Reply, Failure> {
     visit.query = Pairs::read(&head.query)?;
@@ -254,6 +257,9 @@ fn guarded(visit: &mut Visit, route: Option<Route>, head: &Head) -> Result<Reply
     if route.access != Access::Public && !session::has_form_token(visit) {
         return Err(Failure::BadRequest("This form is of another session. Open the page again.".to_string()));
     }
+    if let Some(guard) = visit.app.guard.as_ref().filter(|_| !MAY_GO_ON.contains(&route.path)) {
+        guard.may_write(visit.at.utc, std::time::Instant::now())?;
+    }
     match repeated(visit)? {
         Some(reply) => Ok(reply),
         None => first(visit, route),
@@ -273,11 +279,19 @@ fn first(visit: &mut Visit, route: Route) -> Result<Reply, Failure> {
         // The same submit at the same moment: the other one has just committed.
         return repeated(visit)?.ok_or(Failure::Repeated);
     }
-    if let (Ok(Reply::See(to)), Some(key)) = (&outcome, &key) {
-        visit.app.db.housekeeping(|work| store::submission::remember_location(work, key, to))?;
+    let kept = match &outcome {
+        Ok(Reply::See(to)) => Some(to.clone()),
+        Ok(Reply::Json { status: 200, body }) => Some(format!("{KEPT_JSON}{body}")),
+        _ => None,
+    };
+    if let (Some(kept), Some(key)) = (kept, &key) {
+        visit.app.db.housekeeping(|work| store::submission::remember_location(work, key, &kept))?;
     }
     outcome
 }
+
+/// Marks a kept answer that was JSON and not a place to go to.
+const KEPT_JSON: &str = "json:";
 
 /// The answer of the first submit under this key, if there was one.
 fn repeated(visit: &Visit) -> Result<Option<Reply>, Failure> {
@@ -287,11 +301,18 @@ fn repeated(visit: &Visit) -> Result<Option<Reply>, Failure> {
     if known.content_digest != content_digest(visit) {
         return Err(Failure::RepeatedOtherwise);
     }
-    if visit.wants_json {
-        let body = serde_json::json!({ "saved": visit.at.clock_shown(), "hints": [], "repeated": true });
-        return Ok(Some(Reply::Json { status: 200, body }));
+    let kept = known.location.unwrap_or_else(|| format!("/history/{}", known.act));
+    match kept.strip_prefix(KEPT_JSON) {
+        Some(json) => Ok(Some(Reply::Json { status: 200, body: serde_json::from_str(json)? })),
+        None if visit.wants_json => {
+            // Committed, but the answer was lost with the process: a fresh key, so that work can go on.
+            let submission = crate::acts::secret::token()?;
+            let saved = visit.at.clock_shown();
+            let body = serde_json::json!({ "saved": saved, "hints": [], "submission": submission });
+            Ok(Some(Reply::Json { status: 200, body }))
+        }
+        None => Ok(Some(Reply::See(kept))),
     }
-    Ok(Some(Reply::See(known.location.unwrap_or_else(|| format!("/history/{}", known.act)))))
 }
 
 fn content_digest(visit: &Visit) -> String {

@@ -53,3 +53,35 @@ fn change(visit: &Visit) -> Outcome {
         |_| "/settings".to_string(),
     )
 }
+
+fn clock_form(visit: &Visit) -> Result<Form, Failure> {
+    visit.needs_role(&[Role::Administrator], Act::ConfirmClock)?;
+    let why = Field::new("reason", "How the clock was checked", Entry::Text).hint("At least ten characters.");
+    Ok(Form::new(visit, "/settings/clock", "The clock is right")?.field(why))
+}
+
+fn clock_lead(visit: &Visit) -> String {
+    format!("The computer's clock shows {}. Compare it with a clock you trust.", visit.at.shown())
+}
+
+fn clock_page(visit: &Visit) -> Outcome {
+    form::show(visit, "Confirm the clock", &clock_lead(visit), clock_form(visit)?)
+}
+
+fn confirm_clock(visit: &Visit) -> Outcome {
+    form::submit_page(
+        visit,
+        "Confirm the clock",
+        &clock_lead(visit),
+        clock_form(visit)?,
+        |typed| typed.reason("reason"),
+        |actor, reason| {
+            acts::setting::confirm_clock(visit.db(), actor, &reason)?;
+            if let Some(guard) = &visit.app.guard {
+                guard.confirm(visit.at.utc, std::time::Instant::now());
+            }
+            Ok(())
+        },
+        |()| "/settings".to_string(),
+    )
+}

@@ -204,3 +204,14 @@ fn the_administrator_sets_the_idle_time_within_its_bounds() {
     assert_eq!(lab.get_with("/me", Some(&token)).status, 303);
     assert_eq!(lab.manager().get("/settings").status, 403);
 }
+
+#[test]
+fn the_administrator_confirms_the_clock() {
+    let lab = Lab::new();
+    lab.administrator().does(
+        "/settings/clock",
+        "/settings/clock",
+        &[("reason", "compared with the radio clock in the hall")],
+    );
+    lab.auditor().sees("/history", "confirmed the clock: it shows 1 Dec 2026, 09:00 (+00:00)");
+}

@@ -129,6 +129,7 @@ impl Lab {
             secrets: secrets(),
             site,
             clock: Arc::new(move || DateTime::from_timestamp_millis(hand.load(Ordering::SeqCst)).unwrap()),
+            guard: None,
             folder: folder.0.clone(),
             public_origin: ORIGIN.to_string(),
             demo_people: Vec::new(),
