@@ -12,7 +12,12 @@ use crate::domain::role::Role;
 use crate::domain::setting::{ALL, Setting};
 use crate::store;
 
-pub const ROUTES: &[Route] = &[get("/settings", page), post("/settings", &[Act::ChangeSetting], change)];
+pub const ROUTES: &[Route] = &[
+    get("/settings", page),
+    post("/settings", &[Act::ChangeSetting], change),
+    get("/settings/clock", clock_page),
+    post("/settings/clock", &[Act::ConfirmClock], confirm_clock),
+];
 
 const LEAD: &str = "What holds at this site. Each change stands in the history with its reason.";
 
