@@ -29,6 +29,9 @@ create table trail_change (
     primary key (act, line)
 ) strict, without rowid;
 
+-- Who rewrote a draft last: few lines, asked for with each version.
+create index trail_change_update on trail_change (record, row, act) where kind = 'update';
+
 create table trail_seal (
     act integer primary key references trail_act (id) deferrable initially deferred,
     digest blob not null

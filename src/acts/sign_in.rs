@@ -159,6 +159,18 @@ fn count_address_failure(db: &Db, address: &str, before: Failures, at: Moment) -
     db.housekeeping(|work| store::session::count_failure(work, &key, &failures, at))
 }
 
+/// The person behind a name and password, for one command: no session is started.
+pub fn identify(
+    db: &Db,
+    secrets: &Secrets,
+    at: Moment,
+    user_name: &str,
+    password: &str,
+) -> Result<Actor, Failure> {
+    let account = verified(db, secrets, at, user_name, password, &Origin::default())?;
+    Ok(Actor { session: None, ..actor_of(&account, at, "", None) })
+}
+
 /// Proof that the actor's own password was typed just now.
 pub struct Confirmed(());
 

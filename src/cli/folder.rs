@@ -64,6 +64,20 @@ fn lock(path: &Path) -> Result<File, Failure> {
     }
 }
 
+/// Keeps others from opening a folder while it is read as a copy; refuses one that is in use.
+///
+/// A copy or a backup without a lock file is left as it is.
+pub fn lock_if_there(path: &Path) -> Result<Option<File>, Failure> {
+    let Ok(file) = File::open(path.join("lock")) else { return Ok(None) };
+    match FileExt::try_lock_exclusive(&file) {
+        Ok(true) => Ok(Some(file)),
+        _ => Err(Failure::Held(format!(
+            "A program has {} open. Copy the folder and verify the copy, or verify a backup.",
+            path.display()
+        ))),
+    }
+}
+
 /// The server's own key: made once, readable by its owner alone, not part of a backup.
 fn server_key(path: &Path) -> Result<[u8; 32], Failure> {
     let file = path.join("server.key");

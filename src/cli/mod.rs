@@ -30,6 +30,7 @@ struct Arguments {
 enum Command {
     Serve(serve::Arguments),
     Demo(demo::Arguments),
+    Verify(verify::Arguments),
 }
 
 /// Runs the command of the arguments; 0 where it did what was asked, 1 where not, 2 where it was not understood.
@@ -40,6 +41,7 @@ pub fn run() -> ExitCode {
     let outcome = match Arguments::parse().command {
         Command::Serve(arguments) => serve::run(&arguments),
         Command::Demo(arguments) => demo::run(&arguments),
+        Command::Verify(arguments) => verify::run(&arguments),
     };
     match outcome {
         Ok(()) => ExitCode::SUCCESS,

@@ -101,7 +101,6 @@ impl<'a> Reader<'a> {
     }
 
     /// Walks all rows without keeping them.
-    #[allow(dead_code)] // verification walks whole tables with it
     pub(in crate::store) fn each(
         &self,
         sql: &str,

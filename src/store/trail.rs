@@ -135,7 +135,7 @@ pub(in crate::store) fn seal(change: &Change<'_>) -> Answer<()> {
 }
 
 /// hᵢ = SHA-256(0x02 ‖ hᵢ₋₁ ‖ entryᵢ), decision B1.
-pub(in crate::store) fn link(before: &[u8; 32], entry: &[u8]) -> [u8; 32] {
+pub(in crate::store) fn link(before: &[u8], entry: &[u8]) -> [u8; 32] {
     let mut bytes = Vec::with_capacity(33 + entry.len());
     bytes.push(2);
     bytes.extend_from_slice(before);
@@ -149,28 +149,38 @@ pub(in crate::store) fn seal_of(reader: &Reader<'_>, act: i64) -> Answer<Option<
     })
 }
 
+/// What of an act's row goes into its entry, in this order.
+pub(in crate::store) const ACT_ENTRY: &str = "id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail, reason, session, address, outcome";
+
+/// What of a line goes into its entry, in this order.
+pub(in crate::store) const LINE_ENTRY: &str = "line, record, row, kind, digest, changes";
+
 /// The bytes of one chain entry: the act's row, then its lines in order.
 pub(in crate::store) fn entry_bytes(reader: &Reader<'_>, act: i64) -> Answer<Vec<u8>> {
     let mut encoder = Encoder::new();
     reader.one(
         "act",
-        "select id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail, reason, session,
-             address, outcome
-         from trail_act where id = :act",
+        &format!("select {ACT_ENTRY} from trail_act where id = :act"),
         named_params! { ":act": act },
-        |row| encode_row(&mut encoder, row, 14),
+        |row| encode_row(&mut encoder, row, 0, 14),
     )?;
     let lines = reader.all(
-        "select line, record, row, kind, digest, changes from trail_change where act = :act order by line",
+        &format!("select {LINE_ENTRY} from trail_change where act = :act order by line"),
         named_params! { ":act": act },
-        |row| encode_row(&mut encoder, row, 6),
+        |row| encode_row(&mut encoder, row, 0, 6),
     )?;
     encoder.integer(lines.len() as i64);
     Ok(encoder.bytes().to_vec())
 }
 
-fn encode_row(encoder: &mut Encoder, row: &Row<'_>, columns: usize) -> rusqlite::Result<()> {
-    for column in 0..columns {
+/// Encodes the columns from one position up to, not including, another.
+pub(in crate::store) fn encode_row(
+    encoder: &mut Encoder,
+    row: &Row<'_>,
+    from: usize,
+    to: usize,
+) -> rusqlite::Result<()> {
+    for column in from..to {
         encode(encoder, row.get_ref(column)?);
     }
     Ok(())

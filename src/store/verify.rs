@@ -1,1 +1,0 @@
-//! Verification of chain, seals, rows and signatures.

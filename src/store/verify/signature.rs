@@ -1,0 +1,41 @@
+//! Signatures: each digest is computed again from the record as it stood when it was signed.
+
+use super::Check;
+use crate::domain::digest::sha256_hex;
+use crate::domain::subject::Kind;
+use crate::domain::version::Versioned;
+use crate::store::signature::Signature;
+use crate::store::{Answer, Reader, signature, version};
+
+pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
+    for signed in signature::all(reader)? {
+        check.report.signatures += 1;
+        let record = Some((signed.subject.kind.code(), signed.subject.id));
+        match canonical(reader, &signed) {
+            Ok(Some(text)) if sha256_hex(text.as_bytes()) == signed.digest => {}
+            Ok(Some(_)) => {
+                let sentence = format!("what {} signed is not what stands there", signed.signer_name);
+                check.found(Some(signed.act), record, sentence);
+            }
+            Ok(None) => {}
+            Err(failure) => {
+                let sentence = format!("what {} signed cannot be read: {failure}", signed.signer_name);
+                check.found(Some(signed.act), record, sentence);
+            }
+        }
+    }
+    Ok(())
+}
+
+/// The signed text of a record as of the act of the signature. `None` where the record is covered by the digest of
+/// its row alone.
+fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> {
+    let of_version = |of| Ok(Some(version::get(reader, of, signed.subject.id)?.canonical()));
+    match signed.subject.kind {
+        Kind::FormulationVersion => of_version(Versioned::Formulation),
+        Kind::MethodVersion => of_version(Versioned::Method),
+        Kind::SpecificationVersion => of_version(Versioned::Specification),
+        Kind::ProtocolVersion => of_version(Versioned::Protocol),
+        _ => Ok(None),
+    }
+}
