@@ -150,7 +150,9 @@ pub(in crate::store) fn seal_of(reader: &Reader<'_>, act: i64) -> Answer<Option<
 }
 
 /// What of an act's row goes into its entry, in this order.
-pub(in crate::store) const ACT_ENTRY: &str = "id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail, reason, session, address, outcome";
+pub(in crate::store) const ACT_ENTRY: &str =
+    "id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail, reason, session,
+    address, outcome";
 
 /// What of a line goes into its entry, in this order.
 pub(in crate::store) const LINE_ENTRY: &str = "line, record, row, kind, digest, changes";

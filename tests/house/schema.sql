@@ -66,6 +66,8 @@ CREATE INDEX stage_loss_by_sample on stage_loss (sample);
 
 CREATE INDEX study_by_lot on study (lot);
 
+CREATE INDEX trail_change_update on trail_change (record, row, act) where kind = 'update';
+
 CREATE TABLE account (
     id integer primary key,
     user_name text not null collate nocase unique,

@@ -7,15 +7,18 @@ use crate::domain::digest::{Encoder, hex};
 use crate::store::trail::{ACT_ENTRY, LINE_ENTRY, chain_start, encode_row, link};
 use crate::store::{Answer, Reader};
 
+/// Reads the act of a row and what of the row is kept.
+type Read = fn(&Row<'_>) -> rusqlite::Result<(i64, Vec<u8>)>;
+
 /// The encoded rows of one query in the order of their act, one ahead.
 struct Ahead<'a> {
     rows: Rows<'a>,
     next: Option<(i64, Vec<u8>)>,
-    read: fn(&Row<'_>) -> rusqlite::Result<(i64, Vec<u8>)>,
+    read: Read,
 }
 
 impl<'a> Ahead<'a> {
-    fn over(rows: Rows<'a>, read: fn(&Row<'_>) -> rusqlite::Result<(i64, Vec<u8>)>) -> Answer<Ahead<'a>> {
+    fn over(rows: Rows<'a>, read: Read) -> Answer<Ahead<'a>> {
         let mut ahead = Ahead { rows, next: None, read };
         ahead.step()?;
         Ok(ahead)

@@ -13,7 +13,7 @@ use percent_encoding::{AsciiSet, NON_ALPHANUMERIC, utf8_percent_encode};
 use rusqlite::{Connection, OpenFlags};
 
 use super::door::Current;
-use super::{Answer, Reader, trail};
+use super::{Answer, Reader, trail, trigger};
 use crate::domain::failure::Failure;
 
 /// One thing that does not hold: the entry of the trail, the record, and what is wrong with it.
@@ -166,7 +166,7 @@ impl Copy {
         let flags = OpenFlags::SQLITE_OPEN_READ_ONLY | OpenFlags::SQLITE_OPEN_URI;
         let connection = Connection::open_with_flags(address(path, has_log), flags)?;
         connection.execute_batch("pragma query_only = on; pragma trusted_schema = off;")?;
-        trail::register_functions(&connection, &Arc::new(Current::default()))?;
+        trigger::register_functions(&connection, &Arc::new(Current::default()))?;
         Ok(Copy(connection))
     }
 
