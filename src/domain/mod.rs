@@ -45,6 +45,7 @@ pub mod signature;
 pub mod specification;
 pub mod stage;
 pub mod status;
+pub mod stop;
 pub mod study;
 pub mod subject;
 pub mod throttle;

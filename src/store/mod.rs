@@ -35,6 +35,7 @@ pub mod signature;
 pub mod site;
 pub mod specification;
 pub mod stage;
+pub mod stop;
 pub mod study;
 pub mod submission;
 pub mod trail;

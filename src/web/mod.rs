@@ -49,6 +49,7 @@ pub mod shelf_life;
 pub mod show;
 pub mod specification;
 pub mod static_file;
+pub mod stop;
 pub mod study;
 pub mod version;
 pub mod visit;

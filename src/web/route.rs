@@ -74,6 +74,7 @@ pub fn all() -> Vec<Route> {
         super::shelf_life::ROUTES,
         super::instrument::ROUTES,
         super::qualification::ROUTES,
+        super::stop::ROUTES,
         super::lot::ROUTES,
         super::lot_decision::ROUTES,
         super::condition::ROUTES,
