@@ -53,6 +53,14 @@ pub fn open(path: &Path, durability: Durability) -> Result<Folder, Failure> {
     Ok(Folder { path: path.to_path_buf(), db, secrets, site, _lock: lock })
 }
 
+/// Refuses a folder that holds no data, so that a mistyped name does not make a new one.
+pub fn must_exist(path: &Path) -> Result<(), Failure> {
+    if database_of(path).is_file() {
+        return Ok(());
+    }
+    Err(Failure::Held(format!("{} is no data folder. Name one with --data.", path.display())))
+}
+
 fn lock(path: &Path) -> Result<File, Failure> {
     let file = OpenOptions::new().create(true).truncate(false).write(true).open(path.join("lock"))?;
     match FileExt::try_lock_exclusive(&file) {

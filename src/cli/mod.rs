@@ -31,6 +31,9 @@ enum Command {
     Serve(serve::Arguments),
     Demo(demo::Arguments),
     Verify(verify::Arguments),
+    Backup(backup::Arguments),
+    Restore(restore::Arguments),
+    Account(account::Arguments),
 }
 
 /// Runs the command of the arguments; 0 where it did what was asked, 1 where not, 2 where it was not understood.
@@ -42,6 +45,9 @@ pub fn run() -> ExitCode {
         Command::Serve(arguments) => serve::run(&arguments),
         Command::Demo(arguments) => demo::run(&arguments),
         Command::Verify(arguments) => verify::run(&arguments),
+        Command::Backup(arguments) => backup::run(&arguments),
+        Command::Restore(arguments) => restore::run(&arguments),
+        Command::Account(arguments) => account::run(&arguments),
     };
     match outcome {
         Ok(()) => ExitCode::SUCCESS,

@@ -13,7 +13,7 @@ use percent_encoding::{AsciiSet, NON_ALPHANUMERIC, utf8_percent_encode};
 use rusqlite::{Connection, OpenFlags};
 
 use super::door::Current;
-use super::{Answer, Reader, trail, trigger};
+use super::{Answer, Reader, migrate, trail, trigger};
 use crate::domain::failure::Failure;
 
 /// One thing that does not hold: the entry of the trail, the record, and what is wrong with it.
@@ -152,22 +152,36 @@ fn guards(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     Ok(())
 }
 
-/// A database opened for verification alone. Nothing is written beside it where it has no write-ahead log.
+/// A database opened for reading alone, outside the one door.
 pub struct Copy(Connection);
 
 impl Copy {
-    /// Opens the file read-only.
+    /// Opens a file that nobody writes to. Nothing appears beside it where it has no write-ahead log.
     pub fn open(path: &Path) -> Answer<Copy> {
+        let log = PathBuf::from(format!("{}-wal", path.display()));
+        let has_log = std::fs::metadata(log).is_ok_and(|log| log.len() > 0);
+        Copy::open_as(path, !has_log)
+    }
+
+    /// Opens a file that a running program may be writing to.
+    pub fn open_live(path: &Path) -> Answer<Copy> {
+        Copy::open_as(path, false)
+    }
+
+    fn open_as(path: &Path, is_still: bool) -> Answer<Copy> {
         if !path.is_file() {
             return Err(Failure::missing(format!("database {}", path.display())));
         }
-        let log = PathBuf::from(format!("{}-wal", path.display()));
-        let has_log = std::fs::metadata(log).is_ok_and(|log| log.len() > 0);
         let flags = OpenFlags::SQLITE_OPEN_READ_ONLY | OpenFlags::SQLITE_OPEN_URI;
-        let connection = Connection::open_with_flags(address(path, has_log), flags)?;
+        let connection = Connection::open_with_flags(address(path, is_still), flags)?;
         connection.execute_batch("pragma query_only = on; pragma trusted_schema = off;")?;
         trigger::register_functions(&connection, &Arc::new(Current::default()))?;
         Ok(Copy(connection))
+    }
+
+    /// Writes all of it into a new file, as one snapshot, checks that file and syncs it.
+    pub fn copy_to(&self, to: &Path) -> Answer<()> {
+        migrate::copy_online(&self.0, to)
     }
 
     /// Reads inside one snapshot.
@@ -179,10 +193,10 @@ impl Copy {
     }
 }
 
-/// A file without a log is opened as one that nobody changes, so that not even a lock file appears beside it.
-fn address(path: &Path, has_log: bool) -> String {
+/// A still file is opened as one that nobody changes, so that not even a lock file appears beside it.
+fn address(path: &Path, is_still: bool) -> String {
     const KEPT: &AsciiSet = &NON_ALPHANUMERIC.remove(b'/').remove(b'.').remove(b'-').remove(b'_');
     let full = path.canonicalize().unwrap_or_else(|_| path.to_path_buf());
     let encoded = utf8_percent_encode(&full.to_string_lossy(), KEPT).to_string();
-    if has_log { format!("file:{encoded}") } else { format!("file:{encoded}?immutable=1") }
+    if is_still { format!("file:{encoded}?immutable=1") } else { format!("file:{encoded}") }
 }
