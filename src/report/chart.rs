@@ -1,1 +1,0 @@
-//! Trend charts as SVG.
