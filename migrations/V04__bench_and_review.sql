@@ -142,14 +142,19 @@ when new.verdict = 'checked' and exists (
     where r.sample_test = new.sample_test and a.account = new.account)
 begin select raise(abort, 'the checker is not a reader'); end;
 
+-- A reviewer's answer to an exception: of a flag, or of what the record itself shows (`about`: "corrections 2",
+-- "late pull"). Another correction makes another `about`, so an old answer does not cover it.
 create table exception_answer (
     id integer primary key,
-    flag integer not null references flag (id),
+    sample integer not null references sample (id),
+    flag integer references flag (id),
+    about text not null,
     answer text not null,
     account integer not null references account (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
-create index exception_answer_by_flag on exception_answer (flag);
+create index exception_answer_by_sample on exception_answer (sample);
+create index exception_answer_by_flag on exception_answer (flag) where flag is not null;
 
 -- What a reviewer decided after looking at a sample's whole content, named by its digest.
 create table review_decision (
@@ -169,5 +174,5 @@ when new.kind = 'sample' and new.meaning = 'review' and (exists (
     select 1 from reading r join sample_test t on t.id = r.sample_test join trail_act a on a.id = r.act
     where t.sample = new.subject and a.account = new.account) or exists (
     select 1 from result_check c join sample_test t on t.id = c.sample_test
-    where t.sample = new.subject and c.account = new.account))
+    where t.sample = new.subject and c.account = new.account and c.verdict = 'checked'))
 begin select raise(abort, 'the reviewer is not a performer'); end;

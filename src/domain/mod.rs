@@ -40,6 +40,7 @@ pub mod role;
 pub mod rounding;
 pub mod sample;
 pub mod setting;
+pub mod series;
 pub mod shelf_life;
 pub mod signature;
 pub mod specification;

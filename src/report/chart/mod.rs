@@ -5,6 +5,7 @@
 //! told by its shape. A pull without a result leaves a gap that no line crosses.
 
 pub mod draw;
+pub mod from_series;
 pub mod scale;
 pub mod words;
 
