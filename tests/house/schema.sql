@@ -10,7 +10,9 @@ CREATE INDEX container_event_by_container on container_event (container);
 
 CREATE INDEX container_event_by_pull on container_event (pull) where pull is not null;
 
-CREATE INDEX exception_answer_by_flag on exception_answer (flag);
+CREATE INDEX exception_answer_by_flag on exception_answer (flag) where flag is not null;
+
+CREATE INDEX exception_answer_by_sample on exception_answer (sample);
 
 CREATE INDEX flag_by_result on flag (result);
 
@@ -192,7 +194,9 @@ CREATE TABLE draft (
 
 CREATE TABLE exception_answer (
     id integer primary key,
-    flag integer not null references flag (id),
+    sample integer not null references sample (id),
+    flag integer references flag (id),
+    about text not null,
     answer text not null,
     account integer not null references account (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
@@ -762,7 +766,7 @@ when new.kind = 'sample' and new.meaning = 'review' and (exists (
     select 1 from reading r join sample_test t on t.id = r.sample_test join trail_act a on a.id = r.act
     where t.sample = new.subject and a.account = new.account) or exists (
     select 1 from result_check c join sample_test t on t.id = c.sample_test
-    where t.sample = new.subject and c.account = new.account))
+    where t.sample = new.subject and c.account = new.account and c.verdict = 'checked'))
 begin select raise(abort, 'the reviewer is not a performer'); end;
 
 CREATE TRIGGER guard_signature_system before insert on signature
