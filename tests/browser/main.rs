@@ -1,0 +1,13 @@
+//! Journeys in a real headless Chromium, with the script module and without, and every page under the
+//! accessibility checker. `tests/run` installs what is needed.
+
+#[path = "../support/mod.rs"]
+mod support;
+
+mod audit;
+mod browser;
+mod driver;
+mod pages;
+mod people;
+mod print;
+mod site;
