@@ -75,7 +75,7 @@ create table result (
     qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'none')),
     shown text not null,                    -- rounded as the method says, or the words
     unit text not null,
-    verdict text not null check (verdict in ('conforms', 'out of specification', 'no limit', 'no reportable value',
+    verdict text not null check (verdict in ('conforms', 'out of specification', 'outside in-use limit', 'no limit', 'no reportable value',
         'not judged')),
     detail text not null,                   -- JSON: replicates used, mean, spread, limits, way of comparing
     sd text,                                -- imported means carry their spread and number

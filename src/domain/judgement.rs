@@ -1,1 +1,0 @@
-//! From readings to a reportable value and its verdict.
