@@ -43,6 +43,7 @@ pub mod series;
 pub mod setting;
 pub mod shelf_life;
 pub mod signature;
+pub mod slot;
 pub mod specification;
 pub mod stage;
 pub mod status;

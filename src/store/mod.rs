@@ -2,6 +2,7 @@
 
 pub mod account;
 pub mod attachment;
+pub mod bench;
 pub mod chamber;
 pub mod check;
 pub mod condition;
