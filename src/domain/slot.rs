@@ -329,8 +329,8 @@ fn cylinder_fields(planned_minutes: &[u32], vessel_ml: Decimal, decimals: u32) -
 pub fn minutes_words(minutes: u32) -> String {
     match minutes {
         0..=119 => format!("{minutes} min"),
-        _ if minutes % 1440 == 0 => format!("{} d", minutes / 1440),
-        _ if minutes % 60 == 0 => format!("{} h", minutes / 60),
+        _ if minutes.is_multiple_of(1440) => format!("{} d", minutes / 1440),
+        _ if minutes.is_multiple_of(60) => format!("{} h", minutes / 60),
         _ => format!("{} h {} min", minutes / 60, minutes % 60),
     }
 }

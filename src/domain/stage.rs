@@ -144,14 +144,14 @@ mod tests {
         let lost = |container: Option<i64>, stage| {
             vec![StageLoss { container, stage, why: "the bottle fell over".to_string() }]
         };
-        let table: Vec<(Vec<StageTest>, Vec<StageLoss>, Stage, Option<i64>, &str)> = vec![
-            (bench(false, false, false), vec![], BeforeDisturbance, Some(1), ""),
-            (bench(false, false, false), vec![], Redispersion, Some(1), "StageNotOpen"),
-            (bench(true, false, false), vec![], Redispersion, Some(1), ""),
-            (bench(true, false, false), vec![], Redispersion, Some(2), "StageNotOpen"),
-            (bench(true, false, true), vec![], BeforeDisturbance, Some(1), "StagePassed"),
-            (bench(true, false, true), vec![], BeforeDisturbance, Some(2), ""),
-            (bench(true, true, true), vec![], AfterRedispersion, None, "StageNotOpen"),
+        let table = [
+            (bench(false, false, false), Vec::new(), BeforeDisturbance, Some(1), ""),
+            (bench(false, false, false), Vec::new(), Redispersion, Some(1), "StageNotOpen"),
+            (bench(true, false, false), Vec::new(), Redispersion, Some(1), ""),
+            (bench(true, false, false), Vec::new(), Redispersion, Some(2), "StageNotOpen"),
+            (bench(true, false, true), Vec::new(), BeforeDisturbance, Some(1), "StagePassed"),
+            (bench(true, false, true), Vec::new(), BeforeDisturbance, Some(2), ""),
+            (bench(true, true, true), Vec::new(), AfterRedispersion, None, "StageNotOpen"),
             (bench(true, false, false), lost(Some(2), BeforeDisturbance), Redispersion, Some(2), ""),
             (bench(true, true, true), lost(Some(2), Redispersion), AfterRedispersion, None, ""),
             (bench(true, true, true), lost(Some(2), Redispersion), Redispersion, Some(2), "StageLost"),
