@@ -30,6 +30,7 @@ struct Arguments {
 enum Command {
     Serve(serve::Arguments),
     Demo(demo::Arguments),
+    Import(import::Arguments),
     Verify(verify::Arguments),
     Backup(backup::Arguments),
     Restore(restore::Arguments),
@@ -44,6 +45,7 @@ pub fn run() -> ExitCode {
     let outcome = match Arguments::parse().command {
         Command::Serve(arguments) => serve::run(&arguments),
         Command::Demo(arguments) => demo::run(&arguments),
+        Command::Import(arguments) => import::run(&arguments),
         Command::Verify(arguments) => verify::run(&arguments),
         Command::Backup(arguments) => backup::run(&arguments),
         Command::Restore(arguments) => restore::run(&arguments),

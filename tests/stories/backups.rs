@@ -139,8 +139,30 @@ fn a_folder_in_use_is_not_verified_and_a_mistyped_one_is_not_made() {
 
 #[test]
 fn every_command_explains_itself() {
-    for name in ["serve", "demo", "verify", "backup", "restore", "account"] {
+    for name in ["serve", "demo", "import", "verify", "backup", "restore", "account"] {
         let output = command(&[name, "--help"], "");
         assert!(output.status.success() && said(&output).contains("Usage: supernate"), "{name}");
     }
+}
+
+/// A newcomer's first command: a folder that does not exist is made, and the file is in it.
+#[test]
+fn a_file_is_imported_from_the_command_line() {
+    let elsewhere = Scratch::new();
+    let data = elsewhere.0.join("new");
+    let file = concat!(env!("CARGO_MANIFEST_DIR"), "/tests/numbers/data/suspensions/tacrolimus_cjhp2017.csv");
+    let preview = command(&["import", file, "--data", text(&data), "--preview"], "");
+    assert!(said(&preview).contains("would bring 128 results") && !data.exists(), "{}", said(&preview));
+    let imported = command(&["import", file, "--data", text(&data)], "");
+    let words = "Imported 128 results: 1 product, 2 lots, 2 studies, 8 arms, 64 pulls";
+    assert!(imported.status.success() && said(&imported).contains(words), "{}", said(&imported));
+    let again = command(&["import", file, "--data", text(&data)], "");
+    assert!(again.status.code() == Some(1) && said(&again).contains("imported before"), "{}", said(&again));
+    let other = concat!(
+        env!("CARGO_MANIFEST_DIR"),
+        "/tests/numbers/data/suspensions/settling_usgs_withdrawal_times.csv"
+    );
+    let refused = command(&["import", other, "--data", text(&data)], "");
+    assert!(said(&refused).contains("Line 1: The first line does not name"), "{}", said(&refused));
+    assert!(command(&["verify", text(&data)], "").status.success());
 }
