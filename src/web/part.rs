@@ -49,6 +49,8 @@ fn slug(status: Status) -> &'static str {
 #[derive(Clone, Debug, Template)]
 #[template(path = "part/trail.html")]
 pub struct Trail {
+    /// What the table is called.
+    pub name: String,
     pub lines: Vec<TrailLine>,
 }
 
@@ -70,7 +72,10 @@ pub struct TrailLine {
 
 impl Trail {
     pub fn of(lines: &[ActLine], zone: Tz) -> Trail {
-        Trail { lines: lines.iter().map(|line| trail_line(line, zone)).collect() }
+        Trail {
+            name: "History".to_string(),
+            lines: lines.iter().map(|line| trail_line(line, zone)).collect(),
+        }
     }
 }
 

@@ -10,8 +10,9 @@ use crate::domain::failure::Failure;
 
 pub const ROUTES: &[Route] = &[public("/static/{digest}/{name}", file)];
 
-const FILES: [(&str, &str, &str); 3] = [
+const FILES: [(&str, &str, &str); 4] = [
     ("mark.svg", "image/svg+xml", include_str!("../../templates/static/mark.svg")),
+    ("patterns-photo.svg", "image/svg+xml", include_str!("../../templates/static/patterns-photo.svg")),
     ("look.css", "text/css; charset=utf-8", include_str!("../../templates/static/look.css")),
     ("supernate.mjs", "text/javascript; charset=utf-8", include_str!("../../templates/static/supernate.mjs")),
 ];

@@ -301,6 +301,7 @@ function previewTable(cells) {
     return row;
   });
   const table = element("table");
+  table.createCaption().textContent = "What the block would fill";
   table.createTBody().append(...rows);
   return table;
 }

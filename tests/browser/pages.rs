@@ -2,11 +2,12 @@
 
 use std::collections::{BTreeMap, BTreeSet, VecDeque};
 
+use scraper::{Html, Selector};
 use supernate::web::route;
 
 use super::browser::{Browser, Script};
 use super::site::Site;
-use super::support::Lab;
+use super::support::{Lab, Seen};
 
 /// Whose pages are walked.
 const WALKERS: [&str; 6] =
@@ -29,8 +30,20 @@ fn kind_of(path: &str) -> Option<&'static str> {
     kinds.into_iter().min_by_key(|kind| kind.matches('{').count())
 }
 
-/// Pages that this person reaches by links and by the addresses without a record, two of each kind.
-fn reached(lab: &Lab, user_name: &str) -> BTreeMap<&'static str, Vec<String>> {
+/// A kind of page with the forms on it: the same address may offer other acts to another person.
+type Shape = (&'static str, Vec<String>);
+
+/// What the forms of the main part do, without the numbers of records.
+fn acts_of(seen: &Seen) -> Vec<String> {
+    let page = Html::parse_document(&seen.html());
+    let forms = Selector::parse("main form[action]").unwrap();
+    let actions = page.select(&forms).filter_map(|form| form.value().attr("action"));
+    let without_numbers = |action: &str| action.replace(|letter: char| letter.is_ascii_digit(), "");
+    actions.map(without_numbers).collect::<BTreeSet<String>>().into_iter().collect()
+}
+
+/// Pages that this person reaches by links and by the addresses without a record, two of each shape.
+fn reached(lab: &Lab, user_name: &str) -> BTreeMap<Shape, Vec<String>> {
     let mut queue: VecDeque<String> = route::all()
         .iter()
         .filter(|route| !route.is_post && !route.path.contains('{'))
@@ -38,7 +51,7 @@ fn reached(lab: &Lab, user_name: &str) -> BTreeMap<&'static str, Vec<String>> {
         .collect();
     let mut met: BTreeSet<String> = queue.iter().cloned().collect();
     let mut followed: BTreeMap<&'static str, usize> = BTreeMap::new();
-    let mut pages: BTreeMap<&'static str, Vec<String>> = BTreeMap::new();
+    let mut pages: BTreeMap<Shape, Vec<String>> = BTreeMap::new();
     while let Some(path) = queue.pop_front() {
         let Some(kind) = kind_of(path.split('?').next().unwrap_or_default()) else { continue };
         let times = followed.entry(kind).or_default();
@@ -52,7 +65,7 @@ fn reached(lab: &Lab, user_name: &str) -> BTreeMap<&'static str, Vec<String>> {
         if seen.status != 200 || !is_page || seen.headers.contains_key("content-disposition") {
             continue;
         }
-        let kept = pages.entry(kind).or_default();
+        let kept = pages.entry((kind, acts_of(&seen))).or_default();
         if kept.len() < LOOKED_AT {
             kept.push(path.clone());
         }
@@ -74,12 +87,12 @@ fn every_page_is_clean_in_both_themes_wide_and_narrow() {
     let mut faults = Vec::new();
     browser.open("/sign-in");
     faults.extend(browser.faults());
-    let mut looked_at: BTreeMap<&'static str, BTreeSet<String>> = BTreeMap::new();
+    let mut looked_at: BTreeMap<Shape, BTreeSet<String>> = BTreeMap::new();
     for walker in WALKERS {
         browser.is(walker);
-        for (kind, paths) in reached(&site.lab, walker) {
+        for (shape, paths) in reached(&site.lab, walker) {
             for path in paths {
-                let known = looked_at.entry(kind).or_default();
+                let known = looked_at.entry(shape.clone()).or_default();
                 if known.len() < LOOKED_AT && known.insert(path.clone()) {
                     browser.open(&path);
                     faults.extend(browser.faults());

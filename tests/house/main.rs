@@ -4,6 +4,7 @@
 mod support;
 
 mod arrows;
+mod contrast;
 mod coverage;
 mod schema;
 mod sizes;
