@@ -3,6 +3,8 @@
 
 #![allow(dead_code)]
 
+pub mod world;
+
 use std::path::PathBuf;
 use std::sync::atomic::{AtomicI64, AtomicU64, Ordering};
 use std::sync::{Arc, LazyLock, Mutex};

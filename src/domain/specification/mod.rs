@@ -1,5 +1,7 @@
 //! A specification version: which limits hold for which test, at release and over the shelf life.
 
+pub mod rule;
+
 use rust_decimal::Decimal;
 use serde::{Deserialize, Serialize};
 

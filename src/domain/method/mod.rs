@@ -1,5 +1,8 @@
 //! A method version: how a test is done, what is read, what is reported.
 
+pub mod preset;
+pub mod rule;
+
 use rust_decimal::Decimal;
 use serde::{Deserialize, Serialize};
 

@@ -1,0 +1,177 @@
+//! Ready-made records of the small named world, made by the same acts a person does.
+
+use rust_decimal::Decimal;
+use supernate::acts;
+use supernate::acts::method::NewMethod;
+use supernate::acts::secret::Secrets;
+use supernate::acts::signature::{Approval, Authorship, Means, Signed, authenticate};
+use supernate::domain::actor::Actor;
+use supernate::domain::method::{
+    Component, Formula, Input, MethodContent, Reportable, Settings, TestKind, preset,
+};
+use supernate::domain::specification::{Limit, Range, SpecificationContent, TestLimits, Way};
+use supernate::domain::version::Versioned;
+use supernate::store;
+
+use super::{Lab, PASSWORD};
+
+/// A signature of a person of the laboratory.
+pub fn signed<M: Means>(lab: &Lab, actor: &Actor) -> Signed<M> {
+    let secrets: &Secrets = &lab.app.secrets;
+    let user_name = lab.app.db.read(|reader| store::account::get(reader, actor.account)).unwrap().user_name;
+    authenticate::<M>(&lab.app.db, secrets, actor, &user_name, PASSWORD).unwrap()
+}
+
+/// Author and a second person sign a version of any definition.
+pub fn approve(lab: &Lab, of: Versioned, id: i64, author: &str, approver: &str) {
+    let db = &lab.app.db;
+    let (author, approver) = (lab.actor(author), lab.actor(approver));
+    let seen = db.read(|reader| store::version::get(reader, of, id)).unwrap().digest();
+    let check: acts::version::ContentCheck<'_> = match of {
+        Versioned::Method => &acts::method::check,
+        Versioned::Specification => &acts::specification::check,
+        _ => &acts::version::unchecked,
+    };
+    let own = signed::<Authorship>(lab, &author);
+    acts::version::sign(db, &author, of, id, &seen, &own, check).unwrap();
+    let second = signed::<Approval>(lab, &approver);
+    acts::version::approve(db, &approver, of, id, &seen, &second, check).unwrap();
+}
+
+/// The approved version of the kind's method, made the first time it is asked for: code `M-PH`, `M-VISCOSITY` …
+pub fn approved_method(lab: &Lab, kind: TestKind) -> i64 {
+    let code = format!("M-{}", kind.code().to_uppercase());
+    method_with(lab, &code, kind.words(), method_content(kind))
+}
+
+/// An approved method with this content; the same code again gives the same version.
+pub fn method_with(lab: &Lab, code: &str, name: &str, content: MethodContent) -> i64 {
+    let db = &lab.app.db;
+    let known = db.read(store::method::approved_versions).unwrap();
+    if let Some(found) = known.into_iter().find(|version| version.code == code) {
+        return found.id;
+    }
+    let new = NewMethod { code: code.to_string(), name: name.to_string(), content };
+    let id = acts::method::add(db, &lab.actor("maren.oddy"), &new).unwrap();
+    approve(lab, Versioned::Method, id, "maren.oddy", "otis.vane");
+    id
+}
+
+/// The preset of the kind; the numeric test is an assay by weight and dilution.
+pub fn method_content(kind: TestKind) -> MethodContent {
+    let mut content = preset::of(kind);
+    if kind == TestKind::Numeric {
+        content.unit = "%".to_string();
+        content.rounding.to = supernate::domain::method::RoundTo::Decimals(1);
+        content.reportable =
+            Reportable::Mean { range_at_most: None, rsd_percent_at_most: Some(Decimal::from(2)) };
+        content.settings = Settings::Numeric {
+            inputs: vec![input("found", "Found", "mg/mL"), input("declared", "Declared", "mg/mL")],
+            formula: Some(Formula {
+                expression: "found × 100 ÷ declared".to_string(),
+                example_inputs: vec![
+                    ("found".to_string(), Decimal::new(395, 1)),
+                    ("declared".to_string(), Decimal::from(40)),
+                ],
+                example_result: Decimal::new(988, 1),
+            }),
+            components: Vec::new(),
+            has_total: false,
+        };
+    }
+    content
+}
+
+fn input(code: &str, label: &str, unit: &str) -> Input {
+    Input { code: code.to_string(), label: label.to_string(), unit: unit.to_string(), decimals: 2 }
+}
+
+/// The approved method of degradation products: A, unspecified ones, and their total.
+pub fn approved_degradation_method(lab: &Lab) -> i64 {
+    let component = |code: &str, title: &str, is_unspecified: bool| Component {
+        code: code.to_string(),
+        title: title.to_string(),
+        is_unspecified,
+        reporting_threshold: Some(Decimal::new(5, 2)),
+    };
+    let mut content = preset::of(TestKind::Numeric);
+    content.unit = "%".to_string();
+    content.replicates = 1;
+    content.reportable = Reportable::EachContainer;
+    content.settings = Settings::Numeric {
+        inputs: Vec::new(),
+        formula: None,
+        components: vec![
+            component("a", "Degradation product A", false),
+            component("unspecified", "Unspecified", true),
+        ],
+        has_total: true,
+    };
+    method_with(lab, "M-DEGRADATION", "Degradation products", content)
+}
+
+/// The test code a kind goes by in specifications, results and charts.
+pub fn test_code(kind: TestKind) -> &'static str {
+    if kind == TestKind::Numeric { "assay" } else { kind.code() }
+}
+
+/// Limits of the kind's usual test: release, shelf life and in use.
+pub fn test_limits(lab: &Lab, kind: TestKind) -> TestLimits {
+    let version = approved_method(lab, kind);
+    let method = lab.app.db.read(|reader| store::method::version(reader, version)).unwrap();
+    let (release, shelf_life, in_use) = match kind {
+        TestKind::Appearance => {
+            let life = grades(&[("clarity", &["0", "1"]), ("caking", &["0", "1"]), ("colour", &["match"])]);
+            (grades(&[("caking", &["0"]), ("colour", &["match"])]), life, Limit::None)
+        }
+        TestKind::AsStoredSediment => (Limit::None, between("0.60", ""), Limit::None),
+        TestKind::Redispersibility => (between("", "10"), between("", "20"), between("", "20")),
+        TestKind::Ph => (between("6.20", "7.20"), between("6.00", "7.50"), between("6.00", "7.50")),
+        TestKind::Viscosity => (between("800", "1400"), between("600", "1600"), Limit::None),
+        TestKind::Sedimentation => (between("0.90", ""), between("0.80", ""), Limit::None),
+        TestKind::Numeric => (between("97.0", "103.0"), between("95.0", "105.0"), Limit::None),
+    };
+    TestLimits {
+        test: test_code(kind).to_string(),
+        title: if kind == TestKind::Numeric { "Assay".to_string() } else { kind.words().to_string() },
+        method: method.method,
+        unit: method.content.unit,
+        release,
+        shelf_life,
+        in_use,
+        way: Way::Rounding,
+    }
+}
+
+/// `between("6.00", "7.50")`; an empty end is open.
+pub fn between(lower: &str, upper: &str) -> Limit {
+    let Range { lower, upper } = range(lower, upper);
+    Limit::Between { lower, upper }
+}
+
+pub fn range(lower: &str, upper: &str) -> Range {
+    let end = |text: &str| (!text.is_empty()).then(|| text.parse().unwrap());
+    Range { lower: end(lower), upper: end(upper) }
+}
+
+pub fn grades(attributes: &[(&str, &[&str])]) -> Limit {
+    let one = |(code, grades): &(&str, &[&str])| {
+        (code.to_string(), grades.iter().map(|grade| grade.to_string()).collect())
+    };
+    Limit::Grades(attributes.iter().map(one).collect())
+}
+
+/// The approved specification version of a presentation with these kinds of test, made the first time.
+pub fn approved_specification(lab: &Lab, presentation: i64, kinds: &[TestKind]) -> i64 {
+    let db = &lab.app.db;
+    let known = db.read(|reader| store::specification::approved_of(reader, presentation)).unwrap();
+    if let Some(found) = known {
+        return found.id;
+    }
+    let tests = kinds.iter().map(|kind| test_limits(lab, *kind)).collect();
+    let code = format!("S-{presentation}");
+    let content = SpecificationContent { tests };
+    let id = acts::specification::add(db, &lab.actor("maren.oddy"), &code, presentation, &content).unwrap();
+    approve(lab, Versioned::Specification, id, "maren.oddy", "ada.whitlock");
+    id
+}
