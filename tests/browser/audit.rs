@@ -29,8 +29,12 @@ impl Browser<'_> {
     /// What is wrong with the open page, each fault with the views where it is. With PICTURES=1 each view is
     /// also kept as a picture in `target/screenshots`.
     pub fn faults(&self) -> Vec<String> {
+        self.faults_in(&VIEWS)
+    }
+
+    pub fn faults_in(&self, views: &[(u32, u32, &str)]) -> Vec<String> {
         let mut all: BTreeMap<String, Vec<String>> = BTreeMap::new();
-        for (width, height, theme) in VIEWS {
+        for &(width, height, theme) in views {
             self.is_sized(width, height);
             self.prefers(theme);
             if std::env::var_os("PICTURES").is_some() {

@@ -125,6 +125,22 @@ impl<'a> Browser<'a> {
         RUNTIME.block_on(element.click()).unwrap();
     }
 
+    /// Presses the main button of the page's form as the form stands; false where there is none.
+    pub fn sends_main_form(&self) -> bool {
+        let Some(button) = self.shown("//main//form//button[contains(@class, 'primary')]") else {
+            return false;
+        };
+        RUNTIME.block_on(button.click()).unwrap();
+        true
+    }
+
+    /// Chooses a file of this machine in the field under this label.
+    pub fn chooses(&self, label: &str, file: &std::path::Path) {
+        let path = format!("//input[@type='file'][@id=//label[normalize-space(.)='{label}']/@for]");
+        let element = self.waits_for(&path, &format!("the field “{label}”"));
+        RUNTIME.block_on(element.send_keys(file.to_str().unwrap())).unwrap();
+    }
+
     /// Fills the field under this label, replacing what it holds; a select takes the option with these words.
     pub fn fill(&self, label: &str, value: &str) {
         let path = format!(
