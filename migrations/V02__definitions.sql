@@ -159,7 +159,7 @@ create table shelf_life_assignment (
     basis text not null check (basis in ('tentative', 'verified')),
     reference text not null,
     effective_from text not null,
-    expiry_format text not null check (expiry_format in ('day', 'month')),
+    expiry_format text not null check (expiry_format in ('day', 'month', 'month end')),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 create index shelf_life_by_presentation on shelf_life_assignment (presentation, effective_from);

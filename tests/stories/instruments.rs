@@ -1,10 +1,12 @@
 //! Instruments, qualifications, and stops that QA lifts for a day.
 
 use supernate::domain::instrument::may_use;
+use supernate::domain::method::TestKind;
+use supernate::domain::qualification::may_test;
 use supernate::domain::refusal::Refusal;
 use supernate::store;
 
-use crate::support::Lab;
+use crate::support::{Lab, world};
 
 fn ph_meter(lab: &Lab) -> String {
     let fields = [
@@ -151,4 +153,52 @@ fn a_code_is_never_used_twice() {
     assert_eq!(seen.status, 409);
     assert!(seen.text().contains("Codes are never used twice"));
     assert_eq!(lab.manager().get("/instruments/1/no-such-page").status, 404);
+}
+
+/// Decision A10: person × method version, with an end date; a stop is lifted for one day by QA.
+#[test]
+fn a_person_is_qualified_for_a_method_version_until_a_day() {
+    let lab = Lab::new();
+    let method = world::approved_method(&lab, TestKind::Ph);
+    let rafe = lab.actor("rafe.tolland").account;
+    let may = || {
+        let today = lab.now().date();
+        let facts =
+            lab.app.db.read(|reader| store::qualification::facts(reader, rafe, method, today)).unwrap();
+        may_test(&facts, today).map_err(|refusal| Refusal::from(refusal).name)
+    };
+    assert_eq!(may(), Err("NotQualified".to_string()));
+    let (person, version) = (rafe.to_string(), method.to_string());
+    let fields = [
+        ("account", &*person),
+        ("method_version", &*version),
+        ("starts_on", "1 dec 2026"),
+        ("ends_on", "31 dec 2026"),
+        ("reference", "training record 14"),
+    ];
+    lab.manager().does("/qualifications/new", "/qualifications/new", &fields);
+    assert_eq!(may(), Ok(()));
+    lab.auditor().sees("/qualifications", "training record 14");
+    lab.clock("2027-01-01T09:00:00Z");
+    assert_eq!(may(), Err("QualificationEnded".to_string()));
+    let lifts = [
+        ("stop", "qualification"),
+        ("account", &*person),
+        ("method_version", &*version),
+        ("reason", "Renewal test done today, result within limits, papers follow"),
+    ];
+    lab.reviewer().signs("/overrides/new", "/overrides/new", &lifts);
+    assert_eq!(may(), Ok(()));
+    lab.auditor().sees("/overrides", "qualification of Rafe Tolland for M-PH version 1");
+
+    let own = [("account", &*lab.actor("maren.oddy").account.to_string()), fields[1], fields[3], fields[4]];
+    let late: Vec<_> = own
+        .iter()
+        .copied()
+        .filter(|(name, _)| *name != "ends_on")
+        .chain([("ends_on", "1 dec 2027")])
+        .collect();
+    let seen = lab.manager().submits("/qualifications/new", "/qualifications/new", &late);
+    assert_eq!(seen.status, 409);
+    assert!(seen.text().contains("recorded by somebody else"));
 }

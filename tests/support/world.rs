@@ -6,9 +6,12 @@ use supernate::acts::method::NewMethod;
 use supernate::acts::secret::Secrets;
 use supernate::acts::signature::{Approval, Authorship, Means, Signed, authenticate};
 use supernate::domain::actor::Actor;
+use supernate::domain::formulation::{FormulationContent, Ingredient, IntendedState, NewFormulation};
+use supernate::domain::material::NewMaterial;
 use supernate::domain::method::{
     Component, Formula, Input, MethodContent, Reportable, Settings, TestKind, preset,
 };
+use supernate::domain::product::{NewPresentation, NewProduct};
 use supernate::domain::specification::{Limit, Range, SpecificationContent, TestLimits, Way};
 use supernate::domain::version::Versioned;
 use supernate::store;
@@ -174,4 +177,81 @@ pub fn approved_specification(lab: &Lab, presentation: i64, kinds: &[TestKind]) 
     let id = acts::specification::add(db, &lab.actor("maren.oddy"), &code, presentation, &content).unwrap();
     approve(lab, Versioned::Specification, id, "maren.oddy", "ada.whitlock");
     id
+}
+
+/// An own product with this code, an oral suspension.
+pub fn product(lab: &Lab, code: &str) -> i64 {
+    let new = NewProduct {
+        code: code.to_string(),
+        name: "Antacid oral suspension".to_string(),
+        dosage_form: "oral suspension".to_string(),
+        customer: None,
+    };
+    acts::product::add(&lab.app.db, &lab.actor("maren.oddy"), &new).unwrap()
+}
+
+/// A presentation of a product in 200 mL bottles.
+pub fn presentation(lab: &Lab, product: i64, code: &str) -> i64 {
+    let new = NewPresentation {
+        product,
+        code: code.to_string(),
+        strength: "400 mg/5 mL".to_string(),
+        pack: "200 mL amber PET bottle".to_string(),
+        container_word: "bottle".to_string(),
+        fill_ml: Some(Decimal::from(200)),
+        market: "United Kingdom".to_string(),
+        permeability: "semi-permeable".to_string(),
+    };
+    acts::product::add_presentation(&lab.app.db, &lab.actor("maren.oddy"), &new).unwrap()
+}
+
+pub fn material(lab: &Lab, code: &str, name: &str, function: &str) -> i64 {
+    let new = NewMaterial {
+        code: code.to_string(),
+        name: name.to_string(),
+        function: function.to_string(),
+        density_g_per_ml: None,
+    };
+    acts::material::add(&lab.app.db, &lab.actor("tomas.reyle"), &new).unwrap()
+}
+
+/// A formulation of a product without a version.
+pub fn formulation(lab: &Lab, product: i64, code: &str) -> i64 {
+    let new = NewFormulation { product, code: code.to_string(), name: "Xanthan and cellulose".to_string() };
+    acts::formulation::add(&lab.app.db, &lab.actor("tomas.reyle"), &new).unwrap()
+}
+
+/// An approved formulation version of a product: magnesium hydroxide in xanthan and water.
+pub fn approved_formulation(lab: &Lab, product: i64) -> i64 {
+    let code = format!("F-{product}");
+    let formulation = formulation(lab, product, &code);
+    let row = |number: i64, name: &str, function: &str, quantity: &str, is_quantity_sufficient: bool| {
+        let material_code = format!("M-{product}-{number}");
+        Ingredient {
+            material: material(lab, &material_code, name, function),
+            material_code,
+            name: name.to_string(),
+            function: function.to_string(),
+            quantity: quantity.parse().unwrap(),
+            unit: if is_quantity_sufficient { "mL" } else { "g" }.to_string(),
+            is_quantity_sufficient,
+        }
+    };
+    let content = FormulationContent {
+        dosage_form: "oral suspension".to_string(),
+        intended_state: IntendedState::Flocculated,
+        ingredients: vec![
+            row(1, "magnesium hydroxide", "active", "8.00", false),
+            row(2, "xanthan gum", "suspending agent", "0.40", false),
+            row(3, "purified water", "vehicle", "0", true),
+        ],
+        quantity_basis: "100 mL".to_string(),
+        target_total: Some(Decimal::from(100)),
+        physical: Default::default(),
+    };
+    let (db, author) = (&lab.app.db, lab.actor("tomas.reyle"));
+    let version =
+        acts::formulation::draft(db, &author, formulation, "first version of the recipe", &content).unwrap();
+    approve(lab, Versioned::Formulation, version, "tomas.reyle", "ada.whitlock");
+    version
 }

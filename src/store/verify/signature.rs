@@ -5,7 +5,7 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
-use crate::store::{Answer, Reader, signature, version};
+use crate::store::{Answer, Reader, shelf_life, signature, stop, version};
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     for signed in signature::all(reader)? {
@@ -36,6 +36,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::MethodVersion => of_version(Versioned::Method),
         Kind::SpecificationVersion => of_version(Versioned::Specification),
         Kind::ProtocolVersion => of_version(Versioned::Protocol),
-        _ => Ok(None),
+        Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
+        _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }
 }
