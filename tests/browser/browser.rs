@@ -130,7 +130,12 @@ impl<'a> Browser<'a> {
         let Some(button) = self.shown("//main//form//button[contains(@class, 'primary')]") else {
             return false;
         };
+        self.awaits("document.documentElement.dataset.sent = 'yes'; arguments[0]();");
         RUNTIME.block_on(button.click()).unwrap();
+        let until = Instant::now() + PATIENCE;
+        while self.find("//html[@data-sent]").is_some() && Instant::now() < until {
+            std::thread::sleep(Duration::from_millis(50));
+        }
         true
     }
 
