@@ -55,7 +55,7 @@ pub fn record(
             }
             may_record_entry(change, &sample, test, &readings, entry, how)?;
             let due_at = due_at(&readings, entry, change.actor().at);
-            let questions = super::question::of(change, &sample, test, entry)?;
+            let questions = super::question::of(change, &sample, test, &readings, entry)?;
             let beside = Beside { due_at, questions, ..beside(how, container) };
             let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;
             readings.push(as_recorded(id, entry, change.actor(), how));
@@ -93,7 +93,7 @@ pub fn correct(db: &Db, actor: &Actor, how: &How, entry: &Entry, reason: &Reason
             due_at: was.due_at.clone(),
             read_at: how.read_at.map(|at| at.stored()).or_else(|| reread(was, reason)),
             answer: was.has_open_question().then_some("changed after hint"),
-            questions: super::question::of(change, &sample, test, entry)?,
+            questions: super::question::of(change, &sample, test, &readings, entry)?,
             ..beside(how, container)
         };
         let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;

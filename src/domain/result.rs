@@ -142,9 +142,13 @@ fn late_flag(reading: &Reading, now: Moment) -> Option<NewFlag> {
     let seconds = seconds_late(reading, now).filter(|seconds| is_late(minute, *seconds))?;
     let late = minutes_words(u32::try_from(seconds / 60).unwrap_or_default());
     let sentence = format!(
-        "The reading planned {} after shaking in cylinder {} was taken {late} late.",
+        "The reading planned {} after shaking was taken {late} late{}.",
         minutes_words(minute),
-        reading.key.replicate
+        if reading.container_label.is_empty() {
+            String::new()
+        } else {
+            format!(" ({})", reading.container_label)
+        }
     );
     let numbers = json!({ "minute": minute, "seconds_late": seconds });
     Some(flag("late reading", FlagLevel::Mark, sentence, numbers))

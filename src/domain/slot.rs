@@ -199,6 +199,10 @@ fn columns(content: &MethodContent, containers: &[Container], word: &str) -> Vec
         return (1..=replicates).map(|replicate| (None, replicate, format!("{name} {replicate}"))).collect();
     }
     let wanted = content.containers_needed.max(1);
+    let word = match content.settings {
+        Settings::Sedimentation { .. } => &format!("cylinder of {word}"),
+        _ => word,
+    };
     let repeat = |replicate: u32| match replicates {
         1 => String::new(),
         _ => format!(", reading {replicate}"),

@@ -109,3 +109,81 @@ pub fn insert(
         },
     )
 }
+
+/// A method version with open tests at the bench.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct OpenMethod {
+    pub method_version: i64,
+    pub code: String,
+    pub name: String,
+    pub open: i64,
+    pub is_qualified: bool,
+}
+
+/// The method versions with tests open at the bench, and whether a person is qualified for them today.
+pub fn open_methods(reader: &Reader<'_>, account: i64, today: chrono::NaiveDate) -> Answer<Vec<OpenMethod>> {
+    reader.all(
+        "select v.id, m.code, m.name, count(*),
+             exists (select 1 from qualification q where q.account = :account and q.method_version = v.id
+                 and :today between q.starts_on and q.ends_on)
+         from sample s
+         join sample_test t on t.sample = s.id
+         join method_version v on v.id = t.method_version
+         join method m on m.id = v.method
+         where v.imported is null
+             and (s.pull is null or coalesce((select e.kind from pull_event e where e.pull = s.pull
+                order by e.id desc limit 1), '') = 'pulled')
+             and not exists (select 1 from result r where r.sample_test = t.id)
+         group by v.id
+         order by m.code, v.number",
+        named_params! { ":account": account, ":today": super::Day(today) },
+        |row| {
+            Ok(OpenMethod {
+                method_version: row.get(0)?,
+                code: row.get(1)?,
+                name: row.get(2)?,
+                open: row.get(3)?,
+                is_qualified: row.get(4)?,
+            })
+        },
+    )
+}
+
+/// The samples at the bench with an open test of a method version: (sample, test), the earliest window first.
+pub fn open_tests(reader: &Reader<'_>, method_version: i64) -> Answer<Vec<(i64, i64)>> {
+    reader.all(
+        "select s.id, t.id
+         from sample_test t
+         join sample s on s.id = t.sample
+         left join pull p on p.id = s.pull
+         where t.method_version = :version
+             and (s.pull is null or coalesce((select e.kind from pull_event e where e.pull = s.pull
+                order by e.id desc limit 1), '') = 'pulled')
+             and not exists (select 1 from result r where r.sample_test = t.id)
+         order by p.latest_on is null, p.latest_on, s.id
+         limit 200",
+        named_params! { ":version": method_version },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}
+
+/// The single values of a field at another pull, as they stand, in their order.
+pub fn values_of_pull(
+    reader: &Reader<'_>,
+    pull: i64,
+    test: &str,
+    field: &str,
+) -> Answer<Vec<rust_decimal::Decimal>> {
+    let rows = reader.all(
+        "select r.value
+         from sample s
+         join sample_test t on t.sample = s.id and t.test = :test
+         join reading r on r.sample_test = t.id
+         where s.pull = :pull and r.field = :field and r.qualifier = '='
+             and not exists (select 1 from reading n where n.supersedes = r.id)
+         order by r.replicate, r.id",
+        named_params! { ":pull": pull, ":test": test, ":field": field },
+        |row| row.get::<_, Option<Exact>>(0),
+    )?;
+    Ok(rows.into_iter().flatten().map(|exact| exact.0).collect())
+}

@@ -364,9 +364,10 @@ impl Seen {
     pub fn form(&self, action: &str) -> Vec<(String, String)> {
         let page = Html::parse_document(&self.html());
         let forms = Selector::parse("form").unwrap();
-        let form = page
-            .select(&forms)
-            .find(|form| form.value().attr("action") == Some(action))
+        let of_action = || page.select(&forms).filter(|form| form.value().attr("action") == Some(action));
+        let form = of_action()
+            .find(|form| form.value().attr("method") == Some("post"))
+            .or_else(|| of_action().next())
             .unwrap_or_else(|| panic!("no form with action {action}:\n{}", self.text()));
         let fields = Selector::parse("input[name], textarea[name], select[name]").unwrap();
         let option = Selector::parse("option[selected]").unwrap();

@@ -255,3 +255,107 @@ pub fn approved_formulation(lab: &Lab, product: i64) -> i64 {
     approve(lab, Versioned::Formulation, version, "tomas.reyle", "ada.whitlock");
     version
 }
+
+/// A lot of an approved formulation of a new product, 100 mL bottles for this market.
+pub fn lot_for_market(lab: &Lab, number: &str, market: &str) -> i64 {
+    use supernate::domain::lot::{NewLot, Scale};
+    use supernate::domain::product::NewPresentation;
+    let db = &lab.app.db;
+    let product = product(lab, &format!("P{number}"));
+    let formulation_version = approved_formulation(lab, product);
+    let new = NewPresentation {
+        product,
+        code: format!("P{number}-100"),
+        strength: "400 mg per 5 mL".to_string(),
+        pack: "amber glass".to_string(),
+        container_word: "bottle".to_string(),
+        fill_ml: Some(Decimal::from(100)),
+        market: market.to_string(),
+        permeability: "impermeable".to_string(),
+    };
+    let presentation = acts::product::add_presentation(db, &lab.actor("maren.oddy"), &new).unwrap();
+    let new = NewLot {
+        number: number.to_string(),
+        presentation,
+        formulation_version,
+        made_on: lab.now().date(),
+        size: Some(Decimal::from(500)),
+        size_unit: Some("L".to_string()),
+        scale: Scale::Production,
+        container_closure: "amber glass, screw cap".to_string(),
+        bulk_lot: None,
+    };
+    acts::lot::make(db, &lab.actor("bea.skelton"), &new).unwrap()
+}
+
+/// A release sample with these tests, and the analysts qualified for their methods. Answers with sample and tests.
+pub fn release_sample(lab: &Lab, lot: i64, kinds: &[TestKind]) -> (i64, Vec<i64>) {
+    use supernate::domain::sample::{NewSample, Purpose};
+    let db = &lab.app.db;
+    let presentation = db.read(|reader| store::lot::get(reader, lot)).unwrap().presentation;
+    approved_specification(lab, presentation, kinds);
+    for kind in kinds {
+        let version = approved_method(lab, *kind);
+        for user_name in ["rafe.tolland", "ilse.brandt"] {
+            qualify(lab, user_name, version);
+        }
+    }
+    let new = NewSample {
+        lot,
+        purpose: Purpose::Release,
+        containers: 6,
+        condition_on_receipt: "seals whole".to_string(),
+        handed_over_by: "Bea Skelton".to_string(),
+        received_on: lab.now().date(),
+        tests: kinds.iter().map(|kind| test_code(*kind).to_string()).collect(),
+    };
+    let id = acts::sample::receive(db, &lab.actor("rafe.tolland"), &new).unwrap();
+    let sample = db.read(|reader| store::bench::sample(reader, id)).unwrap();
+    let of = |kind: &TestKind| sample.tests.iter().find(|test| test.test == test_code(*kind)).unwrap().id;
+    (id, kinds.iter().map(of).collect())
+}
+
+/// The person may do the method from today on for a year.
+pub fn qualify(lab: &Lab, user_name: &str, method_version: i64) {
+    use supernate::domain::qualification::NewQualification;
+    let today = lab.now().date();
+    let new = NewQualification {
+        account: lab.actor(user_name).account,
+        method_version,
+        starts_on: today,
+        ends_on: today + chrono::Duration::days(365),
+        reference: "training record 12".to_string(),
+    };
+    acts::qualification::add(&lab.app.db, &lab.actor("maren.oddy"), &new).unwrap();
+}
+
+/// A calibrated instrument of the kind, with the day's check where its kind needs one.
+pub fn instrument(lab: &Lab, code: &str, kind: &str) -> i64 {
+    use supernate::domain::instrument::{EventDetail, EventKind, NewEvent, NewInstrument};
+    let (db, manager) = (&lab.app.db, lab.actor("maren.oddy"));
+    let is_meter = kind == "pH meter";
+    let new = NewInstrument {
+        code: code.to_string(),
+        name: format!("Bench {kind}"),
+        kind: kind.to_string(),
+        needs_daily_check: is_meter,
+    };
+    let id = acts::instrument::add(db, &manager, &new).unwrap();
+    let today = lab.now().date();
+    let detail = EventDetail {
+        is_within_limits: true,
+        buffers: if is_meter { vec![Decimal::new(401, 2), Decimal::new(700, 2)] } else { Vec::new() },
+        slope_percent: is_meter.then(|| Decimal::new(986, 1)),
+        reference: "certificate 77".to_string(),
+        note: String::new(),
+    };
+    let due_on = Some(today + chrono::Duration::days(180));
+    let calibrated =
+        NewEvent { kind: EventKind::Calibrated, performed_on: today, due_on, detail: detail.clone() };
+    acts::instrument::record_event(db, &manager, id, &calibrated).unwrap();
+    if is_meter {
+        let check = NewEvent { kind: EventKind::DailyCheck, performed_on: today, due_on: None, detail };
+        acts::instrument::record_event(db, &lab.actor("rafe.tolland"), id, &check).unwrap();
+    }
+    id
+}

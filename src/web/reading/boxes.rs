@@ -1,0 +1,254 @@
+//! The boxes of a test page: one per slot, with what is recorded, what was typed and what was said about it.
+
+use askama::Template;
+
+use super::load::Loaded;
+use crate::domain::judgement::limit::limit_words;
+use crate::domain::judgement::spread::Spread;
+use crate::domain::method::{Level, Settings};
+use crate::domain::reading::{Reading, in_slot};
+use crate::domain::rounding::to_decimals;
+use crate::domain::slot::{Accepts, Slot, SlotKey};
+use crate::web::field::Choice;
+use crate::web::pairs::Pairs;
+
+/// One-press reasons for a correction: value sent, words shown.
+const REASONS: [(&str, &str); 3] =
+    [("mistyped", "Mistyped"), ("re-read", "Re-read"), ("wrong container", "Wrong container")];
+
+/// What was typed and what was wrong with it, when a page comes back.
+#[derive(Clone, Debug, Default)]
+pub struct Said {
+    pub form: Pairs,
+    /// Box name and sentence.
+    pub errors: Vec<(String, String)>,
+    /// Boxes whose change waits for its reason.
+    pub wants_reason: Vec<String>,
+}
+
+/// One box.
+#[derive(Clone, Debug, Template)]
+#[template(path = "reading/box.html")]
+pub struct ReadingBox {
+    pub name: String,
+    pub label: String,
+    mode: &'static str,
+    value: String,
+    recorded: String,
+    low: String,
+    high: String,
+    choices: Vec<Choice>,
+    note: String,
+    hint: String,
+    pub is_refused: bool,
+    is_why_open: bool,
+    why_words: String,
+    can_be_unread: bool,
+    unread: String,
+    unread_recorded: String,
+    unread_hint: String,
+}
+
+impl askama::filters::HtmlSafe for ReadingBox {}
+
+/// What a box shows of a recorded reading; the same text sent back changes nothing.
+pub fn recorded_text(reading: &Reading) -> String {
+    match reading.qualifier.as_str() {
+        "not read" => "could not be read".to_string(),
+        _ => reading.shown(),
+    }
+}
+
+impl ReadingBox {
+    pub fn of(slot: &Slot, reading: Option<&Reading>, said: &Said) -> ReadingBox {
+        let name = slot.key.name();
+        let recorded = reading.map(recorded_text).unwrap_or_default();
+        let typed = said.form.get(&name).map(str::to_string);
+        let error =
+            |name: &str| said.errors.iter().find(|(at, _)| at == name).map(|(_, words)| words.clone());
+        let unread_name = format!("{name}.unread");
+        let unread_recorded = reading
+            .filter(|one| one.qualifier == "not read")
+            .map(|one| one.typed.clone())
+            .unwrap_or_default();
+        let refused = error(&name);
+        let asked = reading.filter(|one| one.has_open_question());
+        let question = asked.and_then(|one| one.questions.first()).map(|one| one.sentence.clone());
+        let (low, high) = match &slot.accepts {
+            Accepts::Number { least, most } => (least.to_string(), most.to_string()),
+            Accepts::Count { least, most, .. } => (least.to_string(), most.to_string()),
+            _ => Default::default(),
+        };
+        ReadingBox {
+            label: slot.label(),
+            mode: mode(&slot.accepts),
+            value: typed.unwrap_or_else(|| recorded.clone()),
+            low,
+            high,
+            choices: choices(&slot.accepts),
+            note: note(slot),
+            is_refused: refused.is_some(),
+            hint: refused.or(question).unwrap_or_default(),
+            is_why_open: said.wants_reason.contains(&name),
+            why_words: said.form.get(&format!("{name}-why-words")).unwrap_or_default().to_string(),
+            can_be_unread: !matches!(slot.accepts, Accepts::Words),
+            unread: said.form.get(&unread_name).unwrap_or(&unread_recorded).to_string(),
+            unread_hint: error(&unread_name).unwrap_or_default(),
+            unread_recorded,
+            recorded,
+            name,
+        }
+    }
+
+    fn is_chosen(&self, value: &str) -> bool {
+        self.value == value
+    }
+
+    /// The element an error link leads to.
+    pub fn target(&self) -> String {
+        if self.choices.is_empty() { self.name.clone() } else { format!("{}-1", self.name) }
+    }
+}
+
+fn mode(accepts: &Accepts) -> &'static str {
+    match accepts {
+        Accepts::Number { least, .. } if least.is_sign_positive() => "decimal",
+        Accepts::Count { .. } => "numeric",
+        _ => "text",
+    }
+}
+
+fn choices(accepts: &Accepts) -> Vec<Choice> {
+    let Accepts::Grade(grades) = accepts else { return Vec::new() };
+    let choice = |grade: &crate::domain::method::Grade| Choice {
+        value: grade.code.clone(),
+        label: grade.word.clone(),
+        anchor: grade.anchor.clone(),
+    };
+    grades.iter().map(choice).collect()
+}
+
+fn note(slot: &Slot) -> String {
+    match (&slot.accepts, slot.decimals) {
+        (Accepts::Setting(wanted), _) => format!("method: {wanted}"),
+        (Accepts::Number { .. }, Some(decimals)) if decimals > 0 => {
+            format!("reads to {}", rust_decimal::Decimal::new(1, decimals))
+        }
+        _ => String::new(),
+    }
+}
+
+/// A table of boxes.
+pub struct Grid {
+    pub caption: String,
+    pub heads: Vec<String>,
+    pub rows: Vec<GridRow>,
+    /// Grades with anchors are large: one under the other, by container.
+    pub is_list: bool,
+}
+
+pub struct GridRow {
+    pub title: String,
+    pub limit: String,
+    pub cells: Vec<Cell>,
+}
+
+pub enum Cell {
+    Box(Box<ReadingBox>),
+    /// No box now, and why.
+    Words(String),
+    /// A figure of the server: id, text, what it is.
+    Calculated(String, String, &'static str),
+}
+
+/// The grid of a test whose columns are containers or replicates.
+pub fn grid(loaded: &Loaded, slots: &[Slot], said: &Said) -> Grid {
+    let mut heads: Vec<String> = Vec::new();
+    let mut titles: Vec<String> = Vec::new();
+    for slot in slots {
+        if !heads.contains(&slot.column) {
+            heads.push(slot.column.clone());
+        }
+        if !titles.contains(&slot.title) {
+            titles.push(slot.title.clone());
+        }
+    }
+    let has_mean = loaded.test.content.level != Level::Container && heads.len() > 1;
+    let rows = titles.iter().map(|title| grid_row(loaded, slots, title, &heads, has_mean, said)).collect();
+    let is_list = matches!(loaded.test.content.settings, Settings::Appearance { .. });
+    if has_mean {
+        heads.push("Mean".to_string());
+    }
+    Grid { caption: loaded.test.title.clone(), heads, rows, is_list }
+}
+
+fn grid_row(
+    loaded: &Loaded,
+    slots: &[Slot],
+    title: &str,
+    heads: &[String],
+    has_mean: bool,
+    said: &Said,
+) -> GridRow {
+    let of_row: Vec<&Slot> = slots.iter().filter(|slot| slot.title == title).collect();
+    let mut cells: Vec<Cell> = heads
+        .iter()
+        .map(|head| match of_row.iter().find(|slot| slot.column == *head) {
+            Some(slot) => cell(loaded, slot, said),
+            None => Cell::Words("not asked".to_string()),
+        })
+        .collect();
+    let first = of_row.first();
+    let field = first.map(|slot| slot.key.field.clone()).unwrap_or_default();
+    if has_mean {
+        let text = mean(loaded, &field);
+        let what = if text.is_empty() { "" } else { "calculated" };
+        cells.push(Cell::Calculated(format!("mean.{field}"), text, what));
+    }
+    let unit = first.map(|slot| slot.unit.as_str()).filter(|unit| !unit.is_empty());
+    let is_judged = !matches!(first.map(|slot| &slot.accepts), Some(Accepts::Setting(_) | Accepts::Words))
+        && (field == "value" || field == "inversions");
+    let limit = if is_judged { limit_shown(loaded, slots) } else { String::new() };
+    GridRow { title: unit.map_or(title.to_string(), |unit| format!("{title}, {unit}")), limit, cells }
+}
+
+fn cell(loaded: &Loaded, slot: &Slot, said: &Said) -> Cell {
+    if let Some(why) = loaded.closed(slot) {
+        let there = in_slot(&loaded.readings, &slot.key);
+        return Cell::Words(there.map(Reading::shown).unwrap_or(why));
+    }
+    Cell::Box(Box::new(ReadingBox::of(slot, in_slot(&loaded.readings, &slot.key), said)))
+}
+
+/// The mean of a row's numbers to one place more than is read.
+pub fn mean(loaded: &Loaded, field: &str) -> String {
+    let numbers: Vec<rust_decimal::Decimal> = crate::domain::reading::standing(&loaded.readings)
+        .into_iter()
+        .filter(|reading| reading.key.field == field && reading.qualifier == "=")
+        .filter_map(|reading| reading.value)
+        .collect();
+    let decimals = loaded.test.content.reading_decimals + 1;
+    let halves = loaded.test.content.rounding.halves;
+    match Spread::of(&numbers) {
+        Some(spread) if numbers.len() > 1 => to_decimals(spread.mean, decimals, halves).to_string(),
+        _ => String::new(),
+    }
+}
+
+/// The limit, or that it stays hidden until the readings are recorded (decision A15).
+fn limit_shown(loaded: &Loaded, slots: &[Slot]) -> String {
+    let all_in = slots
+        .iter()
+        .filter(|slot| slot.is_required)
+        .all(|slot| in_slot(&loaded.readings, &slot.key).is_some());
+    if loaded.test.content.hides_limits && !all_in {
+        return "the limit is shown when all is recorded".to_string();
+    }
+    loaded.limit().map(|limit| limit_words(limit, Some(&loaded.test.content))).unwrap_or_default()
+}
+
+/// The slot of a field in the column of another.
+pub fn beside(slots: &[Slot], key: &SlotKey, field: &str) -> Option<Slot> {
+    let key = SlotKey { field: field.to_string(), ..key.clone() };
+    slots.iter().find(|slot| slot.key == key).cloned()
+}
