@@ -16,7 +16,8 @@ use crate::store::version::Version;
 
 /// Adds a specification for a presentation with version 1 as a draft; answers with the version's id.
 ///
-/// Refuses in this order: the code is taken, the presentation has one already, the content ([`may_be_written`]).
+/// Refuses in this order: the code is taken, the presentation has one already, the content
+/// ([`may_be_written`]).
 pub fn add(
     db: &Db,
     actor: &Actor,

@@ -50,7 +50,8 @@ pub enum FormulaRefusal {
     #[error("The worked example has no value for the input “{0}”. Give it one.")]
     ExampleIncomplete(String),
     #[error(
-        "The worked example gives {computed}, not {stated}. Correct the formula, its inputs or the stated result."
+        "The worked example gives {computed}, not {stated}. Correct the formula, its inputs or the stated \
+         result."
     )]
     ExampleNotReproduced { stated: Decimal, computed: Decimal },
 }

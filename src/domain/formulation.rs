@@ -162,9 +162,9 @@ impl PhysicalData {
     }
 }
 
-/// Refuses in this order: no ingredient; then row by row a doubled material, a quantity that is not positive, a
-/// second quantity sufficient; then the target, then physical data. Whether the sum meets the target is told in
-/// words by [`sum_words`] and refuses nothing.
+/// Refuses in this order: no ingredient; then row by row a doubled material, a quantity that is not
+/// positive, a second quantity sufficient; then the target, then physical data. Whether the sum meets the
+/// target is told in words by [`sum_words`] and refuses nothing.
 pub fn may_write(content: &FormulationContent) -> Result<(), FormulationRefusal> {
     if content.ingredients.is_empty() {
         return Err(FormulationRefusal::NoIngredient);
@@ -203,8 +203,8 @@ pub fn basis_unit(basis: &str) -> &str {
     if basis.starts_with('%') { basis } else { basis.rsplit(' ').next().unwrap_or(basis) }
 }
 
-/// How the sum of the quantities stands to the target, in words: `Total 100.00 g of 100.00 g`, `Total 99.98 g of
-/// 100.00 g, 0.02 g short`. The sum is exact and is compared after rounding to the target's decimals.
+/// How the sum of the quantities stands to the target, in words: `Total 100.00 g of 100.00 g`, `Total 99.98
+/// g of 100.00 g, 0.02 g short`. The sum is exact and is compared after rounding to the target's decimals.
 pub fn sum_words(content: &FormulationContent) -> String {
     let stated: Vec<&Ingredient> =
         content.ingredients.iter().filter(|ingredient| !ingredient.is_quantity_sufficient).collect();
@@ -326,7 +326,8 @@ fn ingredient_change(was: &Ingredient, is: &Ingredient) -> String {
     }
 }
 
-/// All lines of a comparison: ingredients in the order of the newer version, then those left out, then the rest.
+/// All lines of a comparison: ingredients in the order of the newer version, then those left out, then the
+/// rest.
 pub fn compare(was: &FormulationContent, is: &FormulationContent) -> Vec<Difference> {
     let of = |content: &FormulationContent, material: i64| {
         content.ingredients.iter().find(|ingredient| ingredient.material == material).cloned()

@@ -193,7 +193,8 @@ pub struct RatioFacts {
     pub reads: InterfaceRead,
 }
 
-/// F above 1 is asked about, above 1.10 it needs a reason; a falling boundary does not rise by more than 0.05.
+/// F above 1 is asked about, above 1.10 it needs a reason; a falling boundary does not rise by more than
+/// 0.05.
 pub fn ratio_hints(facts: &RatioFacts) -> Vec<Hint> {
     let Some(ratio) = facts.sediment_ml.checked_div(facts.total_ml) else { return Vec::new() };
     let shown = ratio.round_dp(2);
@@ -215,7 +216,8 @@ pub fn ratio_hints(facts: &RatioFacts) -> Vec<Hint> {
         found.push(Hint {
             rule: BOUNDARY_ROSE,
             sentence: format!(
-                "The boundary stands {} higher than before, as a part of the volume. It should fall: was it read right?",
+                "The boundary stands {} higher than before, as a part of the volume. It should fall: was it \
+                 read right?",
                 rise.round_dp(2)
             ),
         });
@@ -283,8 +285,8 @@ mod tests {
         assert_eq!(expected(None, Some(&Range { lower: None, upper: Some(d("20")) })), None);
     }
 
-    /// screen_U64: of 1,000 true values moved by a lost point or an extra zero at least 95 % are caught, and at
-    /// most 1 % of the true ones are asked about.
+    /// screen_U64: of 1,000 true values moved by a lost point or an extra zero at least 95 % are caught, and
+    /// at most 1 % of the true ones are asked about.
     #[test]
     fn screen_u64_a_lost_point_is_caught() {
         let (mut caught, mut false_alarms) = (0, 0);

@@ -1,8 +1,9 @@
 //! The first trend signal: whether a result agrees with the earlier results of its own lot.
 //!
-//! Rule: a two-sided t prediction interval for the next result of a straight line through the lot's own earlier
-//! results (`science::interval`). Alert outside 95 %, action outside 99 % (decision A13). Three earlier ages
-//! are enough to judge, but the verdict is marked weak; fewer are not evaluable. No rule removes data.
+//! Rule: a two-sided t prediction interval for the next result of a straight line through the lot's own
+//! earlier results (`science::interval`). Alert outside 95 %, action outside 99 % (decision A13). Three
+//! earlier ages are enough to judge, but the verdict is marked weak; fewer are not evaluable. No rule
+//! removes data.
 
 use rust_decimal::Decimal;
 use rust_decimal::prelude::ToPrimitive;
@@ -46,8 +47,8 @@ const ACTION_CONFIDENCE: f64 = 0.99;
 
 /// Judges `value` at `age` (months) from the lot's earlier results (age, value) of the same test and arm.
 ///
-/// Results of one age are averaged first, the judged one with its equals too (a retest is never a second entry).
-/// `decimals` are those the method reports; limits are shown with one more.
+/// Results of one age are averaged first, the judged one with its equals too (a retest is never a second
+/// entry). `decimals` are those the method reports; limits are shown with one more.
 pub fn first_signal(
     earlier: &[(Decimal, Decimal)],
     age: Decimal,
@@ -116,13 +117,14 @@ fn unusable() -> TrendSignal {
     not_evaluable("needs values that can be computed with".to_string())
 }
 
-/// The earlier results lie exactly on a line: nothing can be said of the spread, only whether this one is on it.
+/// The earlier results lie exactly on a line: nothing can be said of the spread, only whether this one is on
+/// it.
 fn no_variance(shown: &Shown, y: f64, centre: f64) -> TrendSignal {
     let line = format!("{centre:.*}", shown.decimals as usize);
     let off = if format!("{y:.*}", shown.decimals as usize) == line { "on" } else { "off" };
     not_evaluable(format!(
-        "needs a spread, and the method's resolution hides it (this result lies {off} the line of the earlier \
-         ones, {line})"
+        "needs a spread, and the method's resolution hides it (this result lies {off} the line of the \
+         earlier ones, {line})"
     ))
 }
 
@@ -137,7 +139,8 @@ fn judge(shown: &Shown, y: f64, alert: &Limits, action: &Limits, weak: bool) -> 
     let side = if verdict == TrendVerdict::InTrend { "within" } else { "outside" };
     let note = if weak { " Weak: three earlier ages only." } else { "" };
     let sentence = format!(
-        "Trend {}: {} is {side} {} to {}, the {share} % prediction interval from the lot's own {} earlier ages.{note}",
+        "Trend {}: {} is {side} {} to {}, the {share} % prediction interval from the lot's own {} \
+         earlier ages.{note}",
         verdict.words(),
         shown.value,
         number(limits.lower),

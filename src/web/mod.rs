@@ -41,6 +41,7 @@ pub mod reply;
 pub mod result;
 pub mod review;
 pub mod route;
+pub mod rows;
 pub mod sample;
 pub mod sedimentation;
 pub mod serve;

@@ -219,8 +219,8 @@ impl<'a> Browser<'a> {
         RUNTIME.block_on(self.client().execute_async(script, Vec::new())).unwrap()
     }
 
-    /// What the console holds since it was last asked: errors and reports of the content security policy. That
-    /// a form came back with 4xx is no error of the page.
+    /// What the console holds since it was last asked: errors and reports of the content security policy.
+    /// That a form came back with 4xx is no error of the page.
     pub fn console_errors(&self) -> Vec<String> {
         let log = self.own("se/log", json!({ "type": "browser" }));
         let entries = log.as_array().cloned().unwrap_or_default();

@@ -41,7 +41,8 @@ pub fn approve(lab: &Lab, of: Versioned, id: i64, author: &str, approver: &str) 
     acts::version::approve(db, &approver, of, id, &seen, &second, check).unwrap();
 }
 
-/// The approved version of the kind's method, made the first time it is asked for: code `M-PH`, `M-VISCOSITY` …
+/// The approved version of the kind's method, made the first time it is asked for: code `M-PH`,
+/// `M-VISCOSITY` …
 pub fn approved_method(lab: &Lab, kind: TestKind) -> i64 {
     let code = format!("M-{}", kind.code().to_uppercase());
     method_with(lab, &code, kind.words(), method_content(kind))

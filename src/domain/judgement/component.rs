@@ -63,8 +63,8 @@ fn range(yardstick: &Yardstick<'_>, code: &str) -> Option<Range> {
     find(code).or_else(|| find(code.split('@').next().unwrap_or(code)))
 }
 
-/// Below its reporting threshold, rounded to the threshold's decimals, a component is reported as `<threshold`.
-/// The value found stays in the record.
+/// Below its reporting threshold, rounded to the threshold's decimals, a component is reported as
+/// `<threshold`. The value found stays in the record.
 fn under_threshold(judged: Judged, component: &Component, rounding: Rounding) -> Judged {
     let (Some(threshold), Some(value)) = (component.reporting_threshold, judged.value) else { return judged };
     let is_under = match judged.qualifier {

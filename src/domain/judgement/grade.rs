@@ -154,6 +154,8 @@ fn detail(
         .iter()
         .map(|one| json!({ "of": one.title, "value": one.word, "conforms": one.conforms }))
         .collect();
+    let not_read: Vec<_> =
+        missing.iter().map(|one| json!({ "of": one.title, "why": "not graded" })).collect();
     let remarks: Vec<&str> = readings
         .iter()
         .filter(|reading| reading.field == "remarks")
@@ -163,7 +165,7 @@ fn detail(
         "rule": "every limited attribute conforms",
         "n": graded.len(),
         "values": grades,
-        "not_read": missing.iter().map(|one| json!({ "of": one.title, "why": "not graded" })).collect::<Vec<_>>(),
+        "not_read": not_read,
         "remarks": remarks,
         "limit": yardstick.limit.map(|limit| limit_words(limit, Some(yardstick.method))),
     })

@@ -164,9 +164,9 @@ impl<'a> Yardstick<'a> {
     }
 }
 
-/// Rounded to the last place of the limit by the method's rule. A method that rounds to a step or to significant
-/// figures keeps that rule where the limit itself is stated to it; else the limit's decimals count, the stricter
-/// reading of a limit such as 1505.
+/// Rounded to the last place of the limit by the method's rule. A method that rounds to a step or to
+/// significant figures keeps that rule where the limit itself is stated to it; else the limit's decimals
+/// count, the stricter reading of a limit such as 1505.
 fn to_place_of(value: Decimal, limit: Decimal, rounding: Rounding) -> Decimal {
     let keeps_own_rule = !matches!(rounding.to, RoundTo::Decimals(_))
         && limit.scale() == 0

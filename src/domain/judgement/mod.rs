@@ -1,8 +1,9 @@
 //! From readings to a reportable value and its verdict.
 //!
 //! The order is fixed: what was read → single values → the reportable value as the method's rule makes it →
-//! comparison with the limit → flags. Values stay exact throughout and are rounded once, for the comparison and
-//! for showing; a shown value is never an input (decision A6). Limits are judged on first recorded values too.
+//! comparison with the limit → flags. Values stay exact throughout and are rounded once, for the comparison
+//! and for showing; a shown value is never an input (decision A6). Limits are judged on first recorded
+//! values too.
 
 mod component;
 mod gather;
@@ -194,8 +195,8 @@ impl Judged {
 
 /// Judges the readings of one test.
 ///
-/// `limits_do` is what a limit does on the sample's arm; `None` is a sample without an arm, where a limit always
-/// means out of specification. One entry per component; a test without components gives exactly one.
+/// `limits_do` is what a limit does on the sample's arm; `None` is a sample without an arm, where a limit
+/// always means out of specification. One entry per component; a test without components gives exactly one.
 pub fn judge(
     method: &MethodContent,
     limits: Option<&TestLimits>,

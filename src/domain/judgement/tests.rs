@@ -285,7 +285,8 @@ fn redispersibility() -> MethodContent {
     method(settings, Reportable::Worst { highest: true }, "inversions", 0)
 }
 
-/// Decision A6: the worst container judges; a censored count stays censored, with the median and without a mean.
+/// Decision A6: the worst container judges; a censored count stays censored, with the median and without a
+/// mean.
 #[test]
 fn a_censored_count_stays_censored() {
     let limits = limits(between(None, Some("20")), Way::Rounding);

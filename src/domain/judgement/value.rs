@@ -125,8 +125,9 @@ fn margin(yardstick: &Yardstick<'_>, known: Known, range: &Range) -> Decimal {
     over.min(under)
 }
 
-/// The mean, if no value is censored and the spread stays within what the method allows (req_O10). At container
-/// level the readings of one container are averaged first; the spread is always that of all single values.
+/// The mean, if no value is censored and the spread stays within what the method allows (req_O10). At
+/// container level the readings of one container are averaged first; the spread is always that of all single
+/// values.
 fn mean(
     yardstick: &Yardstick<'_>,
     singles: &[Single],
@@ -186,7 +187,10 @@ fn spread_words(
     let (rsd, most) = (spread.rsd_percent?, rsd_at_most?);
     (rsd > most).then(|| {
         let shown = to_decimals(rsd, most.scale() + 1, yardstick.method.rounding.halves);
-        format!("The relative standard deviation of the {count} values is {shown} %, more than {most} %: no reportable value.")
+        format!(
+            "The relative standard deviation of the {count} values is {shown} %, more than {most} %: no \
+             reportable value."
+        )
     })
 }
 
@@ -357,7 +361,8 @@ fn detail(
     })
 }
 
-/// The median with its censoring: of 12, 14 and ">100" it is 14; where a bound falls in the middle it is a bound.
+/// The median with its censoring: of 12, 14 and ">100" it is 14; where a bound falls in the middle it is a
+/// bound.
 fn median_known(gathered: &Gathered) -> Option<Known> {
     let mut knowns: Vec<Known> = gathered.singles.iter().map(|single| single.known).collect();
     if knowns.iter().all(|known| known.is_exact()) {

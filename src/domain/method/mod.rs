@@ -145,7 +145,8 @@ pub struct MethodContent {
     /// Readings outside are impossible and refused.
     pub possible_least: Decimal,
     pub possible_most: Decimal,
-    /// Two readings of the same thing differ by no more than this (for soft checks); none stated: no such check.
+    /// Two readings of the same thing differ by no more than this (for soft checks); none stated: no such
+    /// check.
     pub repeatability: Option<Decimal>,
     /// A second qualified person checks before QA (decision A8).
     pub needs_check: bool,

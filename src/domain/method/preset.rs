@@ -1,4 +1,5 @@
-//! What the form of a new method is filled with, per kind. Figures are common practice and the site's to change.
+//! What the form of a new method is filled with, per kind. Figures are common practice and the site's to
+//! change.
 
 use rust_decimal::Decimal;
 
@@ -16,7 +17,7 @@ pub fn of(kind: TestKind) -> MethodContent {
         rounding: Rounding { halves: Halves::AwayFromZero, to: RoundTo::Decimals(2) },
         replicates: 2,
         level: Level::Reading,
-        reportable: Reportable::Mean { range_at_most: None, rsd_percent_at_most: None },
+        reportable: Reportable::Mean { range_at_most: None, rsd_percent_at_most: Some(Decimal::TWO) },
         possible_least: Decimal::ZERO,
         possible_most: Decimal::from(1000),
         repeatability: None,

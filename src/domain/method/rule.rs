@@ -37,6 +37,10 @@ pub enum MethodRefusal {
     TotalWithoutComponents,
     #[error("Appearance is reported per container, not as a mean. Choose another reportable rule.")]
     MeanOfGrades,
+    #[error(
+        "A mean is reported only while the values agree. State the greatest range or RSD, or report each."
+    )]
+    MeanWithoutSpread,
     #[error("{0}")]
     Example(FormulaRefusal),
 }
@@ -50,6 +54,7 @@ impl NamedReason for MethodRefusal {
             MethodRefusal::ReportMinuteNotPlanned(_) => "report_at_minute",
             MethodRefusal::TotalWithoutComponents => "has_total",
             MethodRefusal::MeanOfGrades => "reportable",
+            MethodRefusal::MeanWithoutSpread => "range_at_most",
             MethodRefusal::FormulaWithComponents | MethodRefusal::InputsMissing => "formula",
             MethodRefusal::Example(refusal) => return refusal.field(),
             _ => return None,
@@ -60,8 +65,9 @@ impl NamedReason for MethodRefusal {
 
 /// May this content be written for a method of this kind?
 ///
-/// Refuses in this order: kind, possible range, replicates, then what belongs to the kind. A worked example that
-/// does not reproduce yet may be written; see [`may_be_signed`].
+/// Refuses in this order: kind, possible range, replicates, a mean without a greatest spread (req_O10), then
+/// what belongs to the kind. A worked example that does not reproduce yet may be written; see
+/// [`may_be_signed`].
 pub fn may_be_written(kind: TestKind, content: &MethodContent) -> Result<(), MethodRefusal> {
     if content.settings.kind() != kind {
         return Err(MethodRefusal::KindDiffers);
@@ -72,6 +78,10 @@ pub fn may_be_written(kind: TestKind, content: &MethodContent) -> Result<(), Met
     }
     if content.replicates == 0 {
         return Err(MethodRefusal::ReplicatesMissing);
+    }
+    let unbounded = Reportable::Mean { range_at_most: None, rsd_percent_at_most: None };
+    if content.replicates > 1 && content.reportable == unbounded {
+        return Err(MethodRefusal::MeanWithoutSpread);
     }
     settings_hold(content)
 }
@@ -223,7 +233,13 @@ mod tests {
     #[test]
     fn reasons_come_one_by_one() {
         type Spoil = fn(&mut MethodContent);
-        let table: [(Spoil, MethodRefusal); 5] = [
+        let table: [(Spoil, MethodRefusal); 6] = [
+            (
+                |content| {
+                    content.reportable = Reportable::Mean { range_at_most: None, rsd_percent_at_most: None };
+                },
+                MethodRefusal::MeanWithoutSpread,
+            ),
             (
                 |content| content.possible_most = content.possible_least,
                 MethodRefusal::PossibleRangeEmpty(Decimal::ZERO, Decimal::ZERO),

@@ -59,8 +59,9 @@ fn sets(test: &TestLimits) -> [(&'static str, &Limit); 3] {
 
 /// May this content be written?
 ///
-/// `method_of` gives the newest approved content of a method. Refuses in this order: no test, a doubled test; then
-/// row by row: no approved method, another unit, crossed limits, a limit of another kind, an unknown code.
+/// `method_of` gives the newest approved content of a method. Refuses in this order: no test, a doubled
+/// test; then row by row: no approved method, another unit, crossed limits, a limit of another kind, an
+/// unknown code.
 pub fn may_be_written<'a>(
     content: &SpecificationContent,
     method_of: &dyn Fn(i64) -> Option<&'a MethodContent>,
@@ -152,8 +153,8 @@ fn in_order(
     }
 }
 
-/// What a reader should know, though it may be meant: release limits wider than the shelf-life limits, and tests
-/// without any limit.
+/// What a reader should know, though it may be meant: release limits wider than the shelf-life limits, and
+/// tests without any limit.
 pub fn notes(content: &SpecificationContent) -> Vec<String> {
     content.tests.iter().filter_map(note).collect()
 }

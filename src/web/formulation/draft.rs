@@ -306,7 +306,8 @@ pub fn edit_page(visit: &Visit) -> Outcome {
     draft_page(200, visit, &title, form)
 }
 
-/// Once both contents are shown, sending the form again means it: it then carries the digest of what stands there.
+/// Once both contents are shown, sending the form again means it: it then carries the digest of what stands
+/// there.
 fn after_stale(visit: &Visit, version: &Version, mut form: Form) -> Form {
     if let Some(stale) = &mut form.stale {
         stale.changed_at = show::instant(&stale.changed_at, visit.at.zone);
