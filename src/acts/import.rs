@@ -6,7 +6,9 @@ use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::digest::sha256_hex;
 use crate::domain::failure::Failure;
-use crate::domain::import::{self, CellFault, Counts, ImportRefusal, Plan};
+use crate::domain::import::plan::{Plan, plan};
+use crate::domain::import::read::read;
+use crate::domain::import::{CellFault, Counts, ImportRefusal};
 use crate::domain::moment::{Moment, date_shown};
 use crate::domain::reason::Reason;
 use crate::domain::subject::Kind;
@@ -16,7 +18,7 @@ use crate::store::door::Db;
 
 /// What a file would bring, without writing anything.
 pub fn preview(bytes: &[u8]) -> Result<Plan, Vec<CellFault>> {
-    import::read(bytes).map(|rows| import::plan(&rows))
+    read(bytes).map(|rows| plan(&rows))
 }
 
 /// Imports a file. Answers with the import's number and what it brought.

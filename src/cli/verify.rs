@@ -25,7 +25,29 @@ pub struct Arguments {
 
 pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     let expected = arguments.expect.as_deref().map(bare_digest);
+    if arguments.path.is_file() {
+        return verify_lot_file(&arguments.path, expected.as_deref());
+    }
     verify_folder(&arguments.path, expected.as_deref())
+}
+
+#[allow(clippy::print_stdout)]
+fn verify_lot_file(path: &Path, expected: Option<&str>) -> Result<(), Failure> {
+    let checked = acts::lot_file::check(path, expected)?;
+    for finding in &checked.findings {
+        println!("does not hold: {finding}");
+    }
+    println!("{} files, sha256 of the archive {}", checked.files, checked.digest);
+    if !checked.findings.is_empty() {
+        return Err(Failure::Held(format!("{} does not hold.", path.display())));
+    }
+    match expected {
+        Some(_) => println!("Everything holds, and the archive is the expected one."),
+        None => println!(
+            "Everything holds. Compare the digest with the one on the trail, or give it with --expect."
+        ),
+    }
+    Ok(())
 }
 
 /// A digest as people copy it: with spaces between groups, in capitals, with the word before it.
@@ -57,8 +79,8 @@ pub fn words(report: &Report) -> String {
         text.push_str(&format!("and {} more\n", report.further_findings));
     }
     text.push_str(&format!(
-        "{} entries with {} changed records, {} records, {} signatures, {} attachments\n",
-        report.acts, report.lines, report.rows, report.signatures, report.attachments
+        "{} entries with {} changed records, {} records, {} signatures ({} computed again), {} attachments\n",
+        report.acts, report.lines, report.rows, report.signatures, report.recomputed, report.attachments
     ));
     if let Some((act, seal)) = &report.head {
         text.push_str(&format!("newest entry {act}, seal {seal}\n"));

@@ -6,7 +6,8 @@ use super::door::Change;
 use super::{Answer, Exact, Reader, new_uuid, version};
 use crate::domain::age::Age;
 use crate::domain::digest::sha256_hex;
-use crate::domain::import::{Counts, Lot, Plan, Point, Pull, method_content};
+use crate::domain::import::Counts;
+use crate::domain::import::plan::{Lot, Plan, Point, Pull, method_content};
 use crate::domain::version::Versioned;
 
 /// One imported file.

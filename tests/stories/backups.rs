@@ -139,7 +139,7 @@ fn a_folder_in_use_is_not_verified_and_a_mistyped_one_is_not_made() {
 
 #[test]
 fn every_command_explains_itself() {
-    for name in ["serve", "demo", "import", "verify", "backup", "restore", "account"] {
+    for name in ["serve", "demo", "import", "lot-file", "verify", "backup", "restore", "account"] {
         let output = command(&[name, "--help"], "");
         assert!(output.status.success() && said(&output).contains("Usage: supernate"), "{name}");
     }
@@ -164,5 +164,31 @@ fn a_file_is_imported_from_the_command_line() {
     );
     let refused = command(&["import", other, "--data", text(&data)], "");
     assert!(said(&refused).contains("Line 1: The first line does not name"), "{}", said(&refused));
+    assert!(command(&["verify", text(&data)], "").status.success());
+}
+
+/// The lot file from the command line, checked by the command, named where it was changed.
+#[test]
+fn a_lot_file_is_exported_and_checked_from_the_command_line() {
+    let elsewhere = Scratch::new();
+    let data = elsewhere.0.join("new");
+    let file = concat!(env!("CARGO_MANIFEST_DIR"), "/tests/numbers/data/suspensions/tacrolimus_cjhp2017.csv");
+    assert!(command(&["import", file, "--data", text(&data)], "").status.success());
+    let out = elsewhere.0.join("lot.zip");
+    let export = ["lot-file", "I1-L02", "--out", text(&out), "--data", text(&data)];
+    let made = command(&export, "");
+    assert!(made.status.success(), "{}", said(&made));
+    let digest = said(&made).split("sha256 ").nth(1).unwrap().trim().to_string();
+    let holds = command(&["verify", text(&out), "--expect", &digest.to_uppercase()], "");
+    assert!(
+        holds.status.success() && said(&holds).contains("the archive is the expected one"),
+        "{}",
+        said(&holds)
+    );
+    let other = command(&["verify", text(&out), "--expect", &"0".repeat(64)], "");
+    assert_eq!(other.status.code(), Some(1), "{}", said(&other));
+    assert!(said(&command(&export, "")).contains("nothing is overwritten"));
+    let nothing = ["lot-file", "X-9", "--out", "x.zip", "--data", text(&data)];
+    assert!(said(&command(&nothing, "")).contains("There is no lot X-9"));
     assert!(command(&["verify", text(&data)], "").status.success());
 }

@@ -1,10 +1,7 @@
 //! A file of results measured elsewhere: what it may hold, read whole, every unreadable cell named at once.
 
-mod plan;
-mod read;
-
-pub use plan::{Lot, Plan, Point, Pull, method_content, plan};
-pub use read::read;
+pub mod plan;
+pub mod read;
 
 use rust_decimal::Decimal;
 

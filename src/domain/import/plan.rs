@@ -129,7 +129,7 @@ pub fn method_content(unit: &str, decimals: u32) -> MethodContent {
 
 #[cfg(test)]
 mod tests {
-    use super::super::read;
+    use super::super::read::read;
     use super::*;
 
     #[test]

@@ -44,6 +44,8 @@ pub struct Report {
     pub lines: u64,
     pub rows: u64,
     pub signatures: u64,
+    /// Signatures whose digest was computed again from the record; the others are covered by the chain.
+    pub recomputed: u64,
     pub attachments: u64,
     /// The newest entry and its seal.
     pub head: Option<(i64, String)>,

@@ -5,14 +5,14 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
-use crate::store::{Answer, Reader, shelf_life, signature, stop, version};
+use crate::store::{Answer, Reader, review, shelf_life, signature, stop, version};
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     for signed in signature::all(reader)? {
         check.report.signatures += 1;
         let record = Some((signed.subject.kind.code(), signed.subject.id));
         match canonical(reader, &signed) {
-            Ok(Some(text)) if sha256_hex(text.as_bytes()) == signed.digest => {}
+            Ok(Some(text)) if sha256_hex(text.as_bytes()) == signed.digest => check.report.recomputed += 1,
             Ok(Some(_)) => {
                 let sentence = format!("what {} signed is not what stands there", signed.signer_name);
                 check.found(Some(signed.act), record, sentence);
@@ -36,6 +36,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::MethodVersion => of_version(Versioned::Method),
         Kind::SpecificationVersion => of_version(Versioned::Specification),
         Kind::ProtocolVersion => of_version(Versioned::Protocol),
+        Kind::Sample => review::canonical(reader, signed.subject.id, Some(signed.act)).map(Some),
         Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }

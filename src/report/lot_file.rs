@@ -1,1 +1,0 @@
-//! Everything about one lot.
