@@ -1,1 +1,0 @@
-//! The review of a pull and its signature.
