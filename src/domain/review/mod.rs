@@ -1,5 +1,6 @@
 //! The review of a sample by QA: where it stands, in which part of the queue, who may agree and who may sign.
 
+pub mod checked;
 pub mod exception;
 
 use super::check::{TestFacts, TestState, state};

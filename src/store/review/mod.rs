@@ -1,5 +1,6 @@
 //! What a reviewer sees, decides and signs of a sample.
 
+pub mod checked;
 mod content;
 pub mod decision;
 pub mod facts;

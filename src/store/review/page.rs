@@ -185,3 +185,17 @@ pub fn specification(reader: &Reader<'_>, version: i64) -> Answer<Option<String>
         |row| row.get(0),
     )
 }
+
+/// The investigations opened over a sample's results: number as people call it, and record number.
+pub fn investigations(reader: &Reader<'_>, sample: i64) -> Answer<Vec<(i64, i64)>> {
+    reader.all(
+        "select distinct i.number, i.id
+         from sample_test t
+         join result r on r.sample_test = t.id
+         join investigation i on i.result = r.id
+         where t.sample = :sample
+         order by i.number",
+        named_params! { ":sample": sample },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}
