@@ -3,6 +3,7 @@
 
 #![allow(dead_code)]
 
+pub mod samples;
 pub mod world;
 
 use std::path::PathBuf;

@@ -28,8 +28,8 @@ pub struct RecordFacts {
     pub lost_stages: Vec<String>,
     /// Readings that could not be read.
     pub not_read: usize,
-    /// Something changed after a signature under this sample.
-    pub is_changed_after_signing: bool,
+    /// Something changed after a signature under this sample: the act of that signature.
+    pub changed_after_signature: Option<i64>,
 }
 
 /// How an exception is answered.
@@ -109,12 +109,9 @@ fn from_record(record: &RecordFacts) -> Vec<Exception> {
             answer: None,
         });
     };
-    if record.is_changed_after_signing {
-        add(
-            "changed after signing".to_string(),
-            "changed after signing",
-            "Changed after signing.".to_string(),
-        );
+    if let Some(act) = record.changed_after_signature {
+        let sentence = "Changed after signing.".to_string();
+        add(format!("changed after signature {act}"), "changed after signing", sentence);
     }
     if let Some(words) = &record.outside_window {
         add("pull outside window".to_string(), "pull outside window", format!("The pull was {words}."));
@@ -258,7 +255,7 @@ mod tests {
             tested_late: Some("tested 3 days after the last day to test".to_string()),
             lost_stages: vec!["before disturbance lost: bottle shaken".to_string()],
             not_read: 1,
-            is_changed_after_signing: true,
+            changed_after_signature: Some(7),
         };
         assert_eq!(exceptions(&[], &record, &[]).len(), 6);
         assert!(exceptions(&[], &RecordFacts::default(), &[]).is_empty());

@@ -183,7 +183,7 @@ pub fn many(reader: &Reader<'_>, ids: &[i64]) -> Answer<Vec<ReviewSample>> {
                 outside_window: outside_window(&row.head),
                 tested_late: tested_late(&row, seen.last_first_reading),
                 lost_stages: losses.remove(&id).unwrap_or_default(),
-                is_changed_after_signing: is_changed,
+                changed_after_signature: is_changed.then_some(row.signed_act),
             };
             let flags = flags.remove(&id).unwrap_or_default();
             let answers = answers.remove(&id).unwrap_or_default();

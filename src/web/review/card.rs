@@ -62,7 +62,7 @@ fn card(
         sentence: one.sentence.clone(),
         value: result.map(|row| row.shown.clone()).unwrap_or_default(),
         limit: result.map(|row| row.limit.clone()).unwrap_or_default(),
-        facts: block.map(|block| facts(block)).unwrap_or_default(),
+        facts: block.map(facts).unwrap_or_default(),
         investigation: investigation(loaded, one),
         chart: chart(loaded, one, place),
         answer: answer(visit, loaded, one),
