@@ -11,6 +11,7 @@ pub mod condition;
 pub mod container;
 pub mod digest;
 pub mod failure;
+pub mod find;
 pub mod flag;
 pub mod formula;
 pub mod formulation;

@@ -7,6 +7,7 @@ pub mod chamber;
 pub mod check;
 pub mod condition;
 pub mod container;
+pub mod definitions;
 pub mod door;
 pub mod find;
 pub mod flag;

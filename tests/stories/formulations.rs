@@ -49,6 +49,7 @@ fn a_version_is_written_signed_by_its_author_and_approved_by_a_second_person() {
     let written = writes(&lab.formulator(), &path, &[]);
     assert_eq!(written.status, 303, "{}", written.text());
     let version = written.location.unwrap();
+    assert!(version.starts_with("/formulation-versions/"));
     let page = lab.formulator().sees(&version, "Total 99.98 g of 100.00 g, 0.02 g short");
     assert!(page.text().contains("suspending agent"), "the material's own function is taken");
 

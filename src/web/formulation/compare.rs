@@ -7,7 +7,7 @@ use super::super::show;
 use super::super::table::{Cell, Table};
 use super::super::visit::Visit;
 use crate::domain::failure::Failure;
-use crate::domain::formulation::{self, Difference};
+use crate::domain::formulation::compare::{Difference, compare as differences};
 use crate::domain::version::Versioned;
 use crate::store;
 use crate::store::version::Version;
@@ -39,7 +39,7 @@ pub fn compare(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
     let owner = visit.read(|reader| store::formulation::get(reader, id))?;
     let (old, new) = (asked(visit, "old", id)?, asked(visit, "new", id)?);
-    let all = formulation::compare(&old.read()?, &new.read()?);
+    let all = differences(&old.read()?, &new.read()?);
     let shows_all = visit.query.get("show") == Some("all");
     let different = all.iter().filter(|line| !line.is_same()).count();
     let lead = format!(
