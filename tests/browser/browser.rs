@@ -163,6 +163,11 @@ impl<'a> Browser<'a> {
             .unwrap();
     }
 
+    /// Types into what has the focus.
+    pub fn types(&self, keys: &str) {
+        RUNTIME.block_on(async { self.client().active_element().await?.send_keys(keys).await }).unwrap();
+    }
+
     /// The words of the page's main part.
     pub fn text(&self) -> String {
         let element = self.find("//main").or_else(|| self.find("//body"));

@@ -8,6 +8,7 @@ mod audit;
 mod browser;
 mod driver;
 mod imports;
+mod keyboard;
 mod pages;
 mod people;
 mod print;
