@@ -174,11 +174,15 @@ fn product(visit: &Visit) -> Outcome {
         ))
     })?;
     let empty = "No presentation yet. Specification, shelf life and studies hang on a presentation; add one.";
-    let packs =
-        Table::new("By code", &PRESENTATION_HEADS, empty).rows(presentations.iter().map(presentation_row));
+    let packs = Table::new("Presentations, by code", &PRESENTATION_HEADS, empty)
+        .rows(presentations.iter().map(presentation_row));
     let empty = "No formulation yet. A formulator adds one and writes its first version.";
-    let recipes = Table::new("By code", &["Formulation", "Versions#", "Approved version", "Lots#"], empty)
-        .rows(formulations.iter().map(super::formulation::row));
+    let recipes = Table::new(
+        "Formulations, by code",
+        &["Formulation", "Versions#", "Approved version", "Lots#"],
+        empty,
+    )
+    .rows(formulations.iter().map(super::formulation::row));
     let attributes = recommended_attributes(&product.dosage_form).join(", ");
     let shell = Shell::of(visit, &product.code).crumb("/products", "Products");
     let formulation_path = format!("/formulations/new?product={id}");
