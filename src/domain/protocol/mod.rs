@@ -1,5 +1,10 @@
 //! A protocol version: which arms a study has, at which ages, with which tests.
 
+pub mod cost;
+pub mod generator;
+pub mod preset;
+pub mod rules;
+
 use serde::{Deserialize, Serialize};
 
 use super::age::Age;
@@ -32,6 +37,10 @@ pub enum Programme {
 }
 
 impl Programme {
+    pub fn from_words(words: &str) -> Option<Programme> {
+        Programme::ALL.into_iter().find(|programme| programme.words() == words)
+    }
+
     pub const ALL: [Programme; 4] =
         [Programme::Primary, Programme::Commitment, Programme::Ongoing, Programme::Development];
 
@@ -129,4 +138,7 @@ pub struct PlannedTest {
     pub test: String,
     pub title: String,
     pub method_version: i64,
+    /// Done for information: the bound specification has no limit for it.
+    #[serde(default)]
+    pub is_information: bool,
 }
