@@ -172,7 +172,31 @@ create table container_event (
 create index container_event_by_container on container_event (container);
 create index container_event_by_pull on container_event (pull) where pull is not null;
 create trigger guard_container_leaves_once before insert on container_event
-when new.kind in ('pulled', 'broken', 'leaked', 'lost') and exists (
-    select 1 from container_event
-    where container = new.container and kind in ('pulled', 'broken', 'leaked', 'lost', 'destroyed'))
+when exists (select 1 from container_event
+    where container = new.container and (new.kind <> 'destroyed' or kind = 'destroyed'))
 begin select raise(abort, 'the container has left already'); end;
+
+-- Pulls that still ask for work, so that the week never walks the years behind it. An index over the rows above,
+-- kept by triggers, derived and not itself a record.
+create table open_pull (
+    pull integer primary key references pull (id),
+    stage text not null check (stage in ('to take', 'in test')),
+    due_on text not null,
+    latest_on text not null                 -- the last day to take it, then the last day to test it
+) strict;
+create index open_pull_by_latest on open_pull (stage, latest_on);
+create index open_pull_by_due on open_pull (stage, due_on);
+
+create trigger open_pull_planned after insert on pull
+when new.imported is null and new.due_on is not null
+begin
+    insert into open_pull (pull, stage, due_on, latest_on)
+    values (new.id, 'to take', new.due_on, coalesce(new.latest_on, new.due_on));
+end;
+create trigger open_pull_happened after insert on pull_event
+begin
+    delete from open_pull where pull = new.pull and new.kind <> 'pulled';
+    update open_pull set stage = 'in test', latest_on = date(new.happened_on,
+        (select coalesce(test_within_days, 0) || ' days' from pull where id = new.pull))
+    where pull = new.pull;
+end;

@@ -176,3 +176,28 @@ when new.kind = 'sample' and new.meaning = 'review' and (exists (
     select 1 from result_check c join sample_test t on t.id = c.sample_test
     where t.sample = new.subject and c.account = new.account and c.verdict = 'checked'))
 begin select raise(abort, 'the reviewer is not a performer'); end;
+
+-- A pull asks for no more work at the bench once every test has a result that was not sent back.
+create trigger open_pull_tested after insert on result
+begin
+    delete from open_pull
+    where pull = (select s.pull from sample_test t join sample s on s.id = t.sample where t.id = new.sample_test)
+        and not exists (
+            select 1 from sample_test o
+            where o.sample = (select sample from sample_test where id = new.sample_test)
+                and (not exists (select 1 from result where sample_test = o.id)
+                    or (select verdict from result_check where sample_test = o.id and version =
+                            (select max(version) from result where sample_test = o.id)
+                        order by id desc limit 1) = 'sent back'));
+end;
+create trigger open_pull_sent_back after insert on result_check
+when new.verdict = 'sent back'
+begin
+    insert or ignore into open_pull (pull, stage, due_on, latest_on)
+    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days')
+    from sample_test t
+    join sample s on s.id = t.sample
+    join pull p on p.id = s.pull
+    join pull_event e on e.pull = p.id and e.kind = 'pulled'
+    where t.id = new.sample_test and p.imported is null;
+end;

@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::Subject;
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 11] = [
+pub const TECHNICAL_TABLES: [&str; 12] = [
     "trail_act",
     "trail_change",
     "trail_seal",
@@ -23,6 +23,7 @@ pub const TECHNICAL_TABLES: [&str; 11] = [
     "reading_log",
     "counter",
     "refinery_schema_history",
+    "open_pull",
 ];
 
 /// Trailed tables whose rows may be updated: accounts and codes, and versions until they are signed.

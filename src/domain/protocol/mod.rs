@@ -8,6 +8,7 @@ pub mod rules;
 use serde::{Deserialize, Serialize};
 
 use super::age::Age;
+use super::refusal::NamedReason;
 
 /// The content of a protocol version.
 #[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
@@ -141,4 +142,16 @@ pub struct PlannedTest {
     /// Done for information: the bound specification has no limit for it.
     #[serde(default)]
     pub is_information: bool,
+}
+
+#[derive(Debug, PartialEq, Eq, thiserror::Error)]
+pub enum ProtocolCodeRefusal {
+    #[error("There is a protocol {0} already. A code is never used twice.")]
+    ProtocolCodeTaken(String),
+}
+
+impl NamedReason for ProtocolCodeRefusal {
+    fn field(&self) -> Option<String> {
+        Some("code".to_string())
+    }
 }
