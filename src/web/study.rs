@@ -1,5 +1,0 @@
-//! Studies: a lot ageing by a protocol.
-
-use super::route::Route;
-
-pub const ROUTES: &[Route] = &[];
