@@ -30,6 +30,10 @@ CREATE INDEX lot_decision_by_lot on lot_decision (lot);
 
 CREATE INDEX lot_distribution_by_lot on lot_distribution (lot);
 
+CREATE INDEX open_pull_by_due on open_pull (stage, due_on);
+
+CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on);
+
 CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
 
 CREATE INDEX presentation_by_product on presentation (product);
@@ -353,6 +357,13 @@ CREATE TABLE method_version (
     unique (method, number)
 ) strict;
 
+CREATE TABLE open_pull (
+    pull integer primary key references pull (id),
+    stage text not null check (stage in ('to take', 'in test')),
+    due_on text not null,
+    latest_on text not null                 -- the last day to take it, then the last day to test it
+) strict;
+
 CREATE TABLE photo_mark (
     id integer primary key,
     attachment integer not null references attachment (id),
@@ -495,7 +506,7 @@ CREATE TABLE result (
     qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'none')),
     shown text not null,                    -- rounded as the method says, or the words
     unit text not null,
-    verdict text not null check (verdict in ('conforms', 'out of specification', 'no limit', 'no reportable value',
+    verdict text not null check (verdict in ('conforms', 'out of specification', 'outside in-use limit', 'no limit', 'no reportable value',
         'not judged')),
     detail text not null,                   -- JSON: replicates used, mean, spread, limits, way of comparing
     sd text,                                -- imported means carry their spread and number
@@ -744,9 +755,8 @@ when new.verdict = 'checked' and exists (
 begin select raise(abort, 'the checker is not a reader'); end;
 
 CREATE TRIGGER guard_container_leaves_once before insert on container_event
-when new.kind in ('pulled', 'broken', 'leaked', 'lost') and exists (
-    select 1 from container_event
-    where container = new.container and kind in ('pulled', 'broken', 'leaked', 'lost', 'destroyed'))
+when exists (select 1 from container_event
+    where container = new.container and (new.kind <> 'destroyed' or kind = 'destroyed'))
 begin select raise(abort, 'the container has left already'); end;
 
 CREATE TRIGGER guard_formulation_version before update on formulation_version
@@ -794,3 +804,43 @@ begin select raise(abort, 'the trail is never changed'); end;
 
 CREATE TRIGGER guard_trail_seal_update before update on trail_seal
 begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER open_pull_happened after insert on pull_event
+begin
+    delete from open_pull where pull = new.pull and new.kind <> 'pulled';
+    update open_pull set stage = 'in test', latest_on = date(new.happened_on,
+        (select coalesce(test_within_days, 0) || ' days' from pull where id = new.pull))
+    where pull = new.pull;
+end;
+
+CREATE TRIGGER open_pull_planned after insert on pull
+when new.imported is null and new.due_on is not null
+begin
+    insert into open_pull (pull, stage, due_on, latest_on)
+    values (new.id, 'to take', new.due_on, coalesce(new.latest_on, new.due_on));
+end;
+
+CREATE TRIGGER open_pull_sent_back after insert on result_check
+when new.verdict = 'sent back'
+begin
+    insert or ignore into open_pull (pull, stage, due_on, latest_on)
+    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days')
+    from sample_test t
+    join sample s on s.id = t.sample
+    join pull p on p.id = s.pull
+    join pull_event e on e.pull = p.id and e.kind = 'pulled'
+    where t.id = new.sample_test and p.imported is null;
+end;
+
+CREATE TRIGGER open_pull_tested after insert on result
+begin
+    delete from open_pull
+    where pull = (select s.pull from sample_test t join sample s on s.id = t.sample where t.id = new.sample_test)
+        and not exists (
+            select 1 from sample_test o
+            where o.sample = (select sample from sample_test where id = new.sample_test)
+                and (not exists (select 1 from result where sample_test = o.id)
+                    or (select verdict from result_check where sample_test = o.id and version =
+                            (select max(version) from result where sample_test = o.id)
+                        order by id desc limit 1) = 'sent back'));
+end;

@@ -3,16 +3,22 @@
 use rust_decimal::Decimal;
 use supernate::acts;
 use supernate::acts::method::NewMethod;
+use supernate::acts::protocol::NewProtocol;
+use supernate::acts::pull::Taking;
 use supernate::acts::secret::Secrets;
 use supernate::acts::signature::{Approval, Authorship, Means, Signed, authenticate};
 use supernate::domain::actor::Actor;
+use supernate::domain::chamber::NewChamber;
 use supernate::domain::formulation::{FormulationContent, Ingredient, IntendedState, NewFormulation};
+use supernate::domain::lot::{NewLot, Scale};
 use supernate::domain::material::NewMaterial;
 use supernate::domain::method::{
     Component, Formula, Input, MethodContent, Reportable, Settings, TestKind, preset,
 };
 use supernate::domain::product::{NewPresentation, NewProduct};
+use supernate::domain::protocol::Programme;
 use supernate::domain::specification::{Limit, Range, SpecificationContent, TestLimits, Way};
+use supernate::domain::study::NewStudy;
 use supernate::domain::version::Versioned;
 use supernate::store;
 
@@ -33,6 +39,7 @@ pub fn approve(lab: &Lab, of: Versioned, id: i64, author: &str, approver: &str) 
     let check: acts::version::ContentCheck<'_> = match of {
         Versioned::Method => &acts::method::check,
         Versioned::Specification => &acts::specification::check,
+        Versioned::Protocol => &acts::protocol::content_is_sound,
         _ => &acts::version::unchecked,
     };
     let own = signed::<Authorship>(lab, &author);
@@ -259,7 +266,6 @@ pub fn approved_formulation(lab: &Lab, product: i64) -> i64 {
 
 /// A lot of an approved formulation of a new product, 100 mL bottles for this market.
 pub fn lot_for_market(lab: &Lab, number: &str, market: &str) -> i64 {
-    use supernate::domain::lot::{NewLot, Scale};
     use supernate::domain::product::NewPresentation;
     let db = &lab.app.db;
     let product = product(lab, &format!("P{number}"));
@@ -359,4 +365,122 @@ pub fn instrument(lab: &Lab, code: &str, kind: &str) -> i64 {
         acts::instrument::record_event(db, &lab.actor("rafe.tolland"), id, &check).unwrap();
     }
     id
+}
+
+/// The site's first presentation, TW-104 in 200 mL bottles, made with its approved formulation the first time.
+pub fn first_presentation(lab: &Lab) -> i64 {
+    let known = lab.app.db.read(store::lot::presentations).unwrap();
+    if let Some((id, _)) = known.first() {
+        return *id;
+    }
+    let product = product(lab, "TW-104");
+    approved_formulation(lab, product);
+    presentation(lab, product, "TW-104-200")
+}
+
+/// A lot of the first presentation, made a month ago.
+pub fn lot(lab: &Lab, number: &str) -> i64 {
+    let presentation = first_presentation(lab);
+    let formulation_version = lab.app.db.read(store::lot::approved_formulations).unwrap()[0].0;
+    let new = NewLot {
+        number: number.to_string(),
+        presentation,
+        formulation_version,
+        made_on: supernate::domain::moment::plus_days(lab.now().date(), -30),
+        size: Some(Decimal::from(500)),
+        size_unit: Some("L".to_string()),
+        scale: Scale::Production,
+        container_closure: "amber PET bottle, 28 mm polypropylene cap".to_string(),
+        bulk_lot: None,
+    };
+    acts::lot::make(&lab.app.db, &lab.actor("maren.oddy"), &new).unwrap()
+}
+
+/// A chamber for each condition of the catalogue, made the first time.
+pub fn chambers(lab: &Lab) {
+    let db = &lab.app.db;
+    if !db.read(store::chamber::all).unwrap().is_empty() {
+        return;
+    }
+    for condition in db.read(store::condition::all).unwrap() {
+        let new = NewChamber {
+            code: format!("CH-{}", condition.code),
+            name: format!("Chamber at {}", condition.name),
+            condition: condition.id,
+            location: "cellar".to_string(),
+            qualification_due_on: "2030-06-30".parse().unwrap(),
+        };
+        acts::chamber::add(db, &lab.actor("maren.oddy"), &new).unwrap();
+    }
+}
+
+/// The approved protocol version of the first presentation with these kinds of test, made the first time: the
+/// usual arms of a primary study, every test at every age.
+pub fn approved_protocol(lab: &Lab, kinds: &[TestKind]) -> i64 {
+    let db = &lab.app.db;
+    let presentation = first_presentation(lab);
+    let known = db.read(|reader| store::protocol::approved_of(reader, presentation)).unwrap();
+    if let Some((id, _)) = known.first() {
+        return *id;
+    }
+    let new = NewProtocol {
+        presentation,
+        code: "SP-104".to_string(),
+        title: "Primary stability".to_string(),
+        programme: Programme::Primary,
+        specification_version: approved_specification(lab, presentation, kinds),
+    };
+    let id = acts::protocol::add(db, &lab.actor("maren.oddy"), &new).unwrap();
+    approve(lab, Versioned::Protocol, id, "maren.oddy", "ada.whitlock");
+    id
+}
+
+/// A study with time zero today, of a new lot with this number, with these kinds of test.
+pub fn study(lab: &Lab, lot_number: &str, kinds: &[TestKind]) -> i64 {
+    let lot = lot(lab, lot_number);
+    study_of(lab, lot, kinds)
+}
+
+/// A study with time zero today of a lot.
+pub fn study_of(lab: &Lab, lot: i64, kinds: &[TestKind]) -> i64 {
+    chambers(lab);
+    let protocol_version = approved_protocol(lab, kinds);
+    let db = &lab.app.db;
+    let mut new = NewStudy {
+        number: db.read(store::study::next_number).unwrap(),
+        lot,
+        protocol_version,
+        started_on: lab.now().date(),
+        chambers: Vec::new(),
+    };
+    let prepared = db.read(|reader| acts::study::prepare(reader, &new, new.started_on)).unwrap();
+    let chambers = db.read(store::chamber::all).unwrap();
+    let at = |condition: i64| chambers.iter().find(|one| one.condition == condition).map(|one| one.id);
+    new.chambers = prepared.facts.arms.iter().map(|arm| at(arm.condition)).collect();
+    acts::study::start(db, &lab.actor("maren.oddy"), &new).unwrap()
+}
+
+/// A pull of a study by the place of its arm (1 is 25/60 upright) and its age in words.
+pub fn pull(lab: &Lab, study: i64, arm_position: i64, age: &str) -> store::pull::Pull {
+    let pulls = lab.app.db.read(|reader| store::pull::of_study(reader, study)).unwrap();
+    let is_it = |pull: &store::pull::Pull| pull.arm_position == arm_position && pull.age_text == age;
+    pulls.into_iter().find(is_it).expect("such a pull")
+}
+
+/// The labels of the containers that a pull takes next.
+pub fn labels(lab: &Lab, pull: &store::pull::Pull) -> Vec<String> {
+    let here = lab.app.db.read(|reader| store::container::of_arm(reader, pull.study_arm)).unwrap();
+    let needed = pull.facts.containers_needed;
+    here.into_iter().filter(|one| one.event.is_none()).take(needed).map(|one| one.label).collect()
+}
+
+/// Takes a pull with the right containers, today, by the first analyst; answers with its sample.
+pub fn take(lab: &Lab, pull: &store::pull::Pull) -> i64 {
+    let taking = Taking {
+        labels: labels(lab, pull),
+        taken_on: lab.now().date(),
+        why: "taken for this story".to_string(),
+    };
+    acts::pull::take(&lab.app.db, &lab.actor("rafe.tolland"), pull.id, &taking).unwrap();
+    pull.sample
 }
