@@ -18,9 +18,15 @@ pub struct Specification {
     pub product_name: String,
     pub strength: String,
     pub pack: String,
+    /// Number of the newest approved version.
+    pub approved_number: Option<i64>,
 }
 
-const SELECT: &str = "select s.id, s.code, s.presentation, p.code, d.name, p.strength, p.pack
+const SELECT: &str = "select s.id, s.code, s.presentation, p.code, d.name, p.strength, p.pack,
+        (select max(v.number)
+         from specification_version v
+         join signature g on g.kind = 'specification_version' and g.subject = v.id and g.meaning = 'approval'
+         where v.specification = s.id)
     from specification s
     join presentation p on p.id = s.presentation
     join product d on d.id = p.product";
@@ -34,6 +40,7 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<Specification> {
         product_name: row.get(4)?,
         strength: row.get(5)?,
         pack: row.get(6)?,
+        approved_number: row.get(7)?,
     })
 }
 

@@ -1,6 +1,6 @@
 //! Methods and their versions: the list, a new method of a kind, drafts, signing.
 
-mod facts;
+pub(super) mod facts;
 mod form;
 mod grid;
 mod settings;

@@ -1,5 +1,0 @@
-//! Specifications and their versions.
-
-use super::route::Route;
-
-pub const ROUTES: &[Route] = &[];
