@@ -1,1 +1,250 @@
-//! Release or rejection of a lot.
+//! Release or rejection of a lot: a decision of the authorised person, by signature.
+
+use chrono::NaiveDate;
+
+use super::refusal::NamedReason;
+use super::review::{SampleFacts, SampleState};
+use super::version::VersionState;
+
+/// The two decisions.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Decision {
+    Released,
+    Rejected,
+}
+
+impl Decision {
+    /// As stored in `lot_decision.decision`, and as shown.
+    pub fn words(self) -> &'static str {
+        match self {
+            Decision::Released => "released",
+            Decision::Rejected => "rejected",
+        }
+    }
+
+    pub fn from_words(words: &str) -> Option<Decision> {
+        [Decision::Released, Decision::Rejected].into_iter().find(|one| one.words() == words)
+    }
+}
+
+/// Everything a release rests on.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct DecisionFacts {
+    pub lot_number: String,
+    pub is_imported: bool,
+    pub formulation_state: VersionState,
+    /// The newest decision on the lot.
+    pub decided: Option<Decision>,
+    /// The samples received for release.
+    pub release: Vec<SampleFacts>,
+    /// Tests with a release limit in the specification in force that no release sample has a result of.
+    pub tests_missing: Vec<String>,
+    /// Latest release results that do not conform: "Assay 107.9 %, out of specification".
+    pub not_conforming: Vec<String>,
+    /// Numbers of investigations over results of the lot that have no conclusion.
+    pub open_investigations: Vec<i64>,
+    /// The last day of use by the assigned shelf life; `None` where none is assigned for the day it was made.
+    pub expires_on: Option<NaiveDate>,
+}
+
+#[derive(Debug, PartialEq, Eq, thiserror::Error)]
+pub enum DecisionRefusal {
+    #[error("{0} was imported, not made here. Nothing is decided on it.")]
+    LotImported(String),
+    #[error("Its formulation version is {0}. A lot is released only to an approved version.")]
+    FormulationNotApproved(&'static str),
+    #[error("{0} is {1} already.")]
+    DecidedAlready(String, &'static str),
+    #[error("{0} was rejected. A rejected lot is not released.")]
+    LotRejected(String),
+    #[error("No sample of {0} was received for release. Receive one and have it tested.")]
+    NoReleaseSample(String),
+    #[error("No release result yet for: {0}.")]
+    ReleaseTestsMissing(String),
+    #[error("These release samples are not complete and checked yet: {0}.")]
+    ReleaseNotComplete(String),
+    #[error("These release samples are not reviewed and signed as they are now: {0}.")]
+    ReleaseNotReviewed(String),
+    #[error("These release results do not conform: {0}.")]
+    ReleaseNotConforming(String),
+    #[error("These investigations are open: {0}. Conclude them first.")]
+    InvestigationOpen(String),
+    #[error(
+        "No shelf life is assigned for a lot of this presentation made on that day, so there is no expiry. \
+         QA assigns one on the page of the presentation."
+    )]
+    ShelfLifeMissing,
+    #[error("Say why in at least {SHORTEST_REASON} characters; it stands beside the signature.")]
+    ReasonTooShort,
+}
+
+impl NamedReason for DecisionRefusal {
+    fn field(&self) -> Option<String> {
+        matches!(self, DecisionRefusal::ReasonTooShort).then(|| "reason".to_string())
+    }
+}
+
+/// The shortest reason for a rejection.
+pub const SHORTEST_REASON: usize = 20;
+
+/// Whether the lot may be released. Refuses in this order: imported, formulation not approved, released already,
+/// rejected, no release sample, tests missing, not complete, not reviewed, not conforming, open investigation,
+/// no shelf life.
+pub fn may_release(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
+    let lot = || facts.lot_number.clone();
+    if facts.is_imported {
+        return Err(DecisionRefusal::LotImported(lot()));
+    }
+    if facts.formulation_state != VersionState::Approved {
+        return Err(DecisionRefusal::FormulationNotApproved(facts.formulation_state.words()));
+    }
+    match facts.decided {
+        Some(Decision::Released) => return Err(DecisionRefusal::DecidedAlready(lot(), "released")),
+        Some(Decision::Rejected) => return Err(DecisionRefusal::LotRejected(lot())),
+        None => {}
+    }
+    if facts.release.is_empty() {
+        return Err(DecisionRefusal::NoReleaseSample(lot()));
+    }
+    if !facts.tests_missing.is_empty() {
+        return Err(DecisionRefusal::ReleaseTestsMissing(facts.tests_missing.join(", ")));
+    }
+    if let Some(numbers) = samples_in(facts, &[SampleState::InWork, SampleState::WaitingForCheck]) {
+        return Err(DecisionRefusal::ReleaseNotComplete(numbers));
+    }
+    if let Some(numbers) = unsigned(facts) {
+        return Err(DecisionRefusal::ReleaseNotReviewed(numbers));
+    }
+    if !facts.not_conforming.is_empty() {
+        return Err(DecisionRefusal::ReleaseNotConforming(facts.not_conforming.join("; ")));
+    }
+    if !facts.open_investigations.is_empty() {
+        let numbers: Vec<String> = facts.open_investigations.iter().map(i64::to_string).collect();
+        return Err(DecisionRefusal::InvestigationOpen(numbers.join(", ")));
+    }
+    facts.expires_on.map(|_| ()).ok_or(DecisionRefusal::ShelfLifeMissing)
+}
+
+fn samples_in(facts: &DecisionFacts, states: &[SampleState]) -> Option<String> {
+    let found: Vec<&str> = facts
+        .release
+        .iter()
+        .filter(|sample| states.contains(&sample.state()))
+        .map(|sample| sample.number.as_str())
+        .collect();
+    (!found.is_empty()).then(|| found.join(", "))
+}
+
+fn unsigned(facts: &DecisionFacts) -> Option<String> {
+    let open = [SampleState::WaitingForReview, SampleState::ChangedAfterSigning, SampleState::Imported];
+    samples_in(facts, &open)
+}
+
+/// Whether the lot may be rejected. Refuses in this order: imported, rejected already, the reason.
+pub fn may_reject(facts: &DecisionFacts, reason: &str) -> Result<(), DecisionRefusal> {
+    if facts.is_imported {
+        return Err(DecisionRefusal::LotImported(facts.lot_number.clone()));
+    }
+    if facts.decided == Some(Decision::Rejected) {
+        return Err(DecisionRefusal::DecidedAlready(facts.lot_number.clone(), "rejected"));
+    }
+    if reason.trim().chars().count() < SHORTEST_REASON {
+        return Err(DecisionRefusal::ReasonTooShort);
+    }
+    Ok(())
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::domain::check::TestFacts;
+
+    fn signed() -> SampleFacts {
+        let test = TestFacts { title: "Assay".to_string(), version: Some(1), ..TestFacts::default() };
+        SampleFacts { number: "R1".to_string(), is_signed: true, tests: vec![test], ..SampleFacts::default() }
+    }
+
+    fn good() -> DecisionFacts {
+        DecisionFacts {
+            lot_number: "TW-104".to_string(),
+            is_imported: false,
+            formulation_state: VersionState::Approved,
+            decided: None,
+            release: vec![signed()],
+            tests_missing: Vec::new(),
+            not_conforming: Vec::new(),
+            open_investigations: Vec::new(),
+            expires_on: NaiveDate::from_ymd_opt(2028, 12, 31),
+        }
+    }
+
+    #[test]
+    fn a_release_is_refused_in_the_documented_order() {
+        let lot = || "TW-104".to_string();
+        let open = SampleFacts { tests: vec![TestFacts::default()], ..signed() };
+        let unsigned = SampleFacts { is_signed: false, ..signed() };
+        let changed = SampleFacts { is_changed_after_signing: true, ..signed() };
+        let number = || "R1".to_string();
+        let table = [
+            (DecisionFacts { is_imported: true, ..good() }, Err(DecisionRefusal::LotImported(lot()))),
+            (
+                DecisionFacts { formulation_state: VersionState::Draft, ..good() },
+                Err(DecisionRefusal::FormulationNotApproved("draft")),
+            ),
+            (
+                DecisionFacts { decided: Some(Decision::Released), ..good() },
+                Err(DecisionRefusal::DecidedAlready(lot(), "released")),
+            ),
+            (
+                DecisionFacts { decided: Some(Decision::Rejected), ..good() },
+                Err(DecisionRefusal::LotRejected(lot())),
+            ),
+            (DecisionFacts { release: Vec::new(), ..good() }, Err(DecisionRefusal::NoReleaseSample(lot()))),
+            (
+                DecisionFacts { tests_missing: vec!["pH".to_string()], ..good() },
+                Err(DecisionRefusal::ReleaseTestsMissing("pH".to_string())),
+            ),
+            (
+                DecisionFacts { release: vec![open], ..good() },
+                Err(DecisionRefusal::ReleaseNotComplete(number())),
+            ),
+            (
+                DecisionFacts { release: vec![unsigned], ..good() },
+                Err(DecisionRefusal::ReleaseNotReviewed(number())),
+            ),
+            (
+                DecisionFacts { release: vec![changed], ..good() },
+                Err(DecisionRefusal::ReleaseNotReviewed(number())),
+            ),
+            (
+                DecisionFacts { not_conforming: vec!["Assay 107.9 %".to_string()], ..good() },
+                Err(DecisionRefusal::ReleaseNotConforming("Assay 107.9 %".to_string())),
+            ),
+            (
+                DecisionFacts { open_investigations: vec![3, 7], ..good() },
+                Err(DecisionRefusal::InvestigationOpen("3, 7".to_string())),
+            ),
+            (DecisionFacts { expires_on: None, ..good() }, Err(DecisionRefusal::ShelfLifeMissing)),
+            (good(), Ok(())),
+        ];
+        for (facts, expected) in table {
+            assert_eq!(may_release(&facts), expected, "{facts:?}");
+        }
+    }
+
+    #[test]
+    fn a_rejection_needs_a_reason_and_may_follow_a_release() {
+        let why = "the bottles leak at the cap seal";
+        let table = [
+            (DecisionFacts { is_imported: true, ..good() }, why, false),
+            (DecisionFacts { decided: Some(Decision::Rejected), ..good() }, why, false),
+            (good(), "leaks", false),
+            (good(), why, true),
+            (DecisionFacts { decided: Some(Decision::Released), ..good() }, why, true),
+            (DecisionFacts { release: Vec::new(), ..good() }, why, true),
+        ];
+        for (facts, reason, expected) in table {
+            assert_eq!(may_reject(&facts, reason).is_ok(), expected, "{facts:?}");
+        }
+    }
+}

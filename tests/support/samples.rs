@@ -4,19 +4,21 @@ use chrono::NaiveDate;
 use rust_decimal::Decimal;
 use supernate::acts;
 use supernate::acts::reading::How;
+use supernate::acts::signature::Approval;
 use supernate::domain::lot::{NewLot, Scale};
 use supernate::domain::method::{MethodContent, Reportable, RoundTo, TestKind, preset};
 use supernate::domain::qualification::NewQualification;
 use supernate::domain::reading::{Entry, Said};
 use supernate::domain::reason::Reason;
 use supernate::domain::sample::{NewSample, Purpose};
+use supernate::domain::shelf_life::{ExpiryFormat, NewShelfLife, STORAGE_STATEMENTS};
 use supernate::domain::specification::{SpecificationContent, TestLimits, Way};
 use supernate::domain::typed::Number;
 use supernate::domain::version::Versioned;
 use supernate::store;
 use supernate::store::bench::BenchSample;
 
-use super::world::{approve, approved_formulation, between, method_with, presentation, product};
+use super::world::{approve, approved_formulation, between, method_with, presentation, product, signed};
 use super::{Lab, Seen};
 
 /// Two analysts qualified for two tests, `assay` (95.0 to 105.0 %, release 97.0 to 103.0) and `density`.
@@ -84,11 +86,15 @@ impl<'a> Bench<'a> {
     }
 
     pub fn lot(&self, number: &str) -> i64 {
+        self.lot_made_on(number, NaiveDate::from_ymd_opt(2026, 11, 20).unwrap())
+    }
+
+    pub fn lot_made_on(&self, number: &str, made_on: NaiveDate) -> i64 {
         let new = NewLot {
             number: number.to_string(),
             presentation: self.presentation,
             formulation_version: self.formulation_version,
-            made_on: NaiveDate::from_ymd_opt(2026, 11, 20).unwrap(),
+            made_on,
             size: None,
             size_unit: None,
             scale: Scale::Production,
@@ -111,6 +117,24 @@ impl<'a> Bench<'a> {
             tests: tests.iter().map(|test| test.to_string()).collect(),
         };
         acts::sample::receive(&self.lab.app.db, &analyst, &new).unwrap()
+    }
+
+    /// QA assigns 24 months, printed as a month, from today on.
+    pub fn assigns_shelf_life(&self) {
+        let actor = self.lab.actor("ada.whitlock");
+        let new = NewShelfLife {
+            presentation: self.presentation,
+            market: "United Kingdom".to_string(),
+            storage_statement: STORAGE_STATEMENTS[0].to_string(),
+            months: 24,
+            in_use_days: None,
+            basis: "tentative".to_string(),
+            reference: "protocol PR-104 and report RP-7".to_string(),
+            effective_from: actor.at.date(),
+            expiry_format: ExpiryFormat::Month,
+        };
+        let signed = signed::<Approval>(self.lab, &actor);
+        acts::shelf_life::assign(&self.lab.app.db, &actor, &new, &signed).unwrap();
     }
 
     pub fn sample(&self, sample: i64) -> BenchSample {

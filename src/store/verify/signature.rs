@@ -5,7 +5,7 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
-use crate::store::{Answer, Reader, review, shelf_life, signature, stop, version};
+use crate::store::{Answer, Reader, lot_decision, review, shelf_life, signature, stop, version};
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     for signed in signature::all(reader)? {
@@ -37,6 +37,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::SpecificationVersion => of_version(Versioned::Specification),
         Kind::ProtocolVersion => of_version(Versioned::Protocol),
         Kind::Sample => review::canonical(reader, signed.subject.id, Some(signed.act)).map(Some),
+        Kind::Lot => lot_decision::canonical_of_signature(reader, signed.id),
         Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }
