@@ -3,6 +3,7 @@
 pub mod account;
 pub mod backup;
 pub mod demo;
+pub mod evaluate;
 pub mod folder;
 pub mod identity;
 pub mod import;
@@ -36,6 +37,8 @@ enum Command {
     Backup(backup::Arguments),
     Restore(restore::Arguments),
     Account(account::Arguments),
+    /// Shelf life and trend of any tidy table of results, without a database
+    Evaluate(evaluate::Args),
 }
 
 /// Runs the command of the arguments; 0 where it did what was asked, 1 where not, 2 where it was not understood.
@@ -52,12 +55,28 @@ pub fn run() -> ExitCode {
         Command::Backup(arguments) => backup::run(&arguments),
         Command::Restore(arguments) => restore::run(&arguments),
         Command::Account(arguments) => account::run(&arguments),
+        Command::Evaluate(arguments) => return evaluated(&arguments),
     };
     match outcome {
         Ok(()) => ExitCode::SUCCESS,
         Err(failure) => {
             tell(&failure);
             ExitCode::FAILURE
+        }
+    }
+}
+
+/// A table that cannot be read is told with its lines, exit code 2; nothing is half printed.
+#[allow(clippy::print_stdout, clippy::print_stderr)]
+fn evaluated(arguments: &evaluate::Args) -> ExitCode {
+    match evaluate::run(arguments) {
+        Ok(text) => {
+            print!("{text}");
+            ExitCode::SUCCESS
+        }
+        Err(refusal) => {
+            eprint!("{refusal}");
+            ExitCode::from(2)
         }
     }
 }

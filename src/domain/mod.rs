@@ -10,6 +10,7 @@ pub mod check;
 pub mod condition;
 pub mod container;
 pub mod digest;
+pub mod evaluation;
 pub mod failure;
 pub mod find;
 pub mod flag;

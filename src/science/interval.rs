@@ -1,7 +1,7 @@
 //! Confidence limits of a line and prediction limits for results still to come.
 
 use super::distribution::student::Student;
-use super::regression::{Line, NoLine, Point};
+use super::regression::{Line, MeanLine, NoLine, Point};
 
 /// A range with its centre.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -63,7 +63,7 @@ pub fn next_value(earlier: &[Point], x: f64, confidence: f64) -> Forecast {
     if line.sse == 0.0 {
         return Forecast::NoVariance { centre: line.at(x) };
     }
-    match prediction(&line, x, 1, confidence) {
+    match line.mean_line().and_then(|mean| prediction(&mean, x, 1, confidence)) {
         Some(limits) => Forecast::Expected { limits, df: line.df, weak: line.df == 1 },
         None => Forecast::NotANumber,
     }
@@ -71,30 +71,30 @@ pub fn next_value(earlier: &[Point], x: f64, confidence: f64) -> Forecast {
 
 /// Two-sided prediction limits for the mean of `results` future results at x; `None` without degrees of
 /// freedom, with no result asked for, or with a confidence outside 0–1.
-pub fn prediction(line: &Line, x: f64, results: u32, confidence: f64) -> Option<Limits> {
+pub fn prediction(line: &MeanLine, x: f64, results: u32, confidence: f64) -> Option<Limits> {
     (results > 0).then_some(())?;
     around(line, x, 1.0 / f64::from(results) + line.leverage(x), 0.5 * (1.0 - confidence))
 }
 
 /// One-sided prediction limits, each of its own confidence, for the mean of `results` future results.
-pub fn prediction_one_sided(line: &Line, x: f64, results: u32, confidence: f64) -> Option<Limits> {
+pub fn prediction_one_sided(line: &MeanLine, x: f64, results: u32, confidence: f64) -> Option<Limits> {
     (results > 0).then_some(())?;
     around(line, x, 1.0 / f64::from(results) + line.leverage(x), 1.0 - confidence)
 }
 
 /// Two-sided confidence limits of the mean line at x.
-pub fn confidence_of_mean(line: &Line, x: f64, confidence: f64) -> Option<Limits> {
+pub fn confidence_of_mean(line: &MeanLine, x: f64, confidence: f64) -> Option<Limits> {
     around(line, x, line.leverage(x), 0.5 * (1.0 - confidence))
 }
 
 /// One-sided confidence limits of the mean line at x, each of its own confidence.
-pub fn confidence_of_mean_one_sided(line: &Line, x: f64, confidence: f64) -> Option<Limits> {
+pub fn confidence_of_mean_one_sided(line: &MeanLine, x: f64, confidence: f64) -> Option<Limits> {
     around(line, x, line.leverage(x), 1.0 - confidence)
 }
 
-fn around(line: &Line, x: f64, variance_factor: f64, tail: f64) -> Option<Limits> {
+fn around(line: &MeanLine, x: f64, variance_factor: f64, tail: f64) -> Option<Limits> {
     let t = Student::new(line.df as f64)?.upper_quantile(tail)?;
-    let half = t * (line.mse()? * variance_factor).sqrt();
+    let half = t * (line.variance * variance_factor).sqrt();
     let centre = line.at(x);
     let limits = Limits { lower: centre - half, centre, upper: centre + half };
     (limits.lower.is_finite() && limits.upper.is_finite()).then_some(limits)

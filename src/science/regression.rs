@@ -101,6 +101,39 @@ pub fn rounding_floor(n: usize, syy: f64, largest_y: f64) -> f64 {
     1e-12 * syy + n as f64 * noise * noise
 }
 
+/// A line whose residual variance is known: what confidence, prediction and tolerance limits are made from.
+/// For one lot of several, the centre may be the lot's own while slope and variance come from all lots.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct MeanLine {
+    /// Number of points behind the centre.
+    pub n: usize,
+    /// Mean age at the centre.
+    pub mean_x: f64,
+    /// Mean value at the centre.
+    pub mean_y: f64,
+    /// Σ(x − x̄)² behind the slope; above zero.
+    pub sxx: f64,
+    /// Slope.
+    pub slope: f64,
+    /// Residual variance s², zero or more.
+    pub variance: f64,
+    /// Degrees of freedom of s², at least 1.
+    pub df: usize,
+}
+
+impl MeanLine {
+    /// Value of the line at age x.
+    pub fn at(&self, x: f64) -> f64 {
+        self.mean_y + self.slope * (x - self.mean_x)
+    }
+
+    /// h(x) = 1/n + (x − x̄)²/Sxx: variance of the line at x in units of σ².
+    pub fn leverage(&self, x: f64) -> f64 {
+        let d = x - self.mean_x;
+        1.0 / self.n as f64 + d * d / self.sxx
+    }
+}
+
 /// A least-squares line y = intercept + slope·x.
 ///
 /// Formulas: Draper & Smith, Applied Regression Analysis, 3rd ed. 1998, ch. 1.
@@ -146,6 +179,13 @@ impl Line {
     pub fn leverage(&self, x: f64) -> f64 {
         let d = x - self.sums.mean_x;
         1.0 / self.sums.n as f64 + d * d / self.sums.sxx
+    }
+
+    /// The line with its variance; none with two points.
+    pub fn mean_line(&self) -> Option<MeanLine> {
+        let (sums, variance) = (self.sums, self.mse()?);
+        let Sums { n, mean_x, mean_y, sxx, .. } = sums;
+        Some(MeanLine { n, mean_x, mean_y, sxx, slope: self.slope, variance, df: self.df })
     }
 
     /// Residual variance s²; none with two points, since nothing is left to judge it by.

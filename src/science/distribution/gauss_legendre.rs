@@ -26,6 +26,11 @@ impl<const N: usize> Rule<N> {
         Self { nodes }
     }
 
+    /// Pairs of node and weight.
+    pub fn nodes(&self) -> &[(f64, f64)] {
+        &self.nodes
+    }
+
     /// The integral of f from `from` to `to`.
     pub fn integrate(&self, from: f64, to: f64, mut f: impl FnMut(f64) -> f64) -> f64 {
         let (middle, half) = (0.5 * (from + to), 0.5 * (to - from));

@@ -32,7 +32,8 @@ impl NoncentralT {
         Tails { lower, upper }
     }
 
-    /// The t below which the probability p lies, by Newton on ln of the smaller tail; `None` unless 0 < p < 1.
+    /// The t below which the probability p lies, by Newton on ln of the smaller tail; `None` unless 0 < p <
+    /// 1.
     pub fn quantile(&self, p: f64) -> Option<f64> {
         if !(p > 0.0 && p < 1.0) {
             return None;
