@@ -1,5 +1,7 @@
 //! The house keeps its own rules: arrows between rooms, sizes, coverage of acts and routes, schema and policy.
 
+#![allow(clippy::unwrap_used, clippy::expect_used)]
+
 #[path = "../support/mod.rs"]
 mod support;
 

@@ -1,5 +1,7 @@
 //! Stories: what people do, through the router.
 
+#![allow(clippy::unwrap_used, clippy::expect_used)]
+
 #[path = "../support/mod.rs"]
 mod support;
 
