@@ -1,9 +1,10 @@
 //! Finding records by number, code or name. Separators and capitals do not matter.
 
-use rusqlite::{Row, named_params};
+use rusqlite::functions::FunctionFlags;
+use rusqlite::{Connection, Row, named_params};
 
 use super::{Answer, Reader};
-use crate::domain::find::{SEPARATORS, folded};
+use crate::domain::find::folded;
 
 /// What a found record is; decides its page and its place in the results.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
@@ -113,26 +114,27 @@ pub fn exact(reader: &Reader<'_>, typed: &str) -> Answer<Vec<(Found, Hit)>> {
     Ok(found)
 }
 
-/// Records whose number or words hold this text, of each kind at most `limit` and one more.
+/// Records whose number or words hold this text, of each kind at most `limit` and one more. Nothing that is
+/// typed is a wildcard. Samples and containers, of which there are many, are found by their numbers alone.
 pub fn holding(reader: &Reader<'_>, typed: &str, limit: usize) -> Answer<Vec<(Found, Vec<Hit>)>> {
     let typed = folded(typed);
     if typed.is_empty() {
         return Ok(Vec::new());
     }
-    let pattern = like_pattern(&typed);
     let mut found = Vec::new();
     for place in &PLACES {
         let Place { from, number, about, owner, .. } = place;
-        let (bare_number, bare_about) = (without_separators(number), without_separators(about));
+        let is_worded = !matches!(place.found, Found::Sample | Found::Container);
+        let in_words =
+            if is_worded { format!("or instr(folded({about}), :typed) > 0") } else { String::new() };
         let sql = format!(
             "select t.id, {number}, {about}, {owner}
              from {from}
-             where {bare_number} like :pattern escape '\\' or {bare_about} like :pattern escape '\\'
-             order by {bare_number} like :pattern escape '\\' desc, t.id desc
+             where instr(folded({number}), :typed) > 0 {in_words}
+             order by instr(folded({number}), :typed) > 0 desc, t.id desc
              limit :limit"
         );
-        let params = named_params! { ":pattern": pattern, ":limit": limit as i64 + 1 };
-        let hits = reader.all(&sql, params, hit)?;
+        let hits = reader.all(&sql, named_params! { ":typed": typed, ":limit": limit as i64 + 1 }, hit)?;
         if !hits.is_empty() {
             found.push((place.found, hits));
         }
@@ -140,31 +142,12 @@ pub fn holding(reader: &Reader<'_>, typed: &str, limit: usize) -> Answer<Vec<(Fo
     Ok(found)
 }
 
-/// The pattern that holds the text as it stands: the wildcards of LIKE are escaped.
-fn like_pattern(text: &str) -> String {
-    let mut pattern = String::from("%");
-    for c in text.chars() {
-        if matches!(c, '%' | '_' | '\\') {
-            pattern.push('\\');
-        }
-        pattern.push(c);
-    }
-    pattern.push('%');
-    pattern
-}
-
-/// The SQL expression of a column without separators. Columns come from the code, never from a person.
-fn without_separators(column: &str) -> String {
-    SEPARATORS.iter().fold(column.to_string(), |inner, mark| format!("replace({inner}, '{mark}', '')"))
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn wildcards_are_text() {
-        assert_eq!(like_pattern("50%"), "%50\\%%");
-        assert_eq!(like_pattern("a\\b"), "%a\\\\b%");
-    }
+/// Makes [`folded`] a function of SQL, so that both sides of a comparison are folded alike.
+pub(in crate::store) fn register_function(connection: &Connection) -> Answer<()> {
+    let pure =
+        FunctionFlags::SQLITE_UTF8 | FunctionFlags::SQLITE_INNOCUOUS | FunctionFlags::SQLITE_DETERMINISTIC;
+    connection.create_scalar_function("folded", 1, pure, |context| {
+        Ok(folded(context.get_raw(0).as_str().unwrap_or_default()))
+    })?;
+    Ok(())
 }

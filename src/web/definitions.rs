@@ -71,11 +71,11 @@ fn how_it_ages(counts: &Counts) -> Vec<Line> {
     ]
 }
 
-fn table(caption: &str, lines: Vec<Line>) -> Table {
+fn table(lines: Vec<Line>) -> Table {
     let rows = lines.into_iter().map(|(path, name, count, sentence)| {
         vec![Cell::link(path, name), Cell::number(count.to_string()), Cell::text(sentence)]
     });
-    Table::new(caption, &["Definition", "On record#", "What it holds"], "").rows(rows)
+    Table::new("Counts of what is on record", &["Definition", "On record#", "What it holds"], "").rows(rows)
 }
 
 fn definitions(visit: &Visit) -> Outcome {
@@ -83,8 +83,8 @@ fn definitions(visit: &Visit) -> Outcome {
     let lead =
         "What lots and studies rest on. An approved version never changes; a new version takes its place.";
     Record::new(Shell::of(visit, "Definitions"), lead)
-        .table("", table("What is made", what_is_made(&counts)))
-        .table("", table("How it is tested", how_it_is_tested(&counts)))
-        .table("", table("How it ages", how_it_ages(&counts)))
+        .table("What is made", table(what_is_made(&counts)))
+        .table("How it is tested", table(how_it_is_tested(&counts)))
+        .table("How it ages", table(how_it_ages(&counts)))
         .show()
 }

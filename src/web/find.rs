@@ -58,13 +58,14 @@ fn why(found: Found, hit: &Hit, typed: &str) -> String {
 }
 
 fn table(found: Found, hits: &[Hit], typed: &str) -> Table {
-    let (heading, _, _) = words(found);
+    let (_, number, _) = words(found);
+    let head = format!("{}{}", number[..1].to_uppercase(), &number[1..]);
     let caption = if hits.len() > MOST {
         format!("The first {MOST}; type more of the number to narrow it")
     } else {
         show::counted(hits.len(), "result", "results")
     };
-    Table::new(&caption, &[heading, "What it is", "Found"], "").rows(hits.iter().take(MOST).map(|hit| {
+    Table::new(&caption, &[&head, "What it is", "Found"], "").rows(hits.iter().take(MOST).map(|hit| {
         vec![
             Cell::link(path(found, hit), &hit.number),
             Cell::text(&hit.about),

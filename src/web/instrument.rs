@@ -41,6 +41,12 @@ fn today_words(facts: &InstrumentFacts, visit: &Visit) -> String {
     }
 }
 
+/// The same for the register: the first sentence alone, without what to do at the bench.
+fn state_words(facts: &InstrumentFacts, visit: &Visit) -> String {
+    let words = today_words(facts, visit);
+    words.split(". ").next().map(|first| first.trim_end_matches('.').to_string()).unwrap_or(words)
+}
+
 fn due_words(facts: &InstrumentFacts) -> Option<String> {
     facts.calibration.as_ref().and_then(|calibration| calibration.due_on).map(date_shown)
 }
@@ -62,7 +68,7 @@ fn list(visit: &Visit) -> Outcome {
         vec![
             Cell::Link { path, words: facts.code.clone(), note: facts.name.clone() },
             Cell::text(&facts.kind),
-            Cell::text(today_words(facts, visit)),
+            Cell::text(state_words(facts, visit)),
             Cell::or_missing(due_words(facts), "not calibrated yet"),
         ]
     }));

@@ -25,10 +25,11 @@ fn asked(visit: &Visit, name: &str, formulation: i64) -> Result<Version, Failure
 
 fn cells(line: &Difference) -> Vec<Cell> {
     let (was, is) = (line.was.clone(), line.is.clone());
+    let why = if was.is_none() && is.is_none() { "not stated" } else { "not in it" };
     vec![
         Cell::text(&line.what),
-        was.map_or_else(|| Cell::Missing("not in it".to_string()), Cell::Was),
-        is.map_or_else(|| Cell::Missing("not in it".to_string()), Cell::Is),
+        was.map_or_else(|| Cell::Missing(why.to_string()), Cell::Was),
+        is.map_or_else(|| Cell::Missing(why.to_string()), Cell::Is),
         Cell::number(&line.change),
     ]
 }

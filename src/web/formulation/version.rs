@@ -76,8 +76,12 @@ fn state_words(version: &Version) -> &'static str {
     }
 }
 
-fn attention(content: &FormulationContent) -> &'static str {
-    if is_sum_off(content) { "Look at the sum before signing: " } else { "" }
+fn attention(version: &Version, content: &FormulationContent) -> &'static str {
+    if version.state == VersionState::Draft && is_sum_off(content) {
+        "Look at the sum before signing: "
+    } else {
+        ""
+    }
 }
 
 fn physical_facts(content: &FormulationContent) -> Vec<(String, String)> {
@@ -130,7 +134,7 @@ fn version_page(status: u16, visit: &Visit, version: &Version, form: Option<Form
     if let Some(form) = &form {
         shell = shell.with_errors(form);
     }
-    let lead = format!("{}{}.", attention(&content), sum_words(&content));
+    let lead = format!("{}{}.", attention(version, &content), sum_words(&content));
     let record = Record::new(shell, lead)
         .fact("State", state_words(version))
         .fact("Why it exists", &version.reason)
@@ -144,7 +148,7 @@ fn version_page(status: u16, visit: &Visit, version: &Version, form: Option<Form
     with_links(record, visit, version, &owner, &all)
         .table("Ingredients", ingredients(&content))
         .more_facts("Physical data", physical_facts(&content))
-        .form("Signature", note, form)
+        .form("Next step", note, form)
         .signatures(versions::signatures(visit, OF, version)?)
         .table("Lots made to this version", made_to(&lots, version))
         .trail(Trail::of(&lines, visit.at.zone))
