@@ -182,10 +182,12 @@ create table open_pull (
     pull integer primary key references pull (id),
     stage text not null check (stage in ('to take', 'in test')),
     due_on text not null,
-    latest_on text not null                 -- the last day to take it, then the last day to test it
+    latest_on text not null,                -- the last day to take it, then the last day to test it
+    minutes integer not null default 0,     -- at the bench, from the methods of its tests
+    account integer references account (id) -- who has it
 ) strict;
-create index open_pull_by_latest on open_pull (stage, latest_on);
-create index open_pull_by_due on open_pull (stage, due_on);
+create index open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);
+create index open_pull_by_due on open_pull (stage, due_on, latest_on, minutes);
 
 create trigger open_pull_planned after insert on pull
 when new.imported is null and new.due_on is not null
@@ -199,4 +201,8 @@ begin
     update open_pull set stage = 'in test', latest_on = date(new.happened_on,
         (select coalesce(test_within_days, 0) || ' days' from pull where id = new.pull))
     where pull = new.pull;
+end;
+create trigger open_pull_assigned after insert on pull_assignment
+begin
+    update open_pull set account = new.account where pull = new.pull;
 end;

@@ -193,11 +193,19 @@ end;
 create trigger open_pull_sent_back after insert on result_check
 when new.verdict = 'sent back'
 begin
-    insert or ignore into open_pull (pull, stage, due_on, latest_on)
-    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days')
+    insert or ignore into open_pull (pull, stage, due_on, latest_on, account)
+    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days'),
+        (select account from pull_assignment where pull = p.id order by id desc limit 1)
     from sample_test t
     join sample s on s.id = t.sample
     join pull p on p.id = s.pull
     join pull_event e on e.pull = p.id and e.kind = 'pulled'
     where t.id = new.sample_test and p.imported is null;
+end;
+create trigger open_pull_asked after insert on sample_test
+begin
+    update open_pull
+    set minutes = minutes + coalesce((select json_extract(content, '$.hands_on_minutes')
+        from method_version where id = new.method_version), 0)
+    where pull = (select pull from sample where id = new.sample);
 end;

@@ -1,5 +1,6 @@
 //! Facts become documents and drawings: charts, tables, the lot file. Pure.
 
+pub mod calendar;
 pub mod chart;
 pub mod cylinder;
 pub mod export;

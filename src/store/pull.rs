@@ -5,6 +5,7 @@ use rusqlite::{Row, named_params};
 
 use super::door::Change;
 use super::{Answer, Day, Reader};
+use crate::domain::moment::{date_stored, plus_days};
 use crate::domain::pull::{Event, Progress, PullFacts};
 use crate::domain::window::Window;
 
@@ -41,6 +42,16 @@ pub struct Pull {
 }
 
 impl Pull {
+    /// Its place in a list of pulls that ask for work.
+    pub fn after(&self) -> After {
+        let facts = &self.facts;
+        let last = match (facts.happened_on, self.test_within_days) {
+            (Some(on), Some(days)) => Some(plus_days(on, days)),
+            _ => facts.latest_on.or(facts.due_on),
+        };
+        After { latest_on: last.map(date_stored).unwrap_or_default(), pull: self.id }
+    }
+
     pub fn window(&self) -> Option<Window> {
         let (earliest_on, latest_on) = (self.facts.earliest_on?, self.facts.latest_on?);
         Some(Window { earliest_on, latest_on })
@@ -198,8 +209,8 @@ pub enum Show {
     Week,
     /// Taken, and not all tests have their result.
     InTest,
-    /// Taken, and the day by which the tests must be done is tomorrow or before.
-    TestingCloses,
+    /// To take or in testing, and the last day for it is tomorrow or before.
+    Urgent,
     /// To take, due in the 28 days after the week.
     Coming,
     /// Everything that is to be taken.
@@ -219,8 +230,9 @@ fn range(show: Show) -> &'static str {
              where stage = 'to take' and due_on <= :week_end and latest_on >= :today"
         }
         Show::InTest => "select pull from open_pull where stage = 'in test'",
-        Show::TestingCloses => {
-            "select pull from open_pull where stage = 'in test' and latest_on <= :tomorrow"
+        Show::Urgent => {
+            "select pull from open_pull
+             where stage in ('to take', 'in test') and latest_on <= :tomorrow and due_on <= :tomorrow"
         }
         Show::Coming => {
             "select pull from open_pull
@@ -234,16 +246,49 @@ fn range(show: Show) -> &'static str {
 const DATES: &str = "and :today || :tomorrow || :week_end || :coming_end is not null";
 
 fn dates(today: NaiveDate) -> [Day; 4] {
-    [0, 1, 6, 34].map(|days| Day(crate::domain::moment::plus_days(today, days)))
+    [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
 }
 
-/// The pulls of a list, the one whose last day comes first first.
-pub fn list(reader: &Reader<'_>, show: Show, today: NaiveDate, limit: i64) -> Answer<Vec<Pull>> {
+/// The place in a list after which it goes on: paging by key.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct After {
+    pub latest_on: String,
+    pub pull: i64,
+}
+
+impl After {
+    /// `2026-12-08.17`, for an address.
+    pub fn text(&self) -> String {
+        format!("{}.{}", self.latest_on, self.pull)
+    }
+
+    pub fn from_text(text: &str) -> Option<After> {
+        let (latest_on, pull) = text.split_once('.')?;
+        Some(After { latest_on: latest_on.to_string(), pull: pull.parse().ok()? })
+    }
+}
+
+/// The pulls of a list from a place on, the one whose last day comes first first.
+pub fn list(
+    reader: &Reader<'_>,
+    show: Show,
+    today: NaiveDate,
+    after: Option<&After>,
+    limit: i64,
+) -> Answer<Vec<Pull>> {
     let [today, tomorrow, week_end, coming_end] = dates(today);
-    let choice = format!("{} {DATES} order by latest_on, pull limit :limit", range(show));
+    let choice = format!(
+        "{} {DATES} and (latest_on, pull) > (:after_on, :after_pull) order by latest_on, pull limit :limit",
+        range(show)
+    );
     let order = "order by (select latest_on from open_pull where pull = p.id), p.id";
     let params = named_params! {
-        ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
+        ":today": today,
+        ":tomorrow": tomorrow,
+        ":week_end": week_end,
+        ":coming_end": coming_end,
+        ":after_on": after.map(|after| after.latest_on.as_str()).unwrap_or_default(),
+        ":after_pull": after.map_or(0, |after| after.pull),
         ":limit": limit,
     };
     reader.all(&select(&choice, order), params, from_row)

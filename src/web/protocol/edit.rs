@@ -193,8 +193,9 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
     let specification_version = typed.record("specification_version");
     let tests: Option<Vec<PlannedTest>> =
         rows(typed, old.tests.len(), "test", "code").into_iter().map(|at| read_test(typed, at)).collect();
+    let tests: Option<Vec<PlannedTest>> = tests.into_iter().collect();
     let planned = tests.clone().unwrap_or_else(|| old.tests.clone());
-    let arms: Option<Vec<Arm>> = rows(typed, old.arms.len(), "arm", "condition")
+    let arms: Vec<Option<Arm>> = rows(typed, old.arms.len(), "arm", "condition")
         .into_iter()
         .map(|at| read_arm(typed, at, old, &planned))
         .collect();
@@ -205,7 +206,7 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
     Some(ProtocolContent {
         programme: programme?,
         specification_version: specification_version?,
-        arms: arms?,
+        arms: arms.into_iter().collect::<Option<Vec<Arm>>>()?,
         tests: tests?,
         spare_containers: u32::try_from(spare?).ok()?,
         retain_containers: u32::try_from(retain?).ok()?,

@@ -1,0 +1,268 @@
+//! The lab manager's week: what is late or closing, seven days, who has what, and the weeks to come.
+
+mod lists;
+
+use askama::Template;
+use chrono::NaiveDate;
+
+use super::page::Shell;
+use super::part::StatusMark;
+use super::pull::due_words;
+use super::reply::{Outcome, page};
+use super::route::{Route, get};
+use super::show;
+use super::study::one::mark;
+use super::visit::Visit;
+use crate::domain::failure::Failure;
+use crate::domain::moment::{date_shown, plus_days};
+use crate::domain::protocol::cost::minutes_words;
+use crate::domain::week;
+use crate::store;
+use crate::store::pull::{Pull, Show};
+use crate::store::week::{OpenCylinder, PersonDay};
+
+pub const ROUTES: &[Route] = &[
+    get("/week", the_week),
+    get("/week/pulls", lists::pulls),
+    get("/week/list", lists::print_list),
+    get("/week/calendar.ics", lists::calendar),
+];
+
+/// Rows of the first block and of the days together; more are one link away.
+const MOST_ROWS: i64 = 100;
+
+/// A pull as a row of the week.
+pub(super) struct Row {
+    pub id: i64,
+    pub lot_number: String,
+    pub product: String,
+    pub study: i64,
+    pub study_number: String,
+    pub condition: String,
+    pub age: String,
+    pub window_first: String,
+    pub window_last: String,
+    pub until: String,
+    pub recorded: String,
+    pub needed: usize,
+    pub left: i64,
+    pub is_short: bool,
+    pub status: StatusMark,
+    pub with: String,
+    pub minutes: String,
+    pub chamber: String,
+    pub containers: String,
+}
+
+/// What is still to be done and until when: taking it, or testing it.
+fn until(pull: &Pull, today: NaiveDate) -> String {
+    let (Some(on), Some(days)) = (pull.facts.happened_on, pull.test_within_days) else {
+        return due_words(pull, today).rsplit(", ").next().unwrap_or_default().to_string();
+    };
+    let last = plus_days(on, days);
+    let words = crate::domain::moment::until_shown(today, last).replace("closes", "ends");
+    format!("taken {}, to be tested by {}, {words}", date_shown(on), date_shown(last))
+}
+
+pub(super) fn row(pull: &Pull, today: NaiveDate) -> Row {
+    let progress = pull.facts.progress;
+    let window = pull.window().map(|window| window.words()).unwrap_or_default();
+    let (first, last) = window.split_once('–').unwrap_or(("", &window));
+    let needed = pull.facts.containers_needed;
+    let still = needed.saturating_sub(usize::try_from(pull.containers_taken).unwrap_or_default());
+    Row {
+        id: pull.id,
+        lot_number: pull.lot_number.clone(),
+        product: pull.product_words.clone(),
+        study: pull.study,
+        study_number: pull.study_number.clone(),
+        condition: format!("{}, {}", pull.condition_name, pull.orientation),
+        age: pull.age_text.clone(),
+        window_first: if first.is_empty() { String::new() } else { format!("{first}–") },
+        window_last: last.to_string(),
+        until: until(pull, today),
+        recorded: format!("{} of {}", progress.complete, progress.tests),
+        needed: still,
+        left: pull.containers_left,
+        is_short: i64::try_from(still).unwrap_or_default() > pull.containers_left,
+        status: mark(pull, today),
+        with: pull.assigned_name.clone().unwrap_or_default(),
+        minutes: minutes_words(pull.minutes),
+        chamber: pull.chamber_code.clone().unwrap_or_default(),
+        containers: format!("{needed} {}s", pull.container_word),
+    }
+}
+
+struct DayView {
+    heading: String,
+    sum: String,
+    is_open: bool,
+    rows: Vec<Row>,
+    readings: Vec<String>,
+}
+
+struct PersonView {
+    name: String,
+    cells: Vec<String>,
+    total: String,
+}
+
+/// Everything the page asks the store, in one snapshot.
+struct Facts {
+    counts: [usize; 4],
+    urgent: Vec<Pull>,
+    pulls: Vec<Pull>,
+    sums: Vec<store::week::DaySum>,
+    people: Vec<PersonDay>,
+    coming: Vec<(NaiveDate, NaiveDate, usize, u32)>,
+    cylinders: Vec<OpenCylinder>,
+    next: Option<(NaiveDate, i64, String)>,
+}
+
+fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
+    let last = plus_days(today, week::DAYS - 1);
+    visit.read(|reader| {
+        let count = |show| store::pull::count(reader, show, today);
+        let counts = [count(Show::Week)?, count(Show::Late)?, count(Show::Closing)?, count(Show::InTest)?];
+        let mut coming = Vec::new();
+        for (first, last) in week::coming_weeks(today) {
+            let (pulls, minutes) = store::week::between(reader, first, last)?;
+            coming.push((first, last, pulls, minutes));
+        }
+        Ok(Facts {
+            counts,
+            urgent: store::pull::list(reader, Show::Urgent, today, None, MOST_ROWS)?,
+            pulls: store::pull::list(reader, Show::Week, today, None, MOST_ROWS)?,
+            sums: store::week::days(reader, today, last)?,
+            people: store::week::people(reader, today, last)?,
+            coming,
+            cylinders: store::week::cylinders(reader, visit.at.zone)?,
+            next: store::week::next(reader, last)?,
+        })
+    })
+}
+
+#[derive(Template)]
+#[template(path = "week/week.html")]
+struct WeekPage {
+    shell: Shell,
+    week: String,
+    late: String,
+    closing: String,
+    in_test: String,
+    is_idle: bool,
+    next: Option<(String, i64, String)>,
+    now: String,
+    urgent: Vec<Row>,
+    days: Vec<DayView>,
+    day_heads: Vec<String>,
+    people: Vec<PersonView>,
+    coming: Vec<(String, usize, String)>,
+    is_cut: bool,
+}
+
+fn the_week(visit: &Visit) -> Outcome {
+    let today = visit.at.date();
+    let facts = facts(visit, today)?;
+    let [in_week, late, closing, in_test] = facts.counts;
+    let days = days(&facts, today);
+    let pulls = |count: usize| show::counted(count, "pull", "pulls");
+    let are = |count: usize, words: &str| match count {
+        1 => format!("1 {}", words.replacen("are", "is", 1)),
+        count => format!("{count} {words}"),
+    };
+    let title = format!("Week from {}", week::day_words(today));
+    page(&WeekPage {
+        shell: Shell::of(visit, &title),
+        week: format!("{} this week", pulls(in_week)),
+        late: are(late, "are late"),
+        closing: match closing {
+            1 => "1 window closes today or tomorrow".to_string(),
+            count => format!("{count} windows close today or tomorrow"),
+        },
+        in_test: are(in_test, "are in testing"),
+        is_idle: in_week + late + closing + in_test == 0,
+        next: facts.next.clone().map(|(on, pull, number)| (date_shown(on), pull, number)),
+        now: visit.at.shown(),
+        urgent: facts.urgent.iter().map(|pull| row(pull, today)).collect(),
+        days,
+        day_heads: week::days(today).into_iter().map(short_day).collect(),
+        people: people(&facts.people, today),
+        coming: facts.coming.iter().map(coming).collect(),
+        is_cut: in_week > facts.pulls.len(),
+    })
+}
+
+/// `Thu 3`.
+fn short_day(day: NaiveDate) -> String {
+    let words = week::day_words(day);
+    let (weekday, rest) = words.split_once(' ').unwrap_or((&words, ""));
+    let number = rest.split(' ').next().unwrap_or_default();
+    format!("{} {number}", weekday.chars().take(3).collect::<String>())
+}
+
+fn coming(line: &(NaiveDate, NaiveDate, usize, u32)) -> (String, usize, String) {
+    let (first, last, pulls, minutes) = line;
+    let window = crate::domain::window::Window { earliest_on: *first, latest_on: *last };
+    (window.words(), *pulls, minutes_words(*minutes))
+}
+
+fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView> {
+    week::days(today)
+        .into_iter()
+        .map(|day| {
+            let sum = facts.sums.iter().find(|sum| sum.on == day);
+            let (pulls, minutes) = sum.map_or((0, 0), |sum| (sum.pulls, sum.minutes));
+            let sum = match pulls {
+                0 => "no pulls".to_string(),
+                pulls => {
+                    format!("{}, about {}", show::counted(pulls, "pull", "pulls"), minutes_words(minutes))
+                }
+            };
+            let is_on = |pull: &&Pull| pull.facts.due_on.map(|due| week::day_of(due, today)) == Some(day);
+            DayView {
+                heading: week::day_words(day),
+                sum,
+                is_open: day == today,
+                rows: facts.pulls.iter().filter(is_on).map(|pull| row(pull, today)).collect(),
+                readings: readings(&facts.cylinders, day, today),
+            }
+        })
+        .collect()
+}
+
+/// The cylinder readings planned for a day; what was due before today and is not read stands under today.
+fn readings(cylinders: &[OpenCylinder], day: NaiveDate, today: NaiveDate) -> Vec<String> {
+    let mut found = Vec::new();
+    for open in cylinders {
+        for (minute, at) in open.cylinder.to_read() {
+            if at.date().max(today) == day {
+                let what = format!("{} {}", open.sample_number, open.label);
+                found.push((at.stored(), format!("{} ({}), {what}", at.shown(), week::minute_words(minute))));
+            }
+        }
+    }
+    found.sort();
+    found.into_iter().map(|(_, words)| words).collect()
+}
+
+fn people(lines: &[PersonDay], today: NaiveDate) -> Vec<PersonView> {
+    let mut accounts: Vec<(i64, String)> =
+        lines.iter().map(|line| (line.account, line.full_name.clone())).collect();
+    accounts.dedup();
+    accounts
+        .into_iter()
+        .map(|(account, name)| {
+            let own: Vec<&PersonDay> = lines.iter().filter(|line| line.account == account).collect();
+            let cell = |day: NaiveDate| match own.iter().find(|line| line.on == day) {
+                Some(line) => minutes_words(line.minutes),
+                None => "–".to_string(),
+            };
+            PersonView {
+                name,
+                cells: week::days(today).into_iter().map(cell).collect(),
+                total: minutes_words(own.iter().map(|line| line.minutes).sum()),
+            }
+        })
+        .collect()
+}
