@@ -30,9 +30,9 @@ CREATE INDEX lot_decision_by_lot on lot_decision (lot);
 
 CREATE INDEX lot_distribution_by_lot on lot_distribution (lot);
 
-CREATE INDEX open_pull_by_due on open_pull (stage, due_on);
+CREATE INDEX open_pull_by_due on open_pull (stage, due_on, latest_on, minutes);
 
-CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on);
+CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);
 
 CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
 
@@ -361,7 +361,9 @@ CREATE TABLE open_pull (
     pull integer primary key references pull (id),
     stage text not null check (stage in ('to take', 'in test')),
     due_on text not null,
-    latest_on text not null                 -- the last day to take it, then the last day to test it
+    latest_on text not null,                -- the last day to take it, then the last day to test it
+    minutes integer not null default 0,     -- at the bench, from the methods of its tests
+    account integer references account (id) -- who has it
 ) strict;
 
 CREATE TABLE photo_mark (
@@ -805,6 +807,19 @@ begin select raise(abort, 'the trail is never changed'); end;
 CREATE TRIGGER guard_trail_seal_update before update on trail_seal
 begin select raise(abort, 'the trail is never changed'); end;
 
+CREATE TRIGGER open_pull_asked after insert on sample_test
+begin
+    update open_pull
+    set minutes = minutes + coalesce((select json_extract(content, '$.hands_on_minutes')
+        from method_version where id = new.method_version), 0)
+    where pull = (select pull from sample where id = new.sample);
+end;
+
+CREATE TRIGGER open_pull_assigned after insert on pull_assignment
+begin
+    update open_pull set account = new.account where pull = new.pull;
+end;
+
 CREATE TRIGGER open_pull_happened after insert on pull_event
 begin
     delete from open_pull where pull = new.pull and new.kind <> 'pulled';
@@ -823,8 +838,9 @@ end;
 CREATE TRIGGER open_pull_sent_back after insert on result_check
 when new.verdict = 'sent back'
 begin
-    insert or ignore into open_pull (pull, stage, due_on, latest_on)
-    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days')
+    insert or ignore into open_pull (pull, stage, due_on, latest_on, account)
+    select p.id, 'in test', p.due_on, date(e.happened_on, coalesce(p.test_within_days, 0) || ' days'),
+        (select account from pull_assignment where pull = p.id order by id desc limit 1)
     from sample_test t
     join sample s on s.id = t.sample
     join pull p on p.id = s.pull

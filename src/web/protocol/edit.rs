@@ -191,7 +191,8 @@ pub(super) fn write_arms(visit: &Visit) -> Outcome {
 fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent> {
     let programme = typed.choice("programme").and_then(|words| Programme::from_words(&words));
     let specification_version = typed.record("specification_version");
-    let tests: Option<Vec<PlannedTest>> =
+    // Every row is read before the first fault counts, so that all faults show at once.
+    let tests: Vec<Option<PlannedTest>> =
         rows(typed, old.tests.len(), "test", "code").into_iter().map(|at| read_test(typed, at)).collect();
     let tests: Option<Vec<PlannedTest>> = tests.into_iter().collect();
     let planned = tests.clone().unwrap_or_else(|| old.tests.clone());
