@@ -59,11 +59,11 @@ pub fn record(
             let beside = Beside { due_at, questions, ..beside(how, container) };
             let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;
             readings.push(as_recorded(id, entry, change.actor(), how));
-            told.push(format!("{} {}", entry.slot.label(), entry.said.shown()));
+            told.push(format!("{}: {}", entry.slot.short(), entry.said.shown()));
             ids.push(id);
         }
         concerns(change, &sample)?;
-        change.tell(format!("{}, {}: {}", sample.number, test.title, told.join("; ")));
+        change.tell(format!("{} · {}", sample.number, told.join("; ")));
         Ok(ids)
     })
 }
@@ -99,7 +99,7 @@ pub fn correct(db: &Db, actor: &Actor, how: &How, entry: &Entry, reason: &Reason
         let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;
         concerns(change, &sample)?;
         let (was, is) = (was.shown(), entry.said.shown());
-        change.tell(format!("{}, {}: was {was}, is {is}", sample.number, entry.slot.label()));
+        change.tell(format!("{} · {}: was {was}, is {is}", sample.number, entry.slot.short()));
         if test.is_complete() {
             super::result::judge_again(change, how.sample_test)?;
         }

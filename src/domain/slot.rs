@@ -77,6 +77,11 @@ impl Slot {
         format!("{}{unit}{column}", self.title)
     }
 
+    /// `pH, reading 2`: for the history, where the unit stands beside the value.
+    pub fn short(&self) -> String {
+        if self.column.is_empty() { self.title.clone() } else { format!("{}, {}", self.title, self.column) }
+    }
+
     /// Reads what was typed, or says in a sentence why it cannot be recorded.
     pub fn read(&self, text: &str) -> Result<Said, String> {
         match &self.accepts {

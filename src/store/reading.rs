@@ -8,9 +8,10 @@ use crate::domain::reading::{Question, Reading, Said};
 use crate::domain::slot::SlotKey;
 
 /// The row of the act being written comes at its end, so within it a new reading has no person yet.
-const SELECT: &str = "select r.sample_test, r.id, r.container, r.replicate, r.field, r.typed, r.value, r.qualifier,
-        r.read_at, r.due_at, r.instrument, r.hints, r.hint_answer, r.supersedes, r.act,
-        coalesce(a.account, 0), coalesce(a.full_name, ''), coalesce(a.at, ''), a.reason, coalesce(c.label, ''), json_extract(v.content, '$.level')
+const SELECT: &str = "select r.sample_test, r.id, r.container, r.replicate, r.field, r.typed, r.value,
+        r.qualifier, r.read_at, r.due_at, r.instrument, r.hints, r.hint_answer, r.supersedes, r.act,
+        coalesce(a.account, 0), coalesce(a.full_name, ''), coalesce(a.at, ''), a.reason,
+        coalesce(c.label, ''), json_extract(v.content, '$.level')
     from reading r
     left join trail_act a on a.id = r.act
     join sample_test t on t.id = r.sample_test
@@ -88,8 +89,8 @@ pub fn insert(
         false => Some(serde_json::to_string(&beside.questions)?),
     };
     change.insert(
-        "insert into reading (sample_test, container, replicate, field, typed, value, qualifier, read_at, due_at,
-             instrument, hints, hint_answer, supersedes)
+        "insert into reading (sample_test, container, replicate, field, typed, value, qualifier, read_at,
+             due_at, instrument, hints, hint_answer, supersedes)
          values (:test, :container, :replicate, :field, :typed, :value, :qualifier, :read_at, :due_at,
              :instrument, :hints, :answer, :supersedes)",
         named_params! {
@@ -186,4 +187,14 @@ pub fn values_of_pull(
         |row| row.get::<_, Option<Exact>>(0),
     )?;
     Ok(rows.into_iter().flatten().map(|exact| exact.0).collect())
+}
+
+/// The newest reading an act made, if it made one.
+pub fn newest_of_act(reader: &Reader<'_>, act: i64) -> Answer<Option<i64>> {
+    reader.one(
+        "reading",
+        "select max(row) from trail_change where act = :act and record = 'reading'",
+        named_params! { ":act": act },
+        |row| row.get(0),
+    )
 }

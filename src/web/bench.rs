@@ -110,6 +110,9 @@ struct HomePage {
     may_receive: bool,
 }
 
+const NOTHING: &str = "Nothing is at the bench. Pulls come here when they are taken, other samples when they \
+     are received.";
+
 fn home(visit: &Visit) -> Outcome {
     visit.knows_query(&[])?;
     let actor = visit.actor()?;
@@ -118,7 +121,7 @@ fn home(visit: &Visit) -> Outcome {
         Ok((store::sample::at_bench(reader)?, store::reading::open_methods(reader, actor.account, today)?))
     })?;
     let lead = match samples.len() {
-        0 => "Nothing is at the bench. Pulls come here when they are taken, other samples when they are received.".to_string(),
+        0 => NOTHING.to_string(),
         count => format!(
             "{} at the bench with tests open. The window that ends first comes first.",
             show::counted(count, "sample", "samples")

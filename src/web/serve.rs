@@ -308,7 +308,10 @@ fn repeated(visit: &Visit) -> Result<Option<Reply>, Failure> {
             // Committed, but the answer was lost with the process: a fresh key, so that work can go on.
             let submission = crate::acts::secret::token()?;
             let saved = visit.at.clock_shown();
-            let body = serde_json::json!({ "saved": saved, "hints": [], "submission": submission });
+            let mut body = serde_json::json!({ "saved": saved, "hints": [], "submission": submission });
+            if let Some(newest) = visit.read(|reader| store::reading::newest_of_act(reader, known.act))? {
+                body["version"] = newest.to_string().into();
+            }
             Ok(Some(Reply::Json { status: 200, body }))
         }
         None => Ok(Some(Reply::See(kept))),

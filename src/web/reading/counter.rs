@@ -64,7 +64,7 @@ pub fn counter(visit: &Visit, loaded: &Loaded, said: &Said) -> Result<Option<Cou
         inspected: match inspect_every {
             0 | 1 => String::new(),
             every => format!(
-                "Looked at after each {every}: a count of {} means that it became uniform after more than {} and at most {}.",
+                "Looked at after each {every}: a count of {} means uniform after more than {} and at most {}.",
                 every * 3,
                 every * 2,
                 every * 3
