@@ -168,6 +168,7 @@ struct SamplePage {
     asks_label: bool,
     stages: Vec<StageBlock>,
     close: Option<Form>,
+    files: super::attachment::Files,
     trail: Trail,
 }
 
@@ -211,6 +212,7 @@ fn sample_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Out
             .into_iter()
             .filter_map(|stage| stage_block(&sample, stage, &label, is_right))
             .collect(),
+        files: super::attachment::Files::of(visit, Subject::new(Kind::Sample, id))?,
         trail: Trail::of(&lines, visit.at.zone),
         shell,
         sample,
