@@ -150,7 +150,8 @@ pub fn measure(db: &Db, actor: &Actor, attachment: i64, marks: &Marks) -> Result
         if let Some(subject) = found.of() {
             concerns(change, subject)?;
         }
-        change.tell(format!("{}: ratio {ratio}", found.file_name));
+        // The ratio is not told here: the next person measures blind.
+        change.tell(found.file_name.clone());
         Ok(())
     })
 }

@@ -8,6 +8,7 @@ use crate::domain::moment::{Moment, date_from_stored};
 use crate::domain::qualification;
 use crate::domain::reading::{self, Entry, Question, Reading, ReadingRefusal, Said, in_slot};
 use crate::domain::reason::Reason;
+use crate::domain::result::reader_key;
 use crate::domain::slot::{SlotKey, labelled};
 use crate::domain::stage;
 use crate::domain::subject::Kind;
@@ -63,7 +64,12 @@ pub fn record(
             ids.push(id);
         }
         concerns(change, &sample)?;
-        change.tell(format!("{} · {}", sample.number, told.join("; ")));
+        // Where a second person reads blind, the history must not tell them the first value.
+        let told = match test.content.second_reader_tolerance {
+            Some(_) => format!("{}, {} values", test.title, ids.len()),
+            None => told.join("; "),
+        };
+        change.tell(format!("{} · {told}", sample.number));
         Ok(ids)
     })
 }
@@ -252,6 +258,7 @@ fn may_record_entry(
     entry: &Entry,
     how: &How,
 ) -> Result<(), Failure> {
+    readers_differ(change.actor(), readings, &entry.slot.key)?;
     let tests = super::stage::tests_of(sample);
     stage::may_read(&tests, &sample.losses, test.content.stage, entry.slot.key.container)?;
     if let Some(minute) = entry.slot.due_minute {
@@ -259,6 +266,27 @@ fn may_record_entry(
         may_read_cylinder(readings, entry, minute, at)?;
     }
     heights(readings, entry)
+}
+
+/// A second or third reading comes after the ones before it, from another person than theirs.
+fn readers_differ(actor: &Actor, readings: &[Reading], key: &SlotKey) -> Result<(), ReadingRefusal> {
+    let Some((reader, field)) = key.field.split_once(':') else { return Ok(()) };
+    let first = SlotKey { field: field.to_string(), ..key.clone() };
+    let before = match reader {
+        "second" => vec![first],
+        _ => vec![first.clone(), reader_key(&first, "second")],
+    };
+    for one in before {
+        let name = key.name();
+        match in_slot(readings, &one) {
+            None => return Err(ReadingRefusal::FirstReaderMissing { name }),
+            Some(there) if there.account == actor.account => {
+                return Err(ReadingRefusal::SecondReaderIsFirst { name });
+            }
+            Some(_) => {}
+        }
+    }
+    Ok(())
 }
 
 fn heights(readings: &[Reading], entry: &Entry) -> Result<(), Failure> {

@@ -4,10 +4,11 @@ use chrono::{Datelike, NaiveDate, Weekday};
 use rust_decimal::Decimal;
 use serde_json::json;
 
+use super::judgement::spread::median;
 use super::judgement::{FlagLevel, NewFlag, Qualifier, ReadingValue};
 use super::method::{Level, MethodContent, Settings};
 use super::moment::{Moment, plus_days};
-use super::reading::{Reading, first_of, is_late, standing};
+use super::reading::{Reading, first_of, in_slot, is_late, standing};
 use super::refusal::NamedReason;
 use super::slot::{SlotKey, minutes_words};
 
@@ -87,18 +88,25 @@ pub fn for_judgement(content: &MethodContent, readings: &[Reading], word: &str) 
                 (false, true) => String::new(),
                 (false, false) => format!("{word} {}", reading.container_label),
             };
+            let decided = decided_by_third(readings, reading);
             ReadingValue {
                 container,
                 container_label: label,
                 replicate: if counts_itself { 1 } else { replicate },
                 field: reading.key.field.clone(),
-                typed: reading.typed.clone(),
-                value: reading.value,
+                typed: decided.map_or_else(|| reading.typed.clone(), |value| value.to_string()),
+                value: decided.or(reading.value),
                 qualifier: Qualifier::from_code(&reading.qualifier).unwrap_or(Qualifier::Words),
                 first_typed: first_of(readings, reading).map(|first| (first.typed.clone(), first.value)),
             }
         })
         .collect()
+}
+
+/// Where a third person read because two differed: the middle of the three values.
+fn decided_by_third(readings: &[Reading], first: &Reading) -> Option<Decimal> {
+    let value = |reader: &str| in_slot(readings, &reader_key(&first.key, reader)).and_then(|one| one.value);
+    median(&[first.value?, value("second")?, value("third")?])
 }
 
 /// What the bench marks by itself: late readings, settings outside the method, questions answered "it is right".

@@ -5,7 +5,7 @@ use axum::http::{Request, header};
 use supernate::domain::method::TestKind;
 
 use crate::benches::at_bench;
-use crate::support::{Lab, PASSWORD, Person, Seen};
+use crate::support::{Lab, Person, Seen};
 
 const BOUNDARY: &str = "----------------quiet-mill";
 
@@ -155,5 +155,4 @@ fn the_reviewer_measures_the_same_photo_blind() {
     assert!(!blind.text().contains("0.5000"), "{}", blind.text());
     let both = lab.reviewer().does(page, action, &marks("0.9000", "0.5100", "0.1000"));
     assert!(both.text().contains("0.5000") && both.text().contains("0.4875"), "{}", both.text());
-    let _ = PASSWORD;
 }

@@ -178,3 +178,35 @@ fn a_late_entry_states_when_it_was_read_and_why() {
     assert_eq!(readings[0].read_at.as_deref(), Some("2026-12-01T08:15:00.000Z"));
     assert_eq!(readings[0].reason.as_deref(), Some("the network was down"));
 }
+
+#[test]
+fn a_second_reader_reads_blind_and_a_third_decides() {
+    use supernate::domain::method::preset;
+    let lab = Lab::new();
+    let mut content = preset::of(TestKind::AsStoredSediment);
+    content.second_reader_tolerance = Some("1.0".parse().unwrap());
+    world::method_with(&lab, "M-AS-STORED-SEDIMENT", "as-stored sediment", content);
+    let (_, tests, label) = at_bench(&lab, &[TestKind::AsStoredSediment]);
+    let (page, action) = (page(tests[0], &label), format!("/tests/{}", tests[0]));
+    let heights = |reader: &str, bed: &str| {
+        [("base_mm", "2.0"), ("bed_top_mm", bed), ("fill_line_mm", "82.0"), ("days_undisturbed", "30")]
+            .map(|(field, text)| (format!("reading.0.1.{reader}{field}"), text.to_string()))
+    };
+    let reads = |person: &Person<'_>, reader: &str, bed: &str| {
+        let fields = heights(reader, bed);
+        let borrowed: Vec<_> = fields.iter().map(|(name, text)| (name.as_str(), text.as_str())).collect();
+        records(person, &page, &borrowed)
+    };
+    let (first, second) = (lab.analyst(), lab.second_analyst());
+    assert_eq!(reads(&first, "", "61.3").status, 303);
+    let alone = first.submits(&page, &action, &[("then", "complete")]);
+    assert_eq!(alone.status, 409);
+    assert!(alone.text().contains("This method asks for a second reader"), "{}", alone.text());
+    assert_eq!(reads(&first, "second:", "61.3").status, 400, "the first reader has no second box");
+    let blind = second.sees(&page, "Top of the bed, second reader");
+    assert!(!blind.html().contains("61.3"), "{}", blind.text());
+    assert_eq!(reads(&second, "second:", "63.0").status, 303);
+    let apart = second.submits(&page, &action, &[("then", "complete")]);
+    assert_eq!(apart.status, 409);
+    assert!(apart.text().contains("A third reading decides"), "{}", apart.text());
+}
