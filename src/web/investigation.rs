@@ -175,7 +175,7 @@ fn write(visit: &Visit) -> Outcome {
     form::submit(
         visit,
         entry_form(visit, id)?,
-        |typed| typed_entry(typed),
+        typed_entry,
         |actor, new| acts::investigation::write(visit.db(), actor, id, &new),
         |()| format!("/investigations/{id}"),
         |status, form| investigation_page(status, visit, id, Some(form)),
