@@ -69,6 +69,7 @@ pub fn rewrite(
     let kind = db.read(|reader| store::method::version(reader, id))?.kind;
     may_be_written(kind, content)?;
     version::rewrite(db, actor, Versioned::Method, id, &written(reason, content)?, seen)
+        .map_err(version::with_differences)
 }
 
 fn kind_of(db: &Db, method: i64) -> Result<TestKind, Failure> {

@@ -79,6 +79,7 @@ pub fn rewrite(
 ) -> Result<(), Failure> {
     db.read(|reader| content_holds(reader, content))?;
     version::rewrite(db, actor, Versioned::Specification, id, &written(reason, content)?, seen)
+        .map_err(version::with_differences)
 }
 
 /// The content check of signing and approving: every rule again, against the methods approved by then.

@@ -7,7 +7,7 @@ use crate::domain::reason::Reason;
 use crate::domain::refusal::Refusal;
 use crate::domain::signature::SignatureRefusal;
 use crate::domain::subject::Subject;
-use crate::domain::version::{VersionRefusal, VersionState, Versioned, may_approve, may_sign};
+use crate::domain::version::{VersionRefusal, VersionState, Versioned, differences, may_approve, may_sign};
 use crate::store;
 use crate::store::door::{Change, Db};
 use crate::store::version::Version;
@@ -79,6 +79,13 @@ pub fn rewrite(
         change.tell(format!("version {}", version.number));
         Ok(())
     })
+}
+
+/// A `Stale` of [`rewrite`] with the places where the two contents differ, in place of both documents.
+pub fn with_differences(failure: Failure) -> Failure {
+    let Failure::Stale(stale) = failure else { return failure };
+    let (theirs, yours) = differences(&stale.theirs, &stale.yours);
+    Failure::Stale(Stale { theirs, yours, ..stale })
 }
 
 /// A check of the content before it may be signed, such as a worked example that must reproduce.

@@ -1,6 +1,8 @@
 //! Versions of definitions: a draft is written, its author signs, a second person approves, and it is frozen.
 
 use super::act::Act;
+use serde_json::Value;
+
 use super::refusal::NamedReason;
 use super::signature::SignatureRefusal;
 use super::subject::Kind;
@@ -110,6 +112,72 @@ pub fn may_approve(state: VersionState, approver: i64, authors: &[i64]) -> Resul
     }
 }
 
+/// Where two contents differ, in words: what stands in the first, and what in the second.
+///
+/// `speed rpm: 30` and `speed rpm: 20`; a part that one of them lacks is `none` there.
+pub fn differences(first: &str, second: &str) -> (String, String) {
+    let read = |text: &str| serde_json::from_str::<Value>(text).ok();
+    let (Some(one), Some(other)) = (read(first), read(second)) else {
+        return (first.to_string(), second.to_string());
+    };
+    let mut found = Vec::new();
+    differ(&mut Vec::new(), Some(&one), Some(&other), &mut found);
+    if found.is_empty() {
+        return ("the same content".to_string(), "the same content".to_string());
+    }
+    let side =
+        |of: fn(&(String, String, String)) -> String| found.iter().map(of).collect::<Vec<_>>().join("; ");
+    (side(|(path, one, _)| format!("{path}: {one}")), side(|(path, _, other)| format!("{path}: {other}")))
+}
+
+fn differ(
+    path: &mut Vec<String>,
+    one: Option<&Value>,
+    other: Option<&Value>,
+    found: &mut Vec<(String, String, String)>,
+) {
+    if one == other {
+        return;
+    }
+    let mut keys: Vec<String> = Vec::new();
+    for value in [one, other].into_iter().flatten() {
+        match value {
+            Value::Object(fields) => keys.extend(fields.keys().cloned()),
+            Value::Array(items) => keys.extend((1..=items.len()).map(|number| number.to_string())),
+            _ => {}
+        }
+    }
+    keys.sort_by_key(|key| (key.parse::<usize>().unwrap_or(0), key.clone()));
+    keys.dedup();
+    if keys.is_empty() {
+        found.push((path.join(", "), leaf(one), leaf(other)));
+        return;
+    }
+    for key in keys {
+        path.push(key.replace(['_', '-'], " "));
+        differ(path, part(one, &key), part(other, &key), found);
+        path.pop();
+    }
+}
+
+fn part<'a>(value: Option<&'a Value>, key: &str) -> Option<&'a Value> {
+    match value? {
+        Value::Object(fields) => fields.get(key),
+        Value::Array(items) => items.get(key.parse::<usize>().ok()?.checked_sub(1)?),
+        _ => None,
+    }
+}
+
+fn leaf(value: Option<&Value>) -> String {
+    match value {
+        None | Some(Value::Null) => "none".to_string(),
+        Some(Value::String(text)) => text.clone(),
+        Some(Value::Bool(is_so)) => if *is_so { "yes" } else { "no" }.to_string(),
+        Some(Value::Array(_) | Value::Object(_)) => "other parts".to_string(),
+        Some(Value::Number(number)) => number.to_string(),
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -125,6 +193,25 @@ mod tests {
         ];
         for (state, approver, expected) in table {
             assert_eq!(may_approve(state, approver, &[1]), expected, "{state:?} by {approver}");
+        }
+    }
+
+    #[test]
+    fn two_contents_differ_in_words() {
+        let table = [
+            (r#"{"speed_rpm":"30","a":1}"#, r#"{"speed_rpm":"20","a":1}"#, "speed rpm: 30", "speed rpm: 20"),
+            (
+                r#"{"list":[1,2]}"#,
+                r#"{"list":[1,3,4]}"#,
+                "list, 2: 2; list, 3: none",
+                "list, 2: 3; list, 3: 4",
+            ),
+            (r#"{"needs_check":true}"#, r#"{"needs_check":null}"#, "needs check: yes", "needs check: none"),
+            (r#"{"a":1}"#, r#"{"a":1}"#, "the same content", "the same content"),
+            ("not JSON", "{}", "not JSON", "{}"),
+        ];
+        for (first, second, one, other) in table {
+            assert_eq!(differences(first, second), (one.to_string(), other.to_string()));
         }
     }
 }

@@ -163,6 +163,7 @@ fn a_new_version_starts_from_the_newest_and_two_writers_do_not_overwrite_each_ot
     let refused = lab.manager().posts(&edit, &stale);
     assert_eq!(refused.status, 409);
     assert!(refused.text().contains("Version 2 has changed"), "{}", refused.text());
+    assert!(refused.text().contains("speed rpm: 30 Yours, not recorded"), "{}", refused.text());
     let newest = lab.app.db.read(|reader| store::method::newest_approved(reader, method)).unwrap();
     assert_eq!(newest.unwrap().number, 1, "a draft is not used");
 }
