@@ -60,7 +60,8 @@ impl Pull {
 
 /// All columns of [`Pull`] over a choice of pulls. What the methods say is read once for all rows; a test counts
 /// as checked when its newest result is, or when its method asks for no check; a pull counts as signed when
-/// nothing was recorded after the reviewer's signature.
+/// nothing was recorded after the reviewer's signature. `cross join` keeps the order of the tables, so that the
+/// few chosen pulls are walked and never all samples.
 fn select(choice: &str, order: &str) -> String {
     format!("with chosen (pull) as materialized ({choice}), {PROGRESS} {COLUMNS} {order}")
 }
@@ -69,16 +70,16 @@ const PROGRESS: &str = "asked as materialized (
         select id, json_extract(content, '$.hands_on_minutes') as minutes,
             json_extract(content, '$.needs_check') as needs_check
         from method_version),
-    asked_test as (
+    asked_test as materialized (
         select s.pull, t.id, m.minutes, m.needs_check,
             (select max(version) from result where sample_test = t.id) as version
         from chosen k
-        join sample s on s.pull = k.pull
-        join sample_test t on t.sample = s.id
-        join asked m on m.id = t.method_version),
+        cross join sample s on s.pull = k.pull
+        cross join sample_test t on t.sample = s.id
+        cross join asked m on m.id = t.method_version),
     known_test as (
         select pull, id, minutes, version, needs_check,
-            exists (select 1 from reading where sample_test = id) as started,
+            exists (select 1 from reading where sample_test = asked_test.id) as started,
             (select verdict from result_check where sample_test = asked_test.id and version = asked_test.version
              order by id desc limit 1) as checking,
             exists (select 1 from result where sample_test = asked_test.id and version = asked_test.version
@@ -112,7 +113,7 @@ const COLUMNS: &str = "select p.id, s.id, s.number, y.id, y.number, a.id, a.posi
             where kind = 'sample' and subject = s.id and meaning = 'review'), -1) > coalesce(t.newest, 0),
         p.uuid
     from chosen
-    join pull p on p.id = chosen.pull
+    cross join pull p on p.id = chosen.pull
     join study_arm a on a.id = p.study_arm
     join condition c on c.id = a.condition
     left join chamber h on h.id = a.chamber

@@ -21,7 +21,9 @@ fn adds(lab: &Lab, programme: &str) -> String {
         ("programme", programme),
         ("specification_version", specification.as_str()),
     ];
-    lab.manager().does("/protocols/new", "/protocols/new", &fields).location.unwrap()
+    let path = lab.manager().does("/protocols/new", "/protocols/new", &fields).location.unwrap();
+    assert!(path.starts_with("/protocol-versions/"), "{path}");
+    path
 }
 
 fn content(lab: &Lab, path: &str) -> ProtocolContent {

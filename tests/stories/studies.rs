@@ -281,3 +281,63 @@ fn the_ledger_says_what_became_of_every_container_and_never_falls_below_zero() {
     let arms = lab.app.db.read(|reader| store::study::arms(reader, study)).unwrap();
     assert_eq!(arms[0].containers_left, arms[0].containers - 1);
 }
+
+/// Records readings of the sample's only test at the bench, as the first analyst: those in these places.
+fn reads(lab: &Lab, sample: i64, label: &str, places: std::ops::Range<usize>) {
+    use supernate::acts::reading::How;
+    use supernate::domain::reading::{Entry, Said};
+    use supernate::domain::reason::Reason;
+    use supernate::domain::typed::Number;
+    let (db, actor) = (&lab.app.db, lab.actor("rafe.tolland"));
+    let found = || db.read(|reader| store::bench::sample(reader, sample)).unwrap();
+    let test = found().tests[0].clone();
+    for (place, slot) in
+        found().slots(&test).into_iter().enumerate().filter(|(place, _)| places.contains(place))
+    {
+        let text = if slot.key.field == "declared" { "40.00".to_string() } else { format!("39.5{place}") };
+        let value: rust_decimal::Decimal = text.parse().unwrap();
+        let said = Said::Number(Number { text, value, decimals: 2 });
+        let seen = found().readings.iter().map(|(_, reading)| reading.id).max().unwrap_or_default();
+        let how = How { sample_test: test.id, label: label.to_string(), seen, ..How::default() };
+        supernate::acts::reading::record(db, &actor, &how, &[Entry { slot, said }], &Reason::none()).unwrap();
+    }
+}
+
+/// The week's index of open pulls follows what happens at the bench.
+#[test]
+fn a_pull_asks_for_work_until_every_test_has_its_result() {
+    let lab = Lab::new();
+    let study = world::study(&lab, "TW-104-0640", &[TestKind::Numeric]);
+    world::qualify(&lab, "rafe.tolland", world::approved_method(&lab, TestKind::Numeric));
+    let pull = world::pull(&lab, study, 1, "Initial");
+    let label = world::labels(&lab, &pull)[0].clone();
+    let sample = world::take(&lab, &pull);
+    let now = || {
+        let found = world::pull(&lab, study, 1, "Initial");
+        let other = world::pull(&lab, study, 3, "Initial");
+        assert_eq!(other.facts.progress.started, 0);
+        let in_test =
+            lab.app.db.read(|reader| store::pull::count(reader, store::pull::Show::InTest, lab.now().date()));
+        (found.facts.progress.started, found.facts.progress.complete, in_test.unwrap())
+    };
+    assert_eq!(now(), (0, 0, 1));
+    reads(&lab, sample, &label, 0..1);
+    assert_eq!(now(), (1, 0, 1));
+    reads_rest_and_completes(&lab, sample, &label);
+    assert_eq!(now(), (1, 1, 0));
+    lab.manager().sees(&format!("/pulls/{}", pull.id), "Waiting for check");
+    lab.manager().sees(&format!("/studies/{study}"), "21 of 22 pulls still ask for work");
+}
+
+fn reads_rest_and_completes(lab: &Lab, sample: i64, label: &str) {
+    let (db, actor) = (&lab.app.db, lab.actor("rafe.tolland"));
+    reads(lab, sample, label, 1..100);
+    let found = db.read(|reader| store::bench::sample(reader, sample)).unwrap();
+    let test = found.tests[0].id;
+    for reading in supernate::domain::reading::standing(&found.readings_of(test)) {
+        if reading.has_open_question() {
+            supernate::acts::reading::keep(db, &actor, test, reading.id).unwrap();
+        }
+    }
+    supernate::acts::result::complete(db, &actor, test).unwrap();
+}
