@@ -3,7 +3,7 @@
 use supernate::domain::sample::Purpose;
 
 use crate::support::samples::Bench;
-use crate::support::{Lab, PASSWORD, Person, Seen};
+use crate::support::{Lab, PASSWORD, Person, Seen, world};
 
 const WHY: &str = "the reading was taken twice and the balance log agrees";
 
@@ -309,4 +309,52 @@ fn an_analyst_reads_the_review_but_decides_nothing() {
     let seen = lab.analyst().sees(&format!("/review/{sample}"), "A QA reviewer decides.");
     assert!(!seen.html().contains("/agree"));
     assert_eq!(lab.analyst().get("/review/sign").status, 403);
+}
+
+#[test]
+fn screen_u111_a_pull_is_reviewed_with_the_charts_of_its_lot_and_condition() {
+    let lab = Lab::new();
+    let bench = Bench::new(&lab);
+    let lot = bench.lot("TW-104-0640");
+    let study = world::study_of(&lab, lot, &[]);
+    let readings = [
+        ("Initial", "2026-12-01T10:00:00Z", ["100.1", "100.3"], ["1.11", "1.13"]),
+        ("3 months", "2027-03-01T10:00:00Z", ["99.9", "100.2"], ["1.12", "1.11"]),
+        ("6 months", "2027-06-01T10:00:00Z", ["99.8", "99.9"], ["1.10", "1.12"]),
+        ("9 months", "2027-09-01T10:00:00Z", ["91.2", "90.8"], ["1.12", "1.13"]),
+    ];
+    let mut last = 0;
+    for (age, at, assay, density) in readings {
+        lab.clock(at);
+        last = world::take(&lab, &world::pull(&lab, study, 1, age));
+        bench.completes("rafe.tolland", last, "assay", &assay);
+        bench.completes("rafe.tolland", last, "density", &density);
+        bench.checks("ilse.brandt", last, "assay");
+        bench.checks("ilse.brandt", last, "density");
+    }
+    let qa = lab.reviewer();
+    let page = qa.sees(&format!("/review/{last}"), "TW-104-0640, 9 months, 25 °C/60 % RH upright");
+    let finding = "Assay, lot TW-104-0640, 25 °C/60 % RH upright: 4 pulls, 0–9 months. Last 91.0, limits 95.0–105.0. \
+                   1 out of specification: 91.0 at 9 months.";
+    for words in [
+        finding,
+        "▼ 91.0 below 95.0",
+        "The 4 numbers behind this chart",
+        "Pulled in its window",
+        "Right container",
+    ] {
+        assert!(page.text().contains(words), "{words}: {}", page.text());
+    }
+    let html = page.html();
+    assert!(
+        html.contains("id=\"exception-0-chart-assay--title\"") && html.contains("id=\"chart-assay--title\"")
+    );
+    let ids: Vec<&str> = html.split(" id=\"").skip(1).filter_map(|rest| rest.split('"').next()).collect();
+    let mut once = ids.clone();
+    once.sort();
+    once.dedup();
+    assert_eq!(ids.len(), once.len(), "every id stands once: {ids:?}");
+    let queue = qa.sees("/review", "With exceptions (1)");
+    assert!(queue.text().contains("Without exceptions (3)"), "{}", queue.text());
+    assert!(queue.text().find("91.0").unwrap() < queue.text().find("Without exceptions").unwrap());
 }

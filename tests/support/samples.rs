@@ -158,7 +158,8 @@ impl<'a> Bench<'a> {
 
     fn how(&self, sample: &BenchSample, test: i64) -> How {
         let seen = sample.readings.iter().map(|(_, reading)| reading.id).max().unwrap_or_default();
-        How { sample_test: test, label: sample.number.clone(), seen, ..How::default() }
+        let label = sample.containers.first().map_or(sample.number.clone(), |first| first.label.clone());
+        How { sample_test: test, label, seen, ..How::default() }
     }
 
     /// A person records the readings of a test, keeps what is questioned, and completes it.

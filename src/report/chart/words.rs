@@ -37,7 +37,13 @@ pub fn finding(chart: &Chart) -> String {
         }
     }
     let missing = chart.series.iter().flat_map(|series| &series.points).filter(|point| point.value.is_none());
-    let missing: Vec<&str> = missing.map(|point| point.age.as_str()).collect();
+    let mut missing: Vec<&str> = missing.map(|point| point.age.as_str()).collect();
+    let known = missing.clone();
+    let mut place = 0;
+    missing.retain(|age| {
+        place += 1;
+        !known[..place - 1].contains(age)
+    });
     if !missing.is_empty() {
         text.push_str(&format!(" Without a value: {}.", missing.join(", ")));
     }

@@ -63,11 +63,11 @@ pub struct ReviewSample {
 const OPEN: &str = "
     select s.id
     from sample s
-    where exists (
+    where not exists (
+        select 1 from signature g where g.kind = 'sample' and g.subject = s.id and g.meaning = 'review')
+    and exists (
         select 1 from sample_test t join result r on r.sample_test = t.id
         where t.sample = s.id and r.imported is null)
-    and not exists (
-        select 1 from signature g where g.kind = 'sample' and g.subject = s.id and g.meaning = 'review')
     union
     select t.sample
     from result r join sample_test t on t.id = r.sample_test
@@ -85,14 +85,18 @@ pub fn open_ids(reader: &Reader<'_>) -> Answer<Vec<i64>> {
 /// Samples that have a test waiting for its check.
 pub fn ids_to_check(reader: &Reader<'_>) -> Answer<Vec<i64>> {
     reader.all(
-        "select distinct t.sample
-         from sample_test t
+        &format!(
+            "with open as ({OPEN})
+         select distinct t.sample
+         from open
+         join sample_test t on t.sample = open.id
          join method_version v on v.id = t.method_version
          join result r on r.sample_test = t.id
          where json_extract(v.content, '$.needs_check') = 1 and r.imported is null
          and not exists (select 1 from result_check k where k.sample_test = t.id and k.version = r.version)
          and not exists (select 1 from result later
-             where later.sample_test = t.id and later.version > r.version)",
+             where later.sample_test = t.id and later.version > r.version)"
+        ),
         [],
         |row| row.get(0),
     )

@@ -26,6 +26,8 @@ pub struct ResultRow {
     pub limit: String,
     pub verdict: String,
     pub is_out: bool,
+    /// Points to the side of the limit that was passed.
+    pub arrow: &'static str,
     pub calculation: String,
 }
 
@@ -172,10 +174,18 @@ fn result_row(result: &ResultLine, limit: &dyn Fn(&str, &str) -> String) -> Resu
         component: result.component.clone(),
         shown: show::with_unit(&result.shown, if result.value.is_some() { &result.unit } else { "" }),
         limit: limit(&result.test, &result.component),
+        arrow: arrow(result, &limit(&result.test, &result.component)),
         verdict: result.verdict.clone(),
         is_out: result.verdict == "out of specification" || result.verdict == "outside in-use limit",
         calculation: calculation(&result.detail),
     }
+}
+
+/// Down where the value lies below the lower end that the limit's words begin with.
+fn arrow(result: &ResultLine, limit: &str) -> &'static str {
+    let lower = limit.trim_start_matches("at least ").split(" to ").next();
+    let lower = lower.and_then(|text| rust_decimal::Decimal::from_str_exact(text).ok());
+    if result.value.zip(lower).is_some_and(|(value, lower)| value < lower) { "▼" } else { "▲" }
 }
 
 /// The judgement's own numbers in reading order: "mean 6.825 · range 0.03".

@@ -146,7 +146,8 @@ fn lead(loaded: &Loaded, rules: &[Rule]) -> String {
     }
     if exceptions.len() > outside + trend {
         let rest = exceptions.len() - outside - trend;
-        parts.push(show::counted(rest, "other exception", "other exceptions"));
+        let other = if parts.is_empty() { "" } else { "other " };
+        parts.push(show::counted(rest, &format!("{other}exception"), &format!("{other}exceptions")));
     }
     let found = if parts.is_empty() { "No exception".to_string() } else { parts.join(", ") };
     let waiting = if open > 0 { format!(" {open} not answered yet.") } else { String::new() };
