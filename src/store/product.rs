@@ -178,3 +178,32 @@ pub fn presentations_of(reader: &Reader<'_>, product: i64) -> Answer<Vec<Present
 pub fn presentations(reader: &Reader<'_>) -> Answer<Vec<Presentation>> {
     reader.all(&format!("{SELECT_PRESENTATION} order by r.code"), [], presentation_from_row)
 }
+
+/// A record that hangs on a presentation.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Hanging {
+    /// `specification`, `protocol` or `lot`.
+    pub kind: String,
+    pub id: i64,
+    pub number: String,
+    pub about: String,
+}
+
+/// Specifications and protocols of a presentation by code, then its newest lots, at most 50.
+pub fn hanging_on(reader: &Reader<'_>, presentation: i64) -> Answer<Vec<Hanging>> {
+    reader.all(
+        "select * from (
+             select 'specification', id, code, '' from specification
+             where presentation = :presentation order by code)
+         union all
+         select * from (
+             select 'protocol', id, code, title from protocol
+             where presentation = :presentation order by code)
+         union all
+         select * from (
+             select 'lot', id, number, container_closure from lot
+             where presentation = :presentation order by id desc limit 50)",
+        named_params! { ":presentation": presentation },
+        |row| Ok(Hanging { kind: row.get(0)?, id: row.get(1)?, number: row.get(2)?, about: row.get(3)? }),
+    )
+}

@@ -20,7 +20,7 @@ use crate::domain::product::{
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::typed::NumberRule;
 use crate::store;
-use crate::store::product::Presentation;
+use crate::store::product::{Hanging, Presentation};
 
 pub const ROUTES: &[Route] = &[
     get("/customers", customers),
@@ -284,11 +284,26 @@ fn add_presentation(visit: &Visit) -> Outcome {
     )
 }
 
+fn hanging_table(hanging: &[Hanging]) -> Table {
+    let empty =
+        "Nothing yet. QA writes a specification for it, the lab manager a protocol; lots are recorded on it.";
+    let rows = hanging.iter().map(|one| {
+        vec![
+            Cell::link(format!("/{}s/{}", one.kind, one.id), &one.number),
+            Cell::text(&one.kind),
+            if one.about.is_empty() { Cell::text("its limits") } else { Cell::text(&one.about) },
+        ]
+    });
+    Table::new("Specifications, protocols, and the newest lots", &["Number", "Kind", "What"], empty)
+        .rows(rows)
+}
+
 fn presentation(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
-    let (one, lives, lines) = visit.read(|reader| {
+    let (one, hanging, lives, lines) = visit.read(|reader| {
         Ok((
             store::product::presentation(reader, id)?,
+            store::product::hanging_on(reader, id)?,
             store::shelf_life::of_presentation(reader, id)?,
             store::trail::of_subject(reader, Subject::new(Kind::Presentation, id))?,
         ))
@@ -309,7 +324,7 @@ fn presentation(visit: &Visit) -> Outcome {
         .fact("Shelf life", current.unwrap_or_else(|| "none assigned yet".to_string()))
         .link_if(visit.may(Act::MakeLot), format!("/lots/new?presentation={id}"), "Record a lot")
         .link_if(true, format!("/presentations/{id}/shelf-life"), "Shelf life")
-        .quiet_link_if(true, "/specifications", "Specifications")
+        .table("What hangs on it", hanging_table(&hanging))
         .trail(Trail::of(&lines, visit.at.zone))
         .show()
 }

@@ -131,3 +131,15 @@ fn qa_assigns_a_shelf_life_with_a_signature() {
     assert!(seen.text().contains("earlier lots stay as they are"));
     assert!(!lab.manager().get(&path).html().contains("Sign and assign"));
 }
+
+#[test]
+fn a_presentation_lists_what_hangs_on_it() {
+    let lab = Lab::new();
+    let product = world::product(&lab, "TW-104");
+    let presentation = world::presentation(&lab, product, "TW-104-200");
+    let path = format!("/presentations/{presentation}");
+    lab.auditor().sees(&path, "Nothing yet. QA writes a specification");
+    world::approved_specification(&lab, presentation, &[supernate::domain::method::TestKind::Ph]);
+    let page = lab.auditor().sees(&path, "specification its limits");
+    assert!(page.links().iter().any(|link| link == "/specifications/1"), "{:?}", page.links());
+}

@@ -197,3 +197,39 @@ fn verification_leaves_the_copy_as_it_was() {
         .collect();
     assert_eq!(names.len(), 2, "{names:?}");
 }
+
+/// Signatures over shelf lives and lifted stops are recomputed from the records they stand under.
+#[test]
+fn a_changed_shelf_life_or_lifted_stop_breaks_its_signature() {
+    let lab = Lab::new();
+    let product = crate::support::world::product(&lab, "TW-104");
+    let presentation = crate::support::world::presentation(&lab, product, "TW-104-200");
+    let path = format!("/presentations/{presentation}/shelf-life");
+    let fields = [
+        ("storage_statement", "Do not store above 25 °C"),
+        ("months", "24"),
+        ("basis", "tentative"),
+        ("reference", "report SR-014"),
+        ("expiry_format", "month"),
+    ];
+    lab.reviewer().signs(&path, &path, &fields);
+    let fields = [("code", "PH-02"), ("name", "pH meter"), ("kind", "pH meter")];
+    lab.manager().does("/instruments/new", "/instruments/new", &fields);
+    let fields = [
+        ("stop", "calibration"),
+        ("instrument", "1"),
+        ("reason", "  Checked against two buffers, both within 0.02 units "),
+    ];
+    lab.reviewer().signs("/overrides/new", "/overrides/new", &fields);
+    let untouched = verify(&copy(&lab).0, None);
+    assert!(untouched.holds() && untouched.signatures == 2, "{untouched:?}");
+    for tampering in
+        ["update shelf_life_assignment set months = 36", "update stop_override set valid_on = '2026-12-02'"]
+    {
+        let report = format!("{:?}", after(&lab, tampering));
+        assert!(
+            report.contains("what Ada Whitlock signed is not what stands there"),
+            "{tampering}: {report}"
+        );
+    }
+}
