@@ -102,7 +102,12 @@ fn put_results(change: &mut Change<'_>, sample: &BenchSample, test: &BenchTest) 
         for flag in &one.flags {
             store::flag::insert(change, result, flag)?;
         }
-        told.push(format!("{} {}", one.shown, one.verdict.words()));
+        let verdict = one.verdict.words();
+        told.push(if one.shown == verdict {
+            verdict.to_string()
+        } else {
+            format!("{} {verdict}", one.shown)
+        });
         if opens_investigation(one) {
             told.extend(open_investigation(change, sample, test, result)?);
         }

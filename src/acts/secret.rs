@@ -1,5 +1,8 @@
 //! Passwords, tokens and the server's own key.
 
+use std::sync::atomic::{AtomicUsize, Ordering};
+use std::sync::{Mutex, MutexGuard, PoisonError};
+
 use argon2::password_hash::phc::PasswordHash;
 use argon2::{Algorithm, Argon2, Params, PasswordHasher, PasswordVerifier, Version};
 use hmac::{Hmac, KeyInit, Mac};
@@ -29,6 +32,36 @@ impl HashCost {
     }
 }
 
+/// Two hashes at a time, so that a hundred sign-ins at once cost the memory of two (sec_S15).
+static LANES: [Mutex<()>; 2] = [Mutex::new(()), Mutex::new(())];
+/// Hashes that run or wait.
+static WAITING: AtomicUsize = AtomicUsize::new(0);
+/// Beyond this many the answer is "try again".
+const MOST_WAITING: usize = 22;
+
+/// A turn at hashing; the next one begins when it is dropped.
+struct Lane {
+    _turn: MutexGuard<'static, ()>,
+}
+
+impl Drop for Lane {
+    fn drop(&mut self) {
+        WAITING.fetch_sub(1, Ordering::SeqCst);
+    }
+}
+
+fn lane() -> Result<Lane, Failure> {
+    let before = WAITING.fetch_add(1, Ordering::SeqCst);
+    if before >= MOST_WAITING {
+        WAITING.fetch_sub(1, Ordering::SeqCst);
+        return Err(Failure::Held(
+            "Many people sign in at this moment. Try again in a few seconds.".to_string(),
+        ));
+    }
+    let turn = LANES[before % LANES.len()].lock().unwrap_or_else(PoisonError::into_inner);
+    Ok(Lane { _turn: turn })
+}
+
 fn fault(error: impl std::fmt::Display) -> Failure {
     Failure::fault(error.to_string())
 }
@@ -43,6 +76,7 @@ pub struct Secrets {
 impl Secrets {
     /// The password as a PHC string with a fresh salt.
     pub fn hash(&self, password: &str) -> Result<String, Failure> {
+        let _lane = lane()?;
         let hash = self.cost.hasher()?.hash_password(password::normal(password).as_bytes()).map_err(fault)?;
         Ok(hash.to_string())
     }
@@ -54,6 +88,7 @@ impl Secrets {
             self.hash(password)?;
             return Ok(false);
         };
+        let _lane = lane()?;
         let parsed = PasswordHash::new(hash).map_err(fault)?;
         Ok(self.cost.hasher()?.verify_password(password::normal(password).as_bytes(), &parsed).is_ok())
     }

@@ -44,7 +44,7 @@ enum Command {
 /// Runs the command of the arguments; 0 where it did what was asked, 1 where not, 2 where it was not understood.
 pub fn run() -> ExitCode {
     let filter = tracing_subscriber::EnvFilter::try_from_default_env()
-        .unwrap_or_else(|_| tracing_subscriber::EnvFilter::new("info"));
+        .unwrap_or_else(|_| tracing_subscriber::EnvFilter::new("info,refinery_core=warn"));
     tracing_subscriber::fmt().json().with_env_filter(filter).with_writer(std::io::stderr).init();
     let outcome = match Arguments::parse().command {
         Command::Serve(arguments) => serve::run(&arguments),

@@ -156,11 +156,19 @@ fn spread(facts: &HintFacts) -> Option<Hint> {
     })
 }
 
-/// Two replicates equal to the last digit, where the method reads finer than it repeats.
+/// Two replicates equal to the last digit, where the method rarely gives that.
+///
+/// Two readings of standard deviation s are equal at a step d with a chance of about d / (2 s √π). With the
+/// repeatability r = 2.77 s (ISO 5725-6) that is 0.78 d / r; "rarely" is at most 5 % over the replicates beside.
 fn identical(facts: &HintFacts) -> Option<Hint> {
     let decimals = facts.reading_decimals?;
-    let reads_finer =
-        facts.repeatability.is_some_and(|repeatability| repeatability > Decimal::new(1, decimals));
+    let step = Decimal::new(78, 2).checked_mul(Decimal::new(1, decimals))?;
+    let chance = step.checked_mul(Decimal::from(facts.beside.len()))?;
+    let rarely = Decimal::new(5, 2);
+    let reads_finer = facts
+        .repeatability
+        .and_then(|repeatability| repeatability.checked_mul(rarely))
+        .is_some_and(|most| chance <= most);
     let is_equal = facts.beside.contains(&facts.value);
     (is_equal && reads_finer && !facts.may_be_identical).then(|| Hint {
         rule: IDENTICAL,
@@ -310,6 +318,11 @@ mod tests {
         let spread = HintFacts { beside: all(&["6.76"]), ..facts("6.83") };
         assert_eq!(rules(&spread), [SPREAD]);
         let equal = HintFacts { beside: all(&["6.83"]), ..facts("6.83") };
+        assert!(
+            rules(&equal).is_empty(),
+            "a pH to 0.01 that repeats to 0.05 is equal by chance one time in six"
+        );
+        let equal = HintFacts { repeatability: Some(d("0.20")), range_at_most: Some(d("0.20")), ..equal };
         assert_eq!(rules(&equal), [IDENTICAL]);
         let coarse = HintFacts { may_be_identical: true, ..equal };
         assert!(rules(&coarse).is_empty());

@@ -17,6 +17,7 @@ mod imports;
 mod instruments;
 mod investigations;
 mod judgements;
+mod kills;
 mod lot_decisions;
 mod lot_files;
 mod lots;

@@ -92,6 +92,13 @@ static TEMPLATE: LazyLock<Vec<u8>> = LazyLock::new(|| {
     std::fs::read(path).unwrap()
 });
 
+/// A folder with the site and its people, nobody has open.
+pub fn fresh_folder() -> Scratch {
+    let folder = Scratch::new();
+    std::fs::write(folder.0.join("supernate.sqlite"), &*TEMPLATE).unwrap();
+    folder
+}
+
 /// Stories begin here unless they set the clock.
 pub fn start() -> DateTime<Utc> {
     "2026-12-01T09:00:00Z".parse().unwrap()

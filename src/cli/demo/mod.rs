@@ -1,7 +1,19 @@
 //! `supernate demo`: a fresh data folder with the invented site, made through the acts, then served.
 
+mod bench;
+mod definition;
+mod lot;
+mod method;
+mod player;
+mod pull;
+mod reading;
+pub mod seed;
+
 use std::net::SocketAddr;
 use std::path::PathBuf;
+
+use player::{Player, Scene};
+use seed::Seed;
 
 use super::{folder, serve};
 use crate::acts;
@@ -26,21 +38,11 @@ pub struct Arguments {
     listen: SocketAddr,
 }
 
-/// The invented people: user name, full name, roles.
-const PEOPLE: [(&str, &str, &[Role]); 9] = [
-    ("nell.farrow", "Nell Farrow", &[Role::Administrator]),
-    ("tomas.reyle", "Tomas Reyle", &[Role::Formulator]),
-    ("bea.skelton", "Bea Skelton", &[Role::ProductionOperator]),
-    ("rafe.tolland", "Rafe Tolland", &[Role::Analyst]),
-    ("ilse.brandt", "Ilse Brandt", &[Role::Analyst]),
-    ("maren.oddy", "Maren Oddy", &[Role::LabManager]),
-    ("ada.whitlock", "Ada Whitlock", &[Role::QaReviewer]),
-    ("per.lindqvist", "Per Lindqvist", &[Role::QaReviewer]),
-    ("ines.caro", "Ines Caro", &[Role::Auditor]),
-];
+/// The demo begins so many days before today.
+const FIRST_DAY_DAYS_AGO: i64 = 1200;
 
 /// Every demo person has this password; it is shown on the sign-in page.
-const PASSWORD: &str = "quiet mill pond herons";
+pub(in crate::cli) const PASSWORD: &str = "quiet mill pond herons";
 
 pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     if !arguments.listen.ip().is_loopback() {
@@ -57,7 +59,9 @@ pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     let console = Actor::console(Moment::new(now, site.zone));
     acts::site::set_up(&opened.db, &console, &site)?;
     opened.secrets.cost = HashCost::Demo;
-    let people = make_people(&opened, &console)?;
+    let seed = Seed::read()?;
+    let people = make_people(&opened, &seed, &console)?;
+    play(&opened, &seed, Moment::new(now, site.zone))?;
     opened.db.settle()?;
     serve::serve(opened, site, arguments.listen, None, people.clone(), |address| tell(address, &people))
 }
@@ -78,24 +82,38 @@ fn clear(path: &std::path::Path) -> Result<(), Failure> {
     Ok(())
 }
 
-fn make_people(opened: &folder::Folder, console: &Actor) -> Result<Vec<DemoPerson>, Failure> {
+fn make_people(opened: &folder::Folder, seed: &Seed, console: &Actor) -> Result<Vec<DemoPerson>, Failure> {
     let mut shown = Vec::new();
-    for (user_name, full_name, roles) in PEOPLE {
+    for row in &seed.people {
         let new = NewPerson {
-            user_name: user_name.to_string(),
-            full_name: full_name.to_string(),
+            user_name: row.user_name.clone(),
+            full_name: row.full_name.clone(),
             identity_verified_by: "invented person".to_string(),
-            roles: roles.to_vec(),
+            roles: row.roles.split('+').filter_map(Role::from_code).collect(),
         };
         acts::account::create_demo_person(&opened.db, &opened.secrets, console, &new, PASSWORD)?;
         shown.push(DemoPerson {
-            user_name: user_name.to_string(),
-            full_name: full_name.to_string(),
-            roles: roles.iter().map(|role| role.code()).collect::<Vec<_>>().join(", "),
+            user_name: row.user_name.clone(),
+            full_name: row.full_name.clone(),
+            roles: row.roles.replace('+', ", "),
             password: PASSWORD.to_string(),
         });
     }
     Ok(shown)
+}
+
+/// Definitions first, then lots as they were made, then whatever follows from them.
+fn play(opened: &folder::Folder, seed: &Seed, now: Moment) -> Result<(), Failure> {
+    let mut player = Player::new(&opened.db, &opened.secrets, seed, now)?;
+    player.begin(player.days_ago(FIRST_DAY_DAYS_AGO));
+    player.make_definitions()?;
+    for (at, lot) in seed.lots.iter().enumerate() {
+        player.plan(player.days_ago(lot.made_days_ago), 7, 30, Scene::MakeLot(at));
+    }
+    for year in 1..=3 {
+        player.plan(player.days_ago(FIRST_DAY_DAYS_AGO - 365 * year), 8, 0, Scene::YearlyCare);
+    }
+    player.play()
 }
 
 #[allow(clippy::print_stdout)]

@@ -1,0 +1,128 @@
+//! Lots of the demo: made, tested for release, decided, and put on a study.
+
+use super::bench::Twist;
+use super::player::{Player, Scene, working_day};
+use crate::acts;
+use crate::acts::signature::{Rejection, Release};
+use crate::domain::failure::Failure;
+use crate::domain::lot::{NewDistribution, NewLot, Scale};
+use crate::domain::moment::plus_days;
+use crate::domain::protocol::ProtocolContent;
+use crate::domain::sample::{NewSample, Purpose};
+use crate::domain::study::NewStudy;
+use crate::domain::version::Versioned;
+use crate::store;
+
+impl Player<'_> {
+    pub fn make_lot(&mut self, at: usize) -> Result<(), Failure> {
+        let seed = self.seed;
+        let row = &seed.lots[at];
+        let product = seed.products.iter().find(|one| one.code == row.product);
+        let product = product.ok_or_else(|| Failure::missing("product of the lot"))?;
+        let version = format!("{} version {}", row.product, row.version);
+        if !self.made.contains_key(&version) {
+            self.write_version(product, row.version)?;
+        }
+        let made_on = self.now.date();
+        let actor = self.person("bea.skelton")?;
+        let new = NewLot {
+            number: row.number.clone(),
+            presentation: self.number(&product.presentation)?,
+            formulation_version: self.number(&version)?,
+            made_on,
+            size: Some(row.size),
+            size_unit: Some(row.size_unit.clone()),
+            scale: Scale::Production,
+            container_closure: product.pack.clone(),
+            bulk_lot: None,
+        };
+        let lot = acts::lot::make(self.db, &actor, &new)?;
+        self.made.insert(row.number.clone(), lot);
+        if !row.decision.is_empty() {
+            self.plan(working_day(plus_days(made_on, 4)), 9, 10, Scene::TestRelease(at));
+        }
+        Ok(())
+    }
+
+    pub fn test_release(&mut self, at: usize) -> Result<(), Failure> {
+        let row = &self.seed.lots[at];
+        let lot = self.number(&row.number)?;
+        let tests = self.seed.limits.iter().filter(|limit| limit.product == row.product);
+        let tests = tests
+            .filter(|limit| limit.test != "as-stored-sediment")
+            .map(|limit| limit.test.clone())
+            .collect();
+        let actor = self.person("ilse.brandt")?;
+        let new = NewSample {
+            lot,
+            purpose: Purpose::Release,
+            containers: 6,
+            condition_on_receipt: "sealed, room temperature".to_string(),
+            handed_over_by: "Bea Skelton".to_string(),
+            received_on: actor.at.date(),
+            tests,
+        };
+        let sample = acts::sample::receive(self.db, &actor, &new)?;
+        self.made.insert(format!("release {}", row.number), sample);
+        let today = self.now.date();
+        self.test_sample(sample, today, "ilse.brandt", &Twist::default())?;
+        self.plan(
+            working_day(plus_days(today, 3)),
+            11,
+            0,
+            Scene::CheckSample { sample, checker: "rafe.tolland" },
+        );
+        self.plan(working_day(plus_days(today, 5)), 14, 0, Scene::ReviewSample(sample));
+        self.plan(working_day(plus_days(today, 8)), 15, 30, Scene::DecideLot(at));
+        Ok(())
+    }
+
+    pub fn decide_lot(&mut self, at: usize) -> Result<(), Failure> {
+        let row = &self.seed.lots[at];
+        let lot = self.number(&row.number)?;
+        let actor = self.person("per.lindqvist")?;
+        if row.decision == "rejected" {
+            let signed = self.sign::<Rejection>(&actor)?;
+            let why = "Viscosity below the release limit: the bentonite was hydrated too short.";
+            return acts::lot_decision::reject(self.db, &actor, lot, &signed.stating(why));
+        }
+        let signed = self.sign::<Release>(&actor)?;
+        acts::lot_decision::release(self.db, &actor, lot, &signed)?;
+        let today = self.now.date();
+        let actor = self.person("ada.whitlock")?;
+        let new = NewDistribution { first_on: today, markets: "UK".to_string() };
+        acts::lot::distribute(self.db, &actor, lot, &new)?;
+        if !row.study.is_empty() {
+            self.plan(working_day(plus_days(today, 5)), 9, 0, Scene::StartStudy(at));
+        }
+        Ok(())
+    }
+
+    pub fn start_study(&mut self, at: usize) -> Result<(), Failure> {
+        let row = &self.seed.lots[at];
+        let protocol_version = self.number(&format!("protocol {}", row.product))?;
+        let content: ProtocolContent = self
+            .db
+            .read(|reader| store::version::get(reader, Versioned::Protocol, protocol_version)?.read())?;
+        let chambers = content
+            .arms
+            .iter()
+            .map(|arm| self.made.get(&format!("chamber {}", arm.condition)).copied())
+            .collect();
+        let actor = self.person("maren.oddy")?;
+        let new = NewStudy {
+            number: row.study.clone(),
+            lot: self.number(&row.number)?,
+            protocol_version,
+            started_on: actor.at.date(),
+            chambers,
+        };
+        let study = acts::study::start(self.db, &actor, &new)?;
+        let pulls = self.db.read(|reader| store::pull::of_study(reader, study))?;
+        for pull in pulls {
+            let Some(due) = pull.facts.due_on else { continue };
+            self.plan(working_day(due), 9, 20, Scene::TakePull { lot: at, pull: pull.id });
+        }
+        Ok(())
+    }
+}

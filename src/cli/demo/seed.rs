@@ -1,0 +1,212 @@
+//! The data files of the invented demo, compiled into the program.
+
+use rust_decimal::Decimal;
+use serde::Deserialize;
+
+use crate::domain::failure::Failure;
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct PersonRow {
+    pub user_name: String,
+    pub full_name: String,
+    pub roles: String,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct ProductRow {
+    pub code: String,
+    pub name: String,
+    pub dosage_form: String,
+    pub customer: Option<String>,
+    pub presentation: String,
+    pub strength: String,
+    pub pack: String,
+    pub container_word: String,
+    pub fill_ml: Decimal,
+    pub market: String,
+    pub permeability: String,
+    pub shelf_months: u32,
+    pub in_use_days: Option<u32>,
+    pub storage: String,
+    pub intended_state: String,
+    pub basis: String,
+    pub target_total: Option<Decimal>,
+    pub solids_density: Option<Decimal>,
+    pub particle_um: Option<Decimal>,
+    pub vehicle_density: Option<Decimal>,
+    pub vehicle_viscosity: Option<Decimal>,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct MaterialRow {
+    pub code: String,
+    pub name: String,
+    pub function: String,
+    pub density: Option<Decimal>,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct IngredientRow {
+    pub product: String,
+    pub version: u32,
+    pub reason: String,
+    pub material: String,
+    pub quantity: Decimal,
+    pub unit: String,
+    pub quantity_sufficient: String,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct LimitRow {
+    pub product: String,
+    pub test: String,
+    pub title: String,
+    pub method: String,
+    pub release_lower: Option<Decimal>,
+    pub release_upper: Option<Decimal>,
+    pub shelf_lower: Option<Decimal>,
+    pub shelf_upper: Option<Decimal>,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct LotRow {
+    pub number: String,
+    pub product: String,
+    pub version: u32,
+    pub made_days_ago: i64,
+    pub size: Decimal,
+    pub size_unit: String,
+    pub scale: String,
+    pub study: String,
+    pub decision: String,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct TrendRow {
+    pub lot: String,
+    pub condition: String,
+    pub orientation: String,
+    pub test: String,
+    pub start: Decimal,
+    pub per_month: Decimal,
+    pub scatter: Decimal,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct EventRow {
+    pub lot: String,
+    pub condition: String,
+    pub orientation: String,
+    pub age_months: u32,
+    pub event: String,
+    pub test: String,
+    pub detail: String,
+}
+
+/// Everything the demo is played from.
+pub struct Seed {
+    pub people: Vec<PersonRow>,
+    pub products: Vec<ProductRow>,
+    pub materials: Vec<MaterialRow>,
+    pub ingredients: Vec<IngredientRow>,
+    pub limits: Vec<LimitRow>,
+    pub lots: Vec<LotRow>,
+    pub trends: Vec<TrendRow>,
+    pub events: Vec<EventRow>,
+}
+
+impl Seed {
+    pub fn read() -> Result<Seed, Failure> {
+        Ok(Seed {
+            people: rows(include_str!("../../../seed-demo/people.csv"))?,
+            products: rows(include_str!("../../../seed-demo/products.csv"))?,
+            materials: rows(include_str!("../../../seed-demo/materials.csv"))?,
+            ingredients: rows(include_str!("../../../seed-demo/ingredients.csv"))?,
+            limits: rows(include_str!("../../../seed-demo/limits.csv"))?,
+            lots: rows(include_str!("../../../seed-demo/lots.csv"))?,
+            trends: rows(include_str!("../../../seed-demo/trends.csv"))?,
+            events: rows(include_str!("../../../seed-demo/events.csv"))?,
+        })
+    }
+
+    /// The most particular trend of a test: the row of the lot itself before the row of its product, a named
+    /// condition and orientation before any.
+    pub fn trend(&self, lot: &str, condition: &str, orientation: &str, test: &str) -> Option<&TrendRow> {
+        let fits = |wanted: &str, is: &str| wanted == "*" || wanted == is;
+        self.trends
+            .iter()
+            .filter(|row| {
+                row.test == test
+                    && (lot == row.lot || lot.starts_with(&format!("{}-", row.lot)))
+                    && fits(&row.condition, condition)
+                    && fits(&row.orientation, orientation)
+            })
+            .max_by_key(|row| (row.lot.len(), row.condition != "*", row.orientation != "*"))
+    }
+}
+
+fn rows<T: serde::de::DeserializeOwned>(text: &str) -> Result<Vec<T>, Failure> {
+    let mut reader = csv::Reader::from_reader(text.as_bytes());
+    reader.deserialize().collect::<Result<Vec<T>, _>>().map_err(Failure::fault)
+}
+
+/// A fixed sequence of scatter between −1 and 1, to four decimals (Lehmer's generator, Park and Miller 1988).
+pub struct Scatter(u64);
+
+impl Scatter {
+    pub fn new(seed: u64) -> Scatter {
+        Scatter(seed % 2_147_483_646 + 1)
+    }
+
+    /// The mean of three draws: more often near zero, as readings are.
+    pub fn next(&mut self) -> Decimal {
+        let sum: u64 = (0..3).map(|_| self.draw()).sum();
+        let thousandths = i64::try_from(sum * 20_000 / (3 * 2_147_483_646)).unwrap_or(10_000) - 10_000;
+        Decimal::new(thousandths, 4)
+    }
+
+    fn draw(&mut self) -> u64 {
+        self.0 = self.0 * 48_271 % 2_147_483_647;
+        self.0
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_files_are_whole_and_the_most_particular_trend_counts() {
+        let seed = Seed::read().unwrap();
+        let start = |lot, condition, orientation, test| {
+            seed.trend(lot, condition, orientation, test).unwrap().per_month.to_string()
+        };
+        assert_eq!(start("TW-104-0617", "25/60", "inverted", "sedimentation"), "-0.0085");
+        assert_eq!(start("TW-104-0617", "25/60", "upright", "sedimentation"), "-0.0015");
+        assert_eq!(start("TW-330-0702", "40/75", "upright", "viscosity"), "-470");
+        assert_eq!(start("TW-330-0714", "40/75", "upright", "viscosity"), "-150");
+        for limit in &seed.limits {
+            if !["appearance"].contains(&limit.test.as_str()) {
+                assert!(
+                    seed.trends.iter().any(|row| row.lot == limit.product && row.test == limit.test),
+                    "{} {}",
+                    limit.product,
+                    limit.test
+                );
+            }
+        }
+    }
+
+    #[test]
+    fn scatter_stays_between_its_bounds_and_is_alike_every_time() {
+        let draw = || {
+            let mut scatter = Scatter::new(7);
+            (0..1000).map(|_| scatter.next()).collect::<Vec<_>>()
+        };
+        let drawn = draw();
+        assert!(drawn.iter().all(|value| value.abs() <= Decimal::ONE));
+        let mean: Decimal = drawn.iter().sum::<Decimal>() / Decimal::from(1000);
+        assert!(mean.abs() < Decimal::new(5, 2), "{mean}");
+        assert_eq!(drawn, draw());
+    }
+}
