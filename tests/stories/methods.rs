@@ -7,7 +7,9 @@ use crate::support::{Lab, Seen, world};
 
 /// The version page a form led to.
 fn path(seen: &Seen) -> String {
-    seen.location.clone().unwrap()
+    let path = seen.location.clone().unwrap();
+    assert!(path.starts_with("/method-versions/"), "{path}");
+    path
 }
 
 const ASSAY: [(&str, &str); 14] = [

@@ -61,6 +61,7 @@ fn a_specification_is_written_signed_and_approved_by_qa() {
     let typed = fields(&presentation_text, &ph, &appearance);
     let made = lab.manager().does("/specifications/new", "/specifications/new", &typed);
     let page = made.location.clone().unwrap();
+    assert!(page.starts_with("/specification-versions/"), "{page}");
     for words in ["6.20 to 7.20", "6.00 to 7.50", "Caking: none or slight", "no limit"] {
         assert!(made.text().contains(words), "{words}: {}", made.text());
     }
@@ -167,6 +168,7 @@ fn limits_of_components_are_kept_through_a_new_version() {
         "maren.oddy",
         "ada.whitlock",
     );
+    assert_eq!(lab.manager().get(&format!("{page}/edit")).status, 409, "an approved version is frozen");
     let draft = "/specifications/1/draft";
     let change = [("reason", "a tighter total"), ("component.3.shelf_life_upper", "0.8")];
     let made = lab.manager().does(draft, draft, &change);
