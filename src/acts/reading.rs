@@ -4,6 +4,7 @@ use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::{Failure, Stale};
 use crate::domain::instrument;
+use crate::domain::method::Settings;
 use crate::domain::moment::{Moment, date_from_stored};
 use crate::domain::qualification;
 use crate::domain::reading::{self, Entry, Question, Reading, ReadingRefusal, Said, in_slot};
@@ -11,6 +12,7 @@ use crate::domain::reason::Reason;
 use crate::domain::result::reader_key;
 use crate::domain::slot::{SlotKey, labelled};
 use crate::domain::stage;
+use crate::domain::stop::Stop;
 use crate::domain::subject::Kind;
 use crate::store;
 use crate::store::bench::{BenchSample, BenchTest};
@@ -195,13 +197,13 @@ fn may_read(
     qualification::may_test(&facts, today)?;
     let has_numbers = entries.iter().any(|entry| matches!(entry.said, Said::Number(_)));
     match test.content.instruments.first() {
-        Some(kind) if has_numbers => may_use(change, kind, how.instrument)?,
+        Some(kind) if has_numbers => may_use(change, kind, &test.content.settings, how.instrument)?,
         _ => {}
     }
     Ok(container)
 }
 
-fn may_use(change: &Change<'_>, kind: &str, chosen: Option<i64>) -> Result<(), Failure> {
+fn may_use(change: &Change<'_>, kind: &str, settings: &Settings, chosen: Option<i64>) -> Result<(), Failure> {
     let Some(chosen) = chosen else {
         return Err(ReadingRefusal::InstrumentMissing(kind.to_string()).into());
     };
@@ -212,6 +214,11 @@ fn may_use(change: &Change<'_>, kind: &str, chosen: Option<i64>) -> Result<(), F
         return Err(ReadingRefusal::WrongInstrument { code: facts.code, is: facts.kind, wanted }.into());
     }
     instrument::may_use(&facts, today)?;
+    let is_lifted = facts.lifted.contains(&Stop::DailyCheck);
+    if facts.needs_daily_check && !is_lifted {
+        let slope = facts.check_of(today).and_then(|check| check.slope_percent);
+        reading::slope_fits(settings, &facts.code, slope)?;
+    }
     Ok(())
 }
 

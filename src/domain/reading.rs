@@ -3,6 +3,7 @@
 use rust_decimal::Decimal;
 use serde::{Deserialize, Serialize};
 
+use super::method::Settings;
 use super::moment::Moment;
 use super::refusal::NamedReason;
 use super::slot::{Slot, SlotKey};
@@ -219,6 +220,10 @@ pub enum ReadingRefusal {
     InstrumentMissing(String),
     #[error("{code} is a {is}, and this method reads with a {wanted}. Choose another one.")]
     WrongInstrument { code: String, is: String, wanted: String },
+    #[error(
+        "{code}: the slope of the day’s check is {slope}, and this method needs {least} to {most} %. Check it anew."
+    )]
+    SlopeOutside { code: String, slope: String, least: Decimal, most: Decimal },
     #[error("The second reader is another person than the first.")]
     SecondReaderIsFirst { name: String },
     #[error("The first reader's value comes first.")]
@@ -274,6 +279,21 @@ pub fn may_state_time(read_at: Moment, pulled_on: Option<Moment>, now: Moment) -
         return Err(ReadingRefusal::ReadBeforePull(read_at.shown()));
     }
     Ok(())
+}
+
+/// The electrode slope of the day's check lies within what the method asks; without a slope it does not.
+pub fn slope_fits(
+    settings: &Settings,
+    code: &str,
+    slope_percent: Option<Decimal>,
+) -> Result<(), ReadingRefusal> {
+    let Settings::Ph { slope_least_percent, slope_most_percent, .. } = settings else { return Ok(()) };
+    let (least, most) = (*slope_least_percent, *slope_most_percent);
+    if slope_percent.is_some_and(|slope| (least..=most).contains(&slope)) {
+        return Ok(());
+    }
+    let slope = slope_percent.map_or("not recorded".to_string(), |slope| format!("{slope} %"));
+    Err(ReadingRefusal::SlopeOutside { code: code.to_string(), slope, least, most })
 }
 
 /// Heights that cannot be together. `value` finds what stands in a field of the same column.
@@ -339,6 +359,16 @@ mod tests {
         assert!(heights(2, 2, 80).is_ok());
         assert!(matches!(heights(5, 2, 80), Err(ReadingRefusal::BedBelowBase { .. })));
         assert!(matches!(heights(5, 5, 5), Err(ReadingRefusal::FillBelowBase { .. })));
+    }
+
+    #[test]
+    fn the_slope_of_the_day_lies_within_the_methods_limits() {
+        let ph = super::super::method::preset::of(super::super::method::TestKind::Ph).settings;
+        let slope = |text: &str| slope_fits(&ph, "PH-03", Some(text.parse().unwrap()));
+        assert!(slope("95").is_ok() && slope("98.6").is_ok() && slope("105").is_ok());
+        assert!(slope("94.9").is_err() && slope("105.1").is_err());
+        assert!(matches!(slope_fits(&ph, "PH-03", None), Err(ReadingRefusal::SlopeOutside { .. })));
+        assert!(slope_fits(&Settings::AsStoredSediment, "C-1", None).is_ok());
     }
 
     #[test]
