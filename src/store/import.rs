@@ -6,6 +6,7 @@ use super::door::Change;
 use super::{Answer, Exact, Reader, new_uuid, version};
 use crate::domain::age::Age;
 use crate::domain::digest::sha256_hex;
+use crate::domain::formulation::{FormulationContent, IntendedState};
 use crate::domain::import::Counts;
 use crate::domain::import::plan::{Lot, Plan, Point, Pull, method_content};
 use crate::domain::version::Versioned;
@@ -250,7 +251,12 @@ fn insert_formulation(
             ":name": name,
         },
     )?;
-    let content = serde_json::to_string(&crate::domain::formulation::FormulationContent::default())?;
+    let content = serde_json::to_string(&FormulationContent {
+        dosage_form: "not stated".to_string(),
+        intended_state: IntendedState::NotStated,
+        quantity_basis: "not stated".to_string(),
+        ..FormulationContent::default()
+    })?;
     let digest = sha256_hex(content.as_bytes());
     let reason = "imported with its results; its composition was not in the file";
     let version =

@@ -3,6 +3,7 @@
 pub mod account;
 pub mod attachment;
 pub mod bench;
+pub mod bulk;
 pub mod chamber;
 pub mod check;
 pub mod condition;

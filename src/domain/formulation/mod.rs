@@ -31,6 +31,8 @@ pub enum IntendedState {
     StructuredVehicle,
     /// A dry powder that becomes a suspension on constitution.
     Powder,
+    /// Only in imported versions: the file did not say.
+    NotStated,
 }
 
 impl IntendedState {
@@ -47,6 +49,7 @@ impl IntendedState {
             IntendedState::Deflocculated => "deflocculated",
             IntendedState::StructuredVehicle => "structured vehicle",
             IntendedState::Powder => "powder for constitution",
+            IntendedState::NotStated => "not stated",
         }
     }
 }

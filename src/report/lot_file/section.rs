@@ -9,13 +9,14 @@ use crate::report::chart::Drawn;
 use crate::report::chart::from_series::{About, charts};
 
 /// Columns that stand elsewhere in the line, or only in the data files.
-const NOT_SHOWN: [&str; 8] =
-    ["id", "act", "content", "detail", "numbers", "supersedes", "superseded_by", "offset_minutes"];
+const NOT_SHOWN: [&str; 9] =
+    ["id", "act", "content", "detail", "numbers", "hints", "supersedes", "superseded_by", "offset_minutes"];
 
 /// Everything about the lot, section by section.
 pub fn by_section(file: &LotFile, place: Place) -> Document {
     let maker = Maker { file, place };
-    let mut sections = vec![maker.tables("identity", "Identity and label", "", &["lots"])];
+    let mut sections = vec![maker.tables("identity", "Identity and label", "", &[])];
+    maker.identity(&mut sections);
     maker.versions(&mut sections, "formulation", "Formulation", "formulation_versions");
     sections.push(maker.tables(
         "release",
@@ -142,6 +143,24 @@ impl Maker<'_> {
                 title: format!("{} version {}", table.text(row, "code"), table.text(row, "number")),
                 is_part: true,
                 facts: flat(&table.text(row, "content")),
+                ..Section::default()
+            });
+        }
+    }
+
+    /// The lot, and the bulk lots it was filled from, each as a list of facts.
+    fn identity(&self, sections: &mut Vec<Section>) {
+        let Some(table) = self.file.table("lots") else { return };
+        for row in &table.rows {
+            let stated = table.columns.iter().filter(|column| !NOT_SHOWN.contains(&column.as_str()));
+            let stated = stated.filter(|column| *table.cell(row, column) != Cell::Missing);
+            let fact =
+                |column: &String| (head(column), shown(column, table.cell(row, column), self.file.zone));
+            sections.push(Section {
+                anchor: format!("lot-{}", table.text(row, "id")),
+                title: format!("Lot {}", table.text(row, "number")),
+                is_part: true,
+                facts: stated.map(fact).collect(),
                 ..Section::default()
             });
         }

@@ -61,6 +61,7 @@ fn gather(value: &Value, place: &mut Vec<String>, lines: &mut Vec<(String, Strin
                 place.pop();
             }
         }
+        Value::String(text) if text.is_empty() => lines.push((place.join(", "), NOTHING.to_string())),
         Value::String(text) => lines.push((place.join(", "), text.clone())),
         Value::Bool(is) => lines.push((place.join(", "), if *is { "yes" } else { "no" }.to_string())),
         Value::Number(number) => lines.push((place.join(", "), number.to_string())),
