@@ -2,7 +2,7 @@
 
 use chrono_tz::Tz;
 
-use super::series::SeriesPoint;
+use super::series::{ArmWords, SeriesPoint};
 
 /// All facts of a lot file. The same records give the same facts.
 #[derive(Clone, Debug)]
@@ -17,16 +17,6 @@ pub struct LotFile {
     pub tables: Vec<Table>,
     /// Points for the charts: arm, and what stands on it.
     pub series: Vec<(ArmWords, Vec<SeriesPoint>)>,
-}
-
-/// An arm in words, for the heading of its charts.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct ArmWords {
-    pub arm: i64,
-    pub study: String,
-    pub condition: String,
-    /// The specification version whose shelf-life limits are drawn.
-    pub specification: Option<String>,
 }
 
 /// The records of one kind. Column names are those of the files; `id` and `act` come first where they exist.

@@ -36,3 +36,12 @@ pub struct SeriesKey {
     pub condition: i64,
     pub orientation: String,
 }
+
+/// An arm in words, for the heading of its charts.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct ArmWords {
+    pub arm: i64,
+    pub condition: String,
+    /// The content of the specification version whose shelf-life limits are drawn.
+    pub specification: Option<String>,
+}

@@ -4,7 +4,7 @@ use chrono::NaiveDate;
 use rusqlite::named_params;
 
 use super::door::Change;
-use super::{Answer, Day, Exact, condition, new_uuid, review, version};
+use super::{Answer, Day, Exact, Reader, condition, new_uuid, review, version};
 use crate::domain::age::Age;
 use crate::domain::digest::sha256_hex;
 use crate::domain::formulation::FormulationContent;
@@ -302,6 +302,27 @@ pub fn sign(change: &Change<'_>, lot: i64, (account, name): (i64, &str)) -> Answ
             },
         )?;
         change.concerns(Kind::Sample, sample)?;
+    }
+    Ok(())
+}
+
+/// A test that nobody has read yet, to write measured entries into.
+pub fn first_open_test(reader: &Reader<'_>) -> Answer<i64> {
+    reader.one(
+        "test without readings",
+        "select t.id from sample_test t
+         where not exists (select 1 from reading r where r.sample_test = t.id)
+         order by t.id
+         limit 1",
+        [],
+        |row| row.get(0),
+    )
+}
+
+/// Three readings of one test, as one entry at the bench writes them.
+pub fn three_readings(change: &Change<'_>, test: i64, first_replicate: i64) -> Answer<()> {
+    for replicate in first_replicate..first_replicate + 3 {
+        reading(change, test, replicate, 6_800 + replicate % 50)?;
     }
     Ok(())
 }

@@ -4,7 +4,7 @@ use rusqlite::{Row, named_params};
 use rust_decimal::Decimal;
 
 use super::{Answer, Exact, Reader};
-use crate::domain::series::{SeriesKey, SeriesPoint};
+use crate::domain::series::{ArmWords, SeriesKey, SeriesPoint};
 
 /// The series a sample's pull belongs to; `None` for a sample without a pull.
 pub fn key_of_sample(reader: &Reader<'_>, sample: i64) -> Answer<Option<SeriesKey>> {
@@ -65,6 +65,33 @@ pub fn of_study(reader: &Reader<'_>, study: i64) -> Answer<Vec<(i64, SeriesPoint
         })?;
     points.sort_by(|(arm, point), (other, later)| arm.cmp(other).then_with(|| order(point, later)));
     Ok(points)
+}
+
+/// The arms of a study in words, each with its points and the specification whose limits are drawn. Two queries.
+pub fn arms_of_study(reader: &Reader<'_>, study: i64) -> Answer<Vec<(ArmWords, Vec<SeriesPoint>)>> {
+    let mut arms = reader.all(
+        "select a.id,
+             c.name || case a.orientation when 'not stated' then '' else ' ' || a.orientation end
+                 || coalesce(', ' || a.container_text, ''),
+             v.content
+         from study s
+         join study_arm a on a.study = s.id
+         join condition c on c.id = a.condition
+         left join specification_version v on v.id = s.specification_version
+         where s.id = :study
+         order by a.position",
+        named_params! { ":study": study },
+        |row| {
+            let words = ArmWords { arm: row.get(0)?, condition: row.get(1)?, specification: row.get(2)? };
+            Ok((words, Vec::new()))
+        },
+    )?;
+    for (arm, point) in of_study(reader, study)? {
+        if let Some((_, points)) = arms.iter_mut().find(|(words, _)| words.arm == arm) {
+            points.push(point);
+        }
+    }
+    Ok(arms)
 }
 
 fn sort(points: &mut [SeriesPoint]) {

@@ -90,6 +90,26 @@ fn an_imported_lot_says_so_on_its_page() {
     assert!(page.text().contains("imported"), "{}", page.text());
 }
 
+/// Every imported study shows its charts, a point for each result of the file.
+#[test]
+fn imported_studies_show_their_charts_with_every_point() {
+    let lab = Lab::new();
+    let person = lab.manager();
+    let mut points = 0;
+    for (name, bytes) in [("zno.csv", zno()), ("tacrolimus.csv", tacrolimus())] {
+        let seen = imports(&person, name, &bytes);
+        for study in seen.links().into_iter().filter(|link| link.starts_with("/studies/")) {
+            let page = person.sees(&study, "imported, not observed here");
+            let html = scraper::Html::parse_document(&page.html());
+            let rows = scraper::Selector::parse("details.numbers tbody tr").unwrap();
+            let drawings = scraper::Selector::parse("figure.chart svg[role=img]").unwrap();
+            points += html.select(&rows).count();
+            assert!(html.select(&drawings).count() > 0, "{study}");
+        }
+    }
+    assert_eq!(points, 90 + 128);
+}
+
 #[test]
 fn the_same_file_twice_is_refused_with_its_date() {
     let lab = Lab::new();

@@ -5,10 +5,12 @@ use std::io::{Cursor, Read, Write};
 
 use scraper::{Html, Selector};
 
+use crate::support::samples::Bench;
 use crate::support::{Lab, Scratch};
 use supernate::acts;
 use supernate::acts::lot_file::{Made, check, files};
 use supernate::domain::lot_file::Export;
+use supernate::domain::sample::Purpose;
 use supernate::store;
 
 fn tacrolimus() -> Vec<u8> {
@@ -187,4 +189,48 @@ fn the_auditor_reads_the_lot_file_in_both_orders_and_exports_it() {
     assert_eq!(auditor.get(&format!("{path}/{}", "0".repeat(64))).status, 404);
     let analyst = lab.analyst().get(&path);
     assert!(!analyst.html().contains("Export the lot file"));
+}
+
+/// requirement P2, I13: readings, the correction was → is, and the signature with its meaning, in every form alike.
+#[test]
+fn readings_corrections_and_signatures_are_in_every_form() {
+    let lab = Lab::new();
+    let bench = Bench::new(&lab);
+    let lot = bench.lot("TW-104-0640");
+    let sample = bench.ready(lot, Purpose::Release);
+    let corrected = bench.receives(lot, Purpose::RetainCheck, &["assay"]);
+    bench.completes("rafe.tolland", corrected, "assay", &["99.1", "99.9"]);
+    bench.corrects("rafe.tolland", corrected, "assay", 1, "99.5");
+    let (qa, page) = (lab.reviewer(), format!("/review/{sample}"));
+    qa.does(&page, &format!("{page}/agree"), &[]);
+    qa.signs("/review/sign", "/review/sign", &[]);
+
+    let files = unpacked(&export(&lab, lot).bytes);
+    let json: serde_json::Value = serde_json::from_str(&text(&files, "lot.json")).unwrap();
+    let table = |name: &str| json["tables"][name].as_array().unwrap().clone();
+    let count = |sample| lab.app.db.read(|reader| store::reading::of_sample(reader, sample)).unwrap().len();
+    let in_database = count(sample) + count(corrected);
+    assert_eq!(in_database, 7);
+    assert_eq!(table("readings").len(), in_database);
+    let mut reader = csv::Reader::from_reader(&files["csv/readings.csv"][..]);
+    assert_eq!(reader.records().count(), in_database);
+    let page = Html::parse_document(&text(&files, "lot-file.html"));
+    let rows = Selector::parse("tr[id^='reading-']").unwrap();
+    assert_eq!(page.select(&rows).count(), in_database);
+
+    let correction = &table("corrections")[0];
+    assert_eq!((&correction["was"], &correction["is"]), (&"99.9".into(), &"99.5".into()));
+    assert_eq!(correction["reason"], "mistyped");
+    let signatures = table("signatures");
+    let signed = signatures.iter().find(|one| one["record"] == "sample").unwrap();
+    assert_eq!((&signed["signed_by"], &signed["role"]), (&"Ada Whitlock".into(), &"QA reviewer".into()));
+    assert_eq!(signed["signed_at"], "2026-12-01T09:00:00.000Z");
+    let words: String = page.root_element().text().collect::<Vec<_>>().join(" ");
+    for shown in ["99.9 (97.0 to 103.0)\u{202f}%", "1.12 (1.00 to 1.20)\u{202f}g/mL", "mistyped", "review"] {
+        assert!(words.contains(shown), "{shown}");
+    }
+    for table in table("results") {
+        let shown = format!("{} ({})", table["shown"].as_str().unwrap(), table["limits"].as_str().unwrap());
+        assert!(words.contains(&shown), "{shown}");
+    }
 }

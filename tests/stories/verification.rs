@@ -2,9 +2,11 @@
 
 use std::path::{Path, PathBuf};
 
+use crate::support::samples::Bench;
 use crate::support::{Lab, PASSWORD, Scratch};
 use rusqlite::Connection;
 use supernate::acts;
+use supernate::domain::sample::Purpose;
 use supernate::store::verify::Report;
 
 /// A copy of a laboratory's folder, its triggers dropped, so that it can be tampered with.
@@ -232,4 +234,24 @@ fn a_changed_shelf_life_or_lifted_stop_breaks_its_signature() {
             "{tampering}: {report}"
         );
     }
+
+/// requirement P1: a signed reading that is changed from outside is named, and so is the signature over it.
+#[test]
+fn a_changed_reading_is_named_with_the_signature_over_it() {
+    let lab = Lab::new();
+    let bench = Bench::new(&lab);
+    let sample = bench.ready(bench.lot("TW-104-0640"), Purpose::Release);
+    let (qa, page) = (lab.reviewer(), format!("/review/{sample}"));
+    qa.does(&page, &format!("{page}/agree"), &[]);
+    qa.signs("/review/sign", "/review/sign", &[]);
+    let untouched = verify(&copy(&lab).0, None);
+    assert_eq!(untouched.findings, []);
+    assert_eq!(untouched.recomputed, untouched.signatures, "every signature is computed again");
+    let report = after(&lab, "update reading set typed = '99.9', value = '99.9' where id = 1");
+    let found: Vec<Option<(String, i64)>> =
+        report.findings.iter().map(|finding| finding.record.clone()).collect();
+    assert_eq!(found, [Some(("reading".to_string(), 1)), Some(("sample".to_string(), sample))]);
+    let report = after(&lab, "update signature set digest = replace(digest, 'a', 'b') where kind = 'sample'");
+    let first = report.findings.first().and_then(|finding| finding.record.clone()).unwrap();
+    assert_eq!(first.0, "signature");
 }

@@ -2,8 +2,8 @@
 
 use rust_decimal::Decimal;
 
-use super::{Bound, Chart, Mark, Point, Series};
-use crate::domain::series::SeriesPoint;
+use super::{Bound, Chart, Drawn, Mark, Point, Series};
+use crate::domain::series::{ArmWords, SeriesPoint};
 use crate::domain::specification::{Limit, LimitSet, SpecificationContent};
 
 /// What the charts of one lot and condition have in common.
@@ -44,6 +44,26 @@ pub fn charts(points: &[SeriesPoint], about: &About<'_>) -> Vec<Chart> {
         }
     }
     charts
+}
+
+/// The charts of several arms of one lot, arm by arm, with the shelf-life limits of the specification of each.
+pub fn of_arms(lot: &str, arms: &[(ArmWords, Vec<SeriesPoint>)], is_small: bool) -> Vec<Drawn> {
+    let mut drawn = Vec::new();
+    for (words, points) in arms {
+        let content = words.specification.as_deref();
+        let content = content.and_then(|text| serde_json::from_str::<SpecificationContent>(text).ok());
+        let about = About {
+            lot,
+            condition: &words.condition,
+            specification: content.as_ref(),
+            set: content.as_ref().map(|_| LimitSet::ShelfLife),
+            id_prefix: &format!("arm-{}-", words.arm),
+            is_small,
+            ..About::default()
+        };
+        drawn.extend(charts(points, &about).iter().map(Chart::drawn));
+    }
+    drawn
 }
 
 fn chart(test: &str, component: &str, group: &[&SeriesPoint], about: &About<'_>) -> Chart {

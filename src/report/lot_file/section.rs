@@ -4,9 +4,7 @@ use super::words::{flat, head, shown};
 use super::{Document, Entry, Grid, Line, Place, Section};
 use crate::domain::lot_file::{Cell, LotFile, Table};
 use crate::domain::moment::Moment;
-use crate::domain::specification::{LimitSet, SpecificationContent};
-use crate::report::chart::Drawn;
-use crate::report::chart::from_series::{About, charts};
+use crate::report::chart::from_series::of_arms;
 
 /// Columns that stand elsewhere in the line, or only in the data files.
 const NOT_SHOWN: [&str; 9] =
@@ -27,7 +25,10 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
     sections.push(maker.tables("studies", "Studies", "", &["studies", "arms", "pulls", "pull_events"]));
     maker.versions(&mut sections, "protocols", "Protocols", "protocol_versions");
     maker.versions(&mut sections, "specifications", "Specifications", "specification_versions");
-    sections.push(Section { charts: maker.charts(), ..maker.tables("charts", "Charts", "", &[]) });
+    sections.push(Section {
+        charts: of_arms(&file.number, &file.series, false),
+        ..maker.tables("charts", "Charts", "", &[])
+    });
     sections.push(maker.tables("containers", "Containers", "", &["containers", "container_events"]));
     sections.push(maker.tables(
         "samples",
@@ -164,25 +165,6 @@ impl Maker<'_> {
                 ..Section::default()
             });
         }
-    }
-
-    fn charts(&self) -> Vec<Drawn> {
-        let mut drawn = Vec::new();
-        for (words, points) in &self.file.series {
-            let specification = words.specification.as_deref();
-            let content =
-                specification.and_then(|text| serde_json::from_str::<SpecificationContent>(text).ok());
-            let about = About {
-                lot: &self.file.number,
-                condition: &words.condition,
-                specification: content.as_ref(),
-                set: content.as_ref().map(|_| LimitSet::ShelfLife),
-                id_prefix: &format!("arm-{}-", words.arm),
-                ..About::default()
-            };
-            drawn.extend(charts(points, &about).iter().map(crate::report::chart::Chart::drawn));
-        }
-        drawn
     }
 
     /// One part for each sample.

@@ -9,10 +9,9 @@ use std::collections::BTreeSet;
 use rusqlite::types::ValueRef;
 use rusqlite::{Row, named_params};
 
-use super::{Answer, Reader, lot, series, site, version};
-use crate::domain::lot_file::{ArmWords, Cell, LotFile, Table};
-use crate::domain::specification::SpecificationContent;
-use crate::domain::version::Versioned;
+use super::{Answer, Reader, lot, series, site};
+use crate::domain::lot_file::{Cell, LotFile, Table};
+use crate::domain::series::{ArmWords, SeriesPoint};
 
 /// One kind of record: file name, title, numeric columns, and its query over the lot and the bulk lots it came from.
 struct Query {
@@ -171,45 +170,15 @@ fn people(reader: &Reader<'_>, acts: &str) -> Answer<Table> {
 }
 
 /// The points of the lot's own studies, arm by arm.
-fn charted(
-    reader: &Reader<'_>,
-    lot: i64,
-) -> Answer<Vec<(ArmWords, Vec<crate::domain::series::SeriesPoint>)>> {
-    let arms = reader.all(
-        "select a.id, s.id, s.number,
-             c.name || case a.orientation when 'not stated' then '' else ' ' || a.orientation end
-                 || coalesce(', ' || a.container_text, ''),
-             s.specification_version
-         from study s join study_arm a on a.study = s.id join condition c on c.id = a.condition
-         where s.lot = :lot
-         order by s.id, a.position",
+fn charted(reader: &Reader<'_>, lot: i64) -> Answer<Vec<(ArmWords, Vec<SeriesPoint>)>> {
+    let studies = reader.all(
+        "select id from study where lot = :lot order by id",
         named_params! { ":lot": lot },
-        |row| {
-            let words = ArmWords {
-                arm: row.get(0)?,
-                study: row.get(2)?,
-                condition: row.get(3)?,
-                specification: None,
-            };
-            Ok((row.get::<_, i64>(1)?, words, row.get::<_, Option<i64>>(4)?))
-        },
+        |row| row.get::<_, i64>(0),
     )?;
-    let mut studies: Vec<i64> = arms.iter().map(|(study, _, _)| *study).collect();
-    studies.dedup();
-    let mut points = Vec::new();
-    for study in studies {
-        points.extend(series::of_study(reader, study)?);
-    }
     let mut charted = Vec::new();
-    for (_, mut words, specification) in arms {
-        if let Some(specification) = specification {
-            let version = version::get(reader, Versioned::Specification, specification)?;
-            // Only what can be read as a specification is drawn as limits.
-            words.specification = version.read::<SpecificationContent>().ok().map(|_| version.content);
-        }
-        let of_arm =
-            points.iter().filter(|(arm, _)| *arm == words.arm).map(|(_, point)| point.clone()).collect();
-        charted.push((words, of_arm));
+    for study in studies {
+        charted.extend(series::arms_of_study(reader, study)?);
     }
     Ok(charted)
 }

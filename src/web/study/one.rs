@@ -17,6 +17,8 @@ use crate::domain::failure::Failure;
 use crate::domain::moment::date_shown;
 use crate::domain::pull;
 use crate::domain::subject::{Kind, Subject};
+use crate::report::chart::Drawn;
+use crate::report::chart::from_series::of_arms;
 use crate::store;
 use crate::store::container::{Container, LedgerLine};
 use crate::store::pull::Pull;
@@ -30,6 +32,7 @@ struct StudyPage {
     started: String,
     ages: Vec<String>,
     arms: Vec<ArmRow>,
+    charts: Vec<Drawn>,
     ledger: Vec<LedgerRow>,
     warnings: Vec<String>,
     trigger: Option<Form>,
@@ -170,11 +173,12 @@ pub(super) fn one(visit: &Visit) -> Outcome {
 }
 
 fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
-    let (study, arms, pulls, ledger, lines) = visit.read(|reader| {
+    let (study, arms, pulls, points, ledger, lines) = visit.read(|reader| {
         Ok((
             store::study::get(reader, id)?,
             store::study::arms(reader, id)?,
             store::pull::of_study(reader, id)?,
+            store::series::arms_of_study(reader, id)?,
             store::container::ledger(reader, id)?,
             store::trail::of_subject(reader, Subject::new(Kind::Study, id))?,
         ))
@@ -198,6 +202,7 @@ fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outc
         started: started(&study),
         arms: arms.iter().map(|arm| arm_row(visit, arm, &ages, &pulls)).collect(),
         ages,
+        charts: of_arms(&study.lot_number, &points, true),
         ledger: ledger_rows(visit, &arms, ledger),
         warnings,
         trigger,
