@@ -117,7 +117,7 @@ fn page_ms(path: &Path, page: &str) -> Result<f64, Failure> {
 
 /// The counts of the week page.
 fn counted(reader: &Reader<'_>, today: NaiveDate) -> Answer<usize> {
-    let shows = [Show::Late, Show::Closing, Show::Week, Show::InTest, Show::TestingCloses, Show::Coming];
+    let shows = [Show::Late, Show::Closing, Show::Week, Show::InTest, Show::Urgent, Show::Coming];
     shows.into_iter().map(|show| store::pull::count(reader, show, today)).sum()
 }
 
