@@ -234,6 +234,7 @@ fn a_changed_shelf_life_or_lifted_stop_breaks_its_signature() {
             "{tampering}: {report}"
         );
     }
+}
 
 /// requirement P1: a signed reading that is changed from outside is named, and so is the signature over it.
 #[test]
