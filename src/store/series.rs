@@ -43,11 +43,16 @@ const SELECT: &str = "
     left join result r on r.sample_test = t.id
         and r.version = (select max(version) from result newest where newest.sample_test = t.id)";
 
+/// A pull that is still to come is no gap: it has neither a result nor an event.
+const HAPPENED: &str = "(r.id is not null
+    or exists (select 1 from pull_event e where e.pull = p.id and e.kind <> 'cancelled'))";
+
 /// Every test's points for a lot × condition × orientation, ordered by test, component and age. One query.
 pub fn of_key(reader: &Reader<'_>, key: &SeriesKey) -> Answer<Vec<SeriesPoint>> {
     let mut points = reader.all(
         &format!(
-            "{SELECT} where st.lot = :lot and a.condition = :condition and a.orientation = :orientation"
+            "{SELECT} where st.lot = :lot and a.condition = :condition and a.orientation = :orientation
+             and {HAPPENED}"
         ),
         named_params! { ":lot": key.lot, ":condition": key.condition, ":orientation": key.orientation },
         from_row,
@@ -59,10 +64,11 @@ pub fn of_key(reader: &Reader<'_>, key: &SeriesKey) -> Answer<Vec<SeriesPoint>> 
 /// The points of one study, with the arm each belongs to: for the study's own page.
 pub fn of_study(reader: &Reader<'_>, study: i64) -> Answer<Vec<(i64, SeriesPoint)>> {
     let select = SELECT.replacen("select s.id,", "select a.id, s.id,", 1);
-    let mut points: Vec<(i64, SeriesPoint)> =
-        reader.all(&format!("{select} where st.id = :study"), named_params! { ":study": study }, |row| {
-            Ok((row.get(0)?, from_row_at(row, 1)?))
-        })?;
+    let mut points: Vec<(i64, SeriesPoint)> = reader.all(
+        &format!("{select} where st.id = :study and {HAPPENED}"),
+        named_params! { ":study": study },
+        |row| Ok((row.get(0)?, from_row_at(row, 1)?)),
+    )?;
     points.sort_by(|(arm, point), (other, later)| arm.cmp(other).then_with(|| order(point, later)));
     Ok(points)
 }

@@ -345,6 +345,7 @@ fn screen_u111_a_pull_is_reviewed_with_the_charts_of_its_lot_and_condition() {
     ] {
         assert!(page.text().contains(words), "{words}: {}", page.text());
     }
+    assert!(!page.text().contains("Without a value"), "pulls to come are no gaps: {}", page.text());
     let html = page.html();
     assert!(
         html.contains("id=\"exception-0-chart-assay--title\"") && html.contains("id=\"chart-assay--title\"")
