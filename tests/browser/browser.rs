@@ -146,11 +146,20 @@ impl<'a> Browser<'a> {
         RUNTIME.block_on(element.send_keys(file.to_str().unwrap())).unwrap();
     }
 
+    /// Presses, and waits until the page shows something else.
+    pub fn presses_on(&self, words: &str) {
+        let (path, before) = (self.path(), self.text());
+        self.press(words);
+        let until = Instant::now() + PATIENCE;
+        while self.path() == path && self.text() == before {
+            assert!(Instant::now() < until, "“{words}” led nowhere on {path}:\n{before}");
+            std::thread::sleep(Duration::from_millis(50));
+        }
+    }
+
     /// Fills the field under this label, replacing what it holds; a select takes the option with these words.
     pub fn fill(&self, label: &str, value: &str) {
-        let path = format!(
-            "//*[@id=//label[normalize-space(.)='{label}']/@for] | //*[@aria-label='{label}'][self::input]"
-        );
+        let path = format!("//*[@id=//label[normalize-space(.)='{label}']/@for]");
         let element = self.waits_for(&path, &format!("the field “{label}”"));
         RUNTIME
             .block_on(async {
@@ -161,6 +170,44 @@ impl<'a> Browser<'a> {
                 element.send_keys(value).await
             })
             .unwrap();
+    }
+
+    fn types_over(&self, element: &Element, value: &str) {
+        RUNTIME
+            .block_on(async {
+                element.clear().await?;
+                element.send_keys(value).await
+            })
+            .unwrap();
+    }
+
+    /// Fills the box with this name.
+    pub fn fills_named(&self, name: &str, value: &str) {
+        let element = self.waits_for(&format!("//input[@name='{name}']"), &format!("the box {name}"));
+        self.types_over(&element, value);
+    }
+
+    /// The names of the reading boxes with this ending.
+    fn boxes(&self, ending: &str) -> Vec<String> {
+        let found =
+            RUNTIME.block_on(self.client().find_all(Locator::Css("input[name^='reading.']"))).unwrap();
+        let name = |element: &Element| RUNTIME.block_on(element.attr("name")).ok().flatten();
+        let names = found.iter().filter_map(name);
+        names.filter(|name| name.ends_with(ending)).collect()
+    }
+
+    /// Fills every reading box with this ending.
+    pub fn fills_boxes(&self, ending: &str, value: &str) {
+        let boxes = self.boxes(ending);
+        assert!(!boxes.is_empty(), "no box {ending} on {}:\n{}", self.path(), self.text());
+        boxes.iter().for_each(|name| self.fills_named(name, value));
+    }
+
+    /// Fills the first reading box with this ending.
+    pub fn fills_first_box(&self, ending: &str, value: &str) {
+        let boxes = self.boxes(ending);
+        assert!(!boxes.is_empty(), "no box {ending} on {}:\n{}", self.path(), self.text());
+        self.fills_named(&boxes[0], value);
     }
 
     /// Types into what has the focus.

@@ -53,7 +53,7 @@ arguments[0]([all.indexOf(held), all.length, Boolean(isSeen), held.outerHTML.sli
 /// screen_U35 and WCAG 2.1.2, 2.4.11: the tab key comes past every control, none is covered, none holds it.
 #[test]
 fn the_tab_key_comes_past_every_control() {
-    let site = Site::serving(filled());
+    let site = Site::serving(filled().lab);
     let browser = Browser::new(&site, Script::On);
     browser.is("maren.oddy");
     for (path, width) in [("/lots/new", 1280), ("/lots", 320), ("/instruments/new", 320)] {

@@ -10,6 +10,7 @@ mod audit;
 mod browser;
 mod driver;
 mod imports;
+mod journeys;
 mod keyboard;
 mod pages;
 mod people;
