@@ -72,10 +72,12 @@ fn how_it_ages(counts: &Counts) -> Vec<Line> {
 }
 
 fn table(lines: Vec<Line>) -> Table {
+    let first = lines.first().map(|(_, name, ..)| name.to_lowercase()).unwrap_or_default();
+    let caption = format!("Counts of what is on record, from {first} on");
     let rows = lines.into_iter().map(|(path, name, count, sentence)| {
         vec![Cell::link(path, name), Cell::number(count.to_string()), Cell::text(sentence)]
     });
-    Table::new("Counts of what is on record", &["Definition", "On record#", "What it holds"], "").rows(rows)
+    Table::new(&caption, &["Definition", "On record#", "What it holds"], "").rows(rows)
 }
 
 fn definitions(visit: &Visit) -> Outcome {

@@ -259,6 +259,7 @@ pub fn sum_words(content: &FormulationContent) -> String {
                 "{sums}: in other units than the target of {target}\u{202f}{unit}, so they are not compared"
             )
         }
+        (None, _) if sums.is_empty() => "No quantity is stated".to_string(),
         (None, _) => format!("Total {sums}; no target is stated"),
     }
 }
