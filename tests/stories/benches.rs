@@ -188,3 +188,43 @@ fn the_same_submit_five_times_makes_one_record() {
     }
     assert_eq!(lab.app.db.read(|reader| store::reading::of_test(reader, tests[0])).unwrap().len(), 1);
 }
+
+#[test]
+fn a_pulled_container_is_found_by_its_label_in_a_bench_session() {
+    let lab = Lab::new();
+    let kinds = [TestKind::Appearance, TestKind::Redispersibility];
+    let study = world::study(&lab, "TW-700", &kinds);
+    let pull = world::pull(&lab, study, 1, "Initial");
+    let sample = world::take(&lab, &pull);
+    for kind in kinds {
+        let version = world::approved_method(&lab, kind);
+        world::qualify(&lab, "rafe.tolland", version);
+    }
+    let bench = lab.app.db.read(|reader| store::bench::sample(reader, sample)).unwrap();
+    let analyst = lab.analyst();
+    analyst.sees("/bench", &bench.number);
+    let (appearance, turning) = (&bench.tests[0], &bench.tests[1]);
+    let session = format!("/bench/session?method={}", appearance.method_version);
+    let wrong = analyst.get(&format!("{session}&label=ZZ-9999"));
+    assert_eq!(wrong.status, 409, "{}", wrong.text());
+    let label = &bench.containers[0].label;
+    let found = analyst.get(&format!("{session}&label={label}"));
+    assert_eq!(found.status, 303, "{}", found.text());
+    let page = found.location.unwrap();
+    let fields: Vec<(String, &str)> = bench
+        .slots(appearance)
+        .iter()
+        .filter(|slot| slot.is_required)
+        .map(|slot| {
+            let grade = if slot.key.field == "colour" { "match" } else { "0" };
+            (slot.key.name(), grade)
+        })
+        .collect();
+    let mut fields: Vec<(&str, &str)> = fields.iter().map(|(name, grade)| (name.as_str(), *grade)).collect();
+    fields.push(("then", "complete"));
+    let seen = records(&analyst, &page, &fields);
+    assert_eq!((seen.status, seen.location.as_deref()), (303, Some(session.as_str())), "{}", seen.text());
+    let readings = lab.app.db.read(|reader| store::reading::of_test(reader, appearance.id)).unwrap();
+    assert_eq!(readings[0].container, Some(bench.containers[0].id));
+    assert!(analyst.get(&format!("/tests/{}?label={label}", turning.id)).html().contains("data-counter"));
+}
