@@ -43,12 +43,8 @@ fn from_row(row: &rusqlite::Row<'_>) -> rusqlite::Result<Import> {
 }
 
 pub fn get(reader: &Reader<'_>, id: i64) -> Answer<Import> {
-    reader.one(
-        "import with this number",
-        &format!("{SELECT} where i.id = :id"),
-        named_params! { ":id": id },
-        from_row,
-    )
+    let sql = format!("{SELECT} where i.id = :id");
+    reader.one("import with this number", &sql, named_params! { ":id": id }, from_row)
 }
 
 /// All imports, newest first.
@@ -58,11 +54,8 @@ pub fn all(reader: &Reader<'_>) -> Answer<Vec<Import>> {
 
 /// The import of this very file and the number and stored instant of its act, if it was imported.
 pub fn before(reader: &Reader<'_>, sha256: &str) -> Answer<Option<(i64, String)>> {
-    reader.maybe(
-        "select i.id, a.at from import i join trail_act a on a.id = i.act where i.sha256 = :sha256",
-        named_params! { ":sha256": sha256 },
-        |row| Ok((row.get(0)?, row.get(1)?)),
-    )
+    let sql = "select i.id, a.at from import i join trail_act a on a.id = i.act where i.sha256 = :sha256";
+    reader.maybe(sql, named_params! { ":sha256": sha256 }, |row| Ok((row.get(0)?, row.get(1)?)))
 }
 
 /// What an import brought, counted in the records themselves.

@@ -386,7 +386,10 @@ mod tests {
 
     proptest! {
         #[test]
-        fn no_bytes_make_it_panic(bytes in proptest::collection::vec(any::<u8>(), 0..400), cells in "[-+=',;\"0-9a-z\n]{0,200}") {
+        fn no_bytes_make_it_panic(
+            bytes in proptest::collection::vec(any::<u8>(), 0..400),
+            cells in "[-+=',;\"0-9a-z\n]{0,200}",
+        ) {
             let _ = read(&bytes);
             let _ = read(format!("{HEADER}{cells}").as_bytes());
         }

@@ -141,7 +141,7 @@ fn sealed(before: &[u8], act: i64, entry: &[u8], stored: Option<Vec<u8>>, check:
             computed
         }
         Some(stored) if stored != computed => {
-            let sentence = "the seal does not follow from the entry: the entry, one of its lines or the seal was changed";
+            let sentence = "the seal does not follow: the entry, one of its lines or the seal was changed";
             check.found(Some(act), None, sentence);
             stored
         }
