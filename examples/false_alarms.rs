@@ -10,9 +10,10 @@ use supernate::science::regression::Point;
 use supernate::science::trend::context::{self, RULES};
 use supernate::science::trend::single_result::forecast;
 use supernate::science::trend::{Levels, history_screen, lot_trend};
-use supernate::science::warning_rules::{
-    ArmPair, Attribute, FirstDay, Label, Level, Limits, Lot, Pull, Settings, Viscosity, all,
+use supernate::science::warning_rules::facts::{
+    ArmPair, Attribute, FirstDay, Label, Limits, Lot, Pull, Viscosity,
 };
+use supernate::science::warning_rules::{Level, Settings, all};
 
 const AGES: [f64; 8] = [0.0, 3.0, 6.0, 9.0, 12.0, 18.0, 24.0, 36.0];
 const EARLIER: [usize; 4] = [1, 3, 5, 7];
@@ -190,7 +191,7 @@ fn clean(chance: &mut Chance) -> Lot {
         warm,
         first_day: FirstDay { turbid: Some(false), f: Some(0.9), sharp_interface: Some(true) },
         label: Label { inversions: Some(20.0), seconds: Some(30.0) },
-        formula: supernate::science::warning_rules::Formula {
+        formula: supernate::science::warning_rules::facts::Formula {
             thickener_ph: Some((3.0, 12.0)),
             preservative_highest_ph: Some(8.0),
             binds_preservative: Some(false),

@@ -60,7 +60,7 @@ pub fn first_signal(
     let Some(judged) = mean(&values) else { return unusable() };
     let Some(points) = averaged(&other) else { return unusable() };
     let (Some(x), Some(y)) = (age.to_f64(), judged.to_f64()) else { return unusable() };
-    let shown = Shown { value: judged.round_dp(decimals), decimals: decimals + 1, count: points.len() };
+    let shown = Shown { value: judged.round_dp(decimals + 1), decimals: decimals + 1, count: points.len() };
     match (next_value(&points, x, ALERT_CONFIDENCE), next_value(&points, x, ACTION_CONFIDENCE)) {
         (Forecast::NeedsMore { results }, _) => not_evaluable(format!("needs {}", more_ages(results))),
         (Forecast::NeedsAnotherAge, _) => not_evaluable("needs one more age".to_string()),

@@ -8,7 +8,8 @@ use supernate::science::regression::{Line, Point};
 use supernate::science::shelf_life::{Direction, Outcome, Side, Specification, crossing, of_model};
 use supernate::science::trend::context::{self, RULES};
 use supernate::science::trend::{Levels, early_warning, lot_trend, single_result};
-use supernate::science::warning_rules::{Lot, Pull, Settings, Viscosity, all};
+use supernate::science::warning_rules::facts::{Lot, Pull, Viscosity};
+use supernate::science::warning_rules::{Settings, all};
 use supernate::science::{flow, kinetics, settling_curve, tolerance};
 
 const MODELS: [Model; 3] = [Model::SeparateLines, Model::CommonSlope, Model::CommonLine];

@@ -11,7 +11,8 @@ use supernate::science::settling::{
 };
 use supernate::science::shelf_life::{Outcome, Side, crossing};
 use supernate::science::uniformity::{Decision, acceptance_value, dosage_units, reference_value};
-use supernate::science::warning_rules::{Level, Lot, Pull, Rule, Settings, all};
+use supernate::science::warning_rules::facts::{Lot, Pull};
+use supernate::science::warning_rules::{Level, Rule, Settings, all};
 use supernate::science::yields::{accountable_percent, potency_corrected, yield_percent};
 use supernate::science::{redispersion, viscosity};
 

@@ -24,6 +24,9 @@ impl Player<'_> {
         if kind == Some("missed") {
             return self.miss(&pull, event.map(|event| event.detail).unwrap_or_default());
         }
+        if kind == Some("left") {
+            return Ok(());
+        }
         let is_recent = plus_days(self.now.date(), LEFT_OPEN_DAYS) >= self.today();
         if is_recent && kind.is_none() {
             return Ok(());

@@ -5,14 +5,14 @@
 //! are common practice, set with published series in view.
 
 mod content;
-mod facts;
+pub mod facts;
 mod label;
 mod particles;
 mod readings;
 mod settling;
 mod thickener;
 
-pub use facts::{ArmPair, Attribute, Doubt, FirstDay, Formula, Label, Limits, Lot, Pull, Viscosity};
+use facts::Lot;
 
 /// A rule.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]

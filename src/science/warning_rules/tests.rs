@@ -1,3 +1,4 @@
+use super::facts::{ArmPair, Attribute, Doubt, FirstDay, Pull, Viscosity};
 use super::*;
 
 /// Pulls at 0, 30, 60 … days, each made from its index.
