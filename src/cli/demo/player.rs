@@ -122,7 +122,7 @@ impl<'a> Player<'a> {
     }
 
     /// The next scene; the clock goes to its moment, or stays where work has already taken it.
-    pub fn next(&mut self) -> Option<Scene> {
+    fn next_scene(&mut self) -> Option<Scene> {
         let Reverse((at, _, scene)) = self.agenda.pop()?;
         let at = at.max(self.now.utc);
         self.now = Moment::new(at, self.now.zone);
@@ -131,7 +131,7 @@ impl<'a> Player<'a> {
 
     /// Plays the whole agenda.
     pub fn play(&mut self) -> Result<(), Failure> {
-        while let Some(scene) = self.next() {
+        while let Some(scene) = self.next_scene() {
             self.play_scene(&scene).map_err(|failure| Failure::fault(format!("{scene:?}: {failure}")))?;
         }
         Ok(())

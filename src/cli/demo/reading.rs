@@ -36,7 +36,7 @@ pub fn condition_code(name: &str) -> String {
 
 /// The value of one test at one age, with scatter.
 pub fn value(player: &mut Player<'_>, place: &Place, test: &str) -> Decimal {
-    let drawn = player.scatter.next();
+    let drawn = player.scatter.value();
     let Some(trend) = player.seed.trend(&place.lot, &place.condition, &place.orientation, test) else {
         return Decimal::ZERO;
     };
@@ -52,14 +52,16 @@ pub fn typed(
     slot: &Slot,
     level: Decimal,
 ) -> Option<String> {
-    let near = |player: &mut Player<'_>, part: Decimal| level + level * part * player.scatter.next();
+    let near = |player: &mut Player<'_>, part: Decimal| level + level * part * player.scatter.value();
     let thousandth = Decimal::new(1, 3);
     let field = slot.key.field.split('@').next().unwrap_or_default();
     let minute = slot.due_minute.unwrap_or_default();
     Some(match (test.kind, field) {
         (TestKind::Ph, "value") => shown(near(player, thousandth), 2),
-        (TestKind::Ph, "temperature_c") => shown(Decimal::from(22) + player.scatter.next() / Decimal::TWO, 1),
-        (_, "temperature_c") => shown(Decimal::from(20) + player.scatter.next() / Decimal::from(5), 1),
+        (TestKind::Ph, "temperature_c") => {
+            shown(Decimal::from(22) + player.scatter.value() / Decimal::TWO, 1)
+        }
+        (_, "temperature_c") => shown(Decimal::from(20) + player.scatter.value() / Decimal::from(5), 1),
         (TestKind::Viscosity, "value") => shown(near(player, thousandth * Decimal::from(12)), 0),
         (_, "torque_percent") => shown(torque(level), 1),
         (_, "rest_minutes") => "30".to_string(),
@@ -77,7 +79,7 @@ pub fn typed(
         (TestKind::Appearance, "clarity") => "1".to_string(),
         (TestKind::Appearance, "caking") => caking(player, place).to_string(),
         (TestKind::Numeric, "weight") => {
-            shown(Decimal::from(5) + player.scatter.next() / Decimal::from(20), 4)
+            shown(Decimal::from(5) + player.scatter.value() / Decimal::from(20), 4)
         }
         (TestKind::Numeric, "volume") => "100.0".to_string(),
         (TestKind::Numeric, "value") => shown(near(player, thousandth * Decimal::from(6)), 2),
@@ -87,7 +89,7 @@ pub fn typed(
 
 /// The concentration that makes the assay's formula give about the wanted content: found × 100 ÷ weight ÷ 40 × 100.
 pub fn found(player: &mut Player<'_>, level: Decimal, weight: Decimal) -> String {
-    let content = level + level * Decimal::new(2, 3) * player.scatter.next();
+    let content = level + level * Decimal::new(2, 3) * player.scatter.value();
     shown(content * weight * Decimal::from(40) / Decimal::from(10_000), 4)
 }
 

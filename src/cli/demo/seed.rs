@@ -159,7 +159,7 @@ impl Scatter {
     }
 
     /// The mean of three draws: more often near zero, as readings are.
-    pub fn next(&mut self) -> Decimal {
+    pub fn value(&mut self) -> Decimal {
         let sum: u64 = (0..3).map(|_| self.draw()).sum();
         let thousandths = i64::try_from(sum * 20_000 / (3 * 2_147_483_646)).unwrap_or(10_000) - 10_000;
         Decimal::new(thousandths, 4)
@@ -201,7 +201,7 @@ mod tests {
     fn scatter_stays_between_its_bounds_and_is_alike_every_time() {
         let draw = || {
             let mut scatter = Scatter::new(7);
-            (0..1000).map(|_| scatter.next()).collect::<Vec<_>>()
+            (0..1000).map(|_| scatter.value()).collect::<Vec<_>>()
         };
         let drawn = draw();
         assert!(drawn.iter().all(|value| value.abs() <= Decimal::ONE));
