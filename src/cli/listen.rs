@@ -21,15 +21,20 @@ const MOST_CONNECTIONS: usize = 512;
 /// After a stop signal, requests in flight have this long to end.
 const GRACE: Duration = Duration::from_secs(10);
 
+/// Whether the address can be listened on: asked before long work that would be in vain.
+pub fn is_free(address: SocketAddr) -> Result<(), Failure> {
+    std::net::TcpListener::bind(address).map(|_| ()).map_err(|error| taken(address, &error))
+}
+
+fn taken(address: SocketAddr, error: &std::io::Error) -> Failure {
+    Failure::Held(format!("The address {address} cannot be used: {error}. Choose another with --listen."))
+}
+
 /// Binds the address, tells it, and serves until Ctrl-C or a stop signal.
 pub fn run(app: Arc<App>, address: SocketAddr, ready: impl FnOnce(SocketAddr)) -> Result<(), Failure> {
     let runtime = tokio::runtime::Builder::new_multi_thread().enable_all().build()?;
     runtime.block_on(async {
-        let listener = TcpListener::bind(address).await.map_err(|error| {
-            Failure::Held(format!(
-                "The address {address} cannot be used: {error}. Choose another with --listen."
-            ))
-        })?;
+        let listener = TcpListener::bind(address).await.map_err(|error| taken(address, &error))?;
         ready(listener.local_addr()?);
         accept(app, listener).await
     })

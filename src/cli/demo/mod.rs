@@ -15,7 +15,7 @@ use std::path::PathBuf;
 use player::{Player, Scene};
 use seed::Seed;
 
-use super::{folder, serve};
+use super::{folder, listen, serve};
 use crate::acts;
 use crate::acts::secret::HashCost;
 use crate::domain::account::NewPerson;
@@ -48,6 +48,7 @@ pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     if !arguments.listen.ip().is_loopback() {
         return Err(Failure::Held("The demo serves only this machine. Listen on 127.0.0.1.".to_string()));
     }
+    listen::is_free(arguments.listen)?;
     clear(&arguments.data)?;
     let now = chrono::Utc::now();
     let mut opened = folder::open(&arguments.data, Durability::Off)?;

@@ -40,7 +40,7 @@ pub fn value(player: &mut Player<'_>, place: &Place, test: &str) -> Decimal {
     let Some(trend) = player.seed.trend(&place.lot, &place.condition, &place.orientation, test) else {
         return Decimal::ZERO;
     };
-    trend.start + trend.per_month * place.months + trend.scatter * drawn
+    trend.at(place.months) + trend.scatter * drawn
 }
 
 /// The text an analyst would type into a slot. `level` is the value of the test drawn once for the sample, so
@@ -135,7 +135,7 @@ fn caking(player: &mut Player<'_>, place: &Place) -> u8 {
     let inversions = player
         .seed
         .trend(&place.lot, &place.condition, &place.orientation, "redispersibility")
-        .map(|trend| trend.start + trend.per_month * place.months)
+        .map(|trend| trend.at(place.months))
         .unwrap_or_default();
     match inversions {
         few if few < Decimal::from(9) => 0,

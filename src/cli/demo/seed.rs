@@ -90,6 +90,18 @@ pub struct TrendRow {
     pub start: Decimal,
     pub per_month: Decimal,
     pub scatter: Decimal,
+    /// From this age on it moves otherwise: a bed that begins to pack.
+    pub from_month: Option<Decimal>,
+    pub then_per_month: Option<Decimal>,
+}
+
+impl TrendRow {
+    /// The value at an age, without scatter.
+    pub fn at(&self, months: Decimal) -> Decimal {
+        let turn = self.from_month.unwrap_or(months).min(months);
+        let then = self.then_per_month.unwrap_or(self.per_month);
+        self.start + self.per_month * turn + then * (months - turn)
+    }
 }
 
 #[derive(Clone, Debug, Deserialize)]
@@ -181,8 +193,10 @@ mod tests {
         let start = |lot, condition, orientation, test| {
             seed.trend(lot, condition, orientation, test).unwrap().per_month.to_string()
         };
-        assert_eq!(start("TW-104-0617", "25/60", "inverted", "sedimentation"), "-0.0085");
-        assert_eq!(start("TW-104-0617", "25/60", "upright", "sedimentation"), "-0.0015");
+        assert_eq!(start("TW-104-0617", "25/60", "inverted", "sedimentation"), "-0.0015");
+        let packing = seed.trend("TW-104-0617", "25/60", "inverted", "sedimentation").unwrap();
+        assert_eq!(packing.at(Decimal::from(9)), "0.9315".parse().unwrap());
+        assert_eq!(packing.at(Decimal::from(12)), "0.8790".parse().unwrap());
         assert_eq!(start("TW-330-0702", "40/75", "upright", "viscosity"), "-470");
         assert_eq!(start("TW-330-0714", "40/75", "upright", "viscosity"), "-150");
         for limit in &seed.limits {
