@@ -67,7 +67,8 @@ pub fn prepare(reader: &Reader<'_>, new: &NewStudy, today: chrono::NaiveDate) ->
         arms,
         today,
     };
-    let plan = study::plan(&content, &needs, fill_ml(&lot), new.started_on);
+    let windows = store::setting::windows(reader)?;
+    let plan = study::plan(&content, &needs, fill_ml(&lot), new.started_on, &windows);
     Ok(Prepared { lot, version, content, facts, plan, warnings })
 }
 

@@ -111,7 +111,7 @@ pub fn sign(
         check(change, &version)?;
         signed.put_under(change, Subject::new(of.kind(), id), &version.canonical())?;
         concerns(change, of, id, version.parent)?;
-        change.tell(format!("version {}, written", version.number));
+        change.tell(format!("version {}, as its author", version.number));
         Ok(())
     })
 }
@@ -136,7 +136,7 @@ pub fn approve(
         check(change, &version)?;
         signed.put_under(change, Subject::new(of.kind(), id), &version.canonical())?;
         concerns(change, of, id, version.parent)?;
-        change.tell(format!("version {}, approved", version.number));
+        change.tell(format!("version {}", version.number));
         Ok(())
     })
 }

@@ -82,7 +82,7 @@ acts! {
 
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
     RecordDistribution, "recorded the distribution of a lot", Roles(&[QaReviewer]);
-    DecideLot, "released or rejected a lot", Roles(&[QaReviewer]);
+    DecideLot, "decided on a lot", Roles(&[QaReviewer]);
     ReceiveSample, "received a sample", Roles(&[Analyst, LabManager, ProductionOperator]);
 
     AddCondition, "added a condition", Roles(&[QaReviewer]);

@@ -10,7 +10,7 @@ use super::protocol::cost::{Cost, Need, cost};
 use super::protocol::{Arm, PlannedAge, ProtocolContent};
 use super::refusal::NamedReason;
 use super::version::VersionState;
-use super::window::{Window, window};
+use super::window::{Defaults, Window, window};
 
 /// The rules a study is evaluated by: kept with it, so that an old study is never judged by newer ones.
 pub const RULE_SET: &str = "ICH Q1A(R2) and Q1E, WHO TRS 1010 annex 10; windows of 2026";
@@ -164,23 +164,29 @@ pub fn plan(
     needs: &Needs,
     fill_ml: Option<Decimal>,
     started_on: NaiveDate,
+    defaults: &Defaults,
 ) -> Vec<PlannedArm> {
-    content.arms.iter().map(|arm| plan_arm(content, arm, needs, fill_ml, started_on)).collect()
+    let ground = Ground { content, needs, fill_ml, started_on, defaults };
+    content.arms.iter().map(|arm| plan_arm(&ground, arm)).collect()
 }
 
-fn plan_arm(
-    content: &ProtocolContent,
-    arm: &Arm,
-    needs: &Needs,
+/// What all arms of a plan share.
+struct Ground<'a> {
+    content: &'a ProtocolContent,
+    needs: &'a Needs,
     fill_ml: Option<Decimal>,
     started_on: NaiveDate,
-) -> PlannedArm {
+    defaults: &'a Defaults,
+}
+
+fn plan_arm(ground: &Ground<'_>, arm: &Arm) -> PlannedArm {
+    let content = ground.content;
     let last = arm.ages.len().saturating_sub(1);
     let pulls: Vec<PlannedPull> = arm
         .ages
         .iter()
         .enumerate()
-        .map(|(place, planned)| plan_pull(content, planned, needs, fill_ml, started_on, place == last))
+        .map(|(place, planned)| plan_pull(ground, planned, place == last))
         .collect();
     let needed = pulls.iter().map(|pull| pull.cost.containers).sum();
     let containers = [
@@ -192,24 +198,17 @@ fn plan_arm(
     PlannedArm { arm: arm.clone(), containers, pulls }
 }
 
-fn plan_pull(
-    content: &ProtocolContent,
-    planned: &PlannedAge,
-    needs: &Needs,
-    fill_ml: Option<Decimal>,
-    started_on: NaiveDate,
-    is_last: bool,
-) -> PlannedPull {
-    let in_order = content.tests.iter().filter(|test| planned.tests.contains(&test.test));
+fn plan_pull(ground: &Ground<'_>, planned: &PlannedAge, is_last: bool) -> PlannedPull {
+    let in_order = ground.content.tests.iter().filter(|test| planned.tests.contains(&test.test));
     let tests: Vec<String> = in_order.map(|test| test.test.clone()).collect();
     let needed: Vec<Need> =
-        needs.iter().filter(|(code, _)| tests.contains(code)).map(|(_, need)| *need).collect();
-    let due_on = planned.age.due_on(started_on);
+        ground.needs.iter().filter(|(code, _)| tests.contains(code)).map(|(_, need)| *need).collect();
+    let due_on = planned.age.due_on(ground.started_on);
     PlannedPull {
         age: planned.age,
         due_on,
-        window: window(planned.age, due_on, planned.window, is_last),
-        cost: cost(&needed, fill_ml),
+        window: window(planned.age, due_on, planned.window, is_last, ground.defaults),
+        cost: cost(&needed, ground.fill_ml),
         test_within_days: needed.iter().map(|need| need.test_within_days).max().unwrap_or(0),
         tests,
         is_last,
@@ -385,7 +384,7 @@ mod tests {
             test_within_days: 7,
         };
         let needs = vec![("redispersibility".to_string(), need(3)), ("ph".to_string(), need(1))];
-        let plan = plan(&content(), &needs, None, day("2026-08-31"));
+        let plan = plan(&content(), &needs, None, day("2026-08-31"), &Defaults::default());
         assert_eq!(plan.iter().map(|arm| arm.pulls.len()).sum::<usize>(), 24);
         assert_eq!(plan.iter().map(PlannedArm::container_count).collect::<Vec<_>>(), [27, 27, 27]);
         let due: Vec<String> = plan[0].pulls.iter().map(|pull| pull.due_on.to_string()).collect();

@@ -116,18 +116,25 @@ pub fn may_approve(state: VersionState, approver: i64, authors: &[i64]) -> Resul
 ///
 /// `speed rpm: 30` and `speed rpm: 20`; a part that one of them lacks is `none` there.
 pub fn differences(first: &str, second: &str) -> (String, String) {
-    let read = |text: &str| serde_json::from_str::<Value>(text).ok();
-    let (Some(one), Some(other)) = (read(first), read(second)) else {
+    let Some(found) = parts_that_differ(first, second) else {
         return (first.to_string(), second.to_string());
     };
-    let mut found = Vec::new();
-    differ(&mut Vec::new(), Some(&one), Some(&other), &mut found);
     if found.is_empty() {
         return ("the same content".to_string(), "the same content".to_string());
     }
     let side =
         |of: fn(&(String, String, String)) -> String| found.iter().map(of).collect::<Vec<_>>().join("; ");
     (side(|(path, one, _)| format!("{path}: {one}")), side(|(path, _, other)| format!("{path}: {other}")))
+}
+
+/// The parts in which two contents differ: the way to the part, what stands in the first, what in the second.
+/// `None` where one of them is no document.
+pub fn parts_that_differ(first: &str, second: &str) -> Option<Vec<(String, String, String)>> {
+    let one: Value = serde_json::from_str(first).ok()?;
+    let other: Value = serde_json::from_str(second).ok()?;
+    let mut found = Vec::new();
+    differ(&mut Vec::new(), Some(&one), Some(&other), &mut found);
+    Some(found)
 }
 
 fn differ(

@@ -6,6 +6,7 @@ use chrono::NaiveDate;
 
 use super::age::Age;
 use super::moment::{date_shown, plus_days};
+use super::setting::WINDOWS;
 
 /// First and last calendar date of the site on which a pull is in its window.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -14,23 +15,53 @@ pub struct Window {
     pub latest_on: NaiveDate,
 }
 
-/// Days allowed before and after the due date by the defaults.
-///
-/// In use up to 3 days: the same day (two hours after, which a calendar date cannot tell); 4 to 28 days: one day
-/// after; up to 2 months: 3 days after; 3 to 12 months: 7 days after; later: 14 days after. Never before.
-pub fn default_days(age: Age) -> (u32, u32) {
-    match age {
-        Age::Days(0..=3) => (0, 0),
-        Age::Days(4..=28) => (0, 1),
-        Age::Days(29..=75) | Age::Months(0..=2) => (0, 3),
-        Age::Days(76..=365) | Age::Months(3..=12) => (0, 7),
-        Age::Days(_) | Age::Months(_) => (0, 14),
+/// The site's default windows: days after the due date for each class of age, young to old.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Defaults {
+    days_after: [u32; 5],
+}
+
+impl Default for Defaults {
+    /// In use up to 3 days: the same day (two hours after, which a calendar date cannot tell); 4 to 28 days: one
+    /// day after; up to 2 months: 3 days after; 3 to 12 months: 7 days after; later: 14 days after.
+    fn default() -> Defaults {
+        Defaults { days_after: WINDOWS.map(|setting| setting.default.try_into().unwrap_or(0)) }
     }
 }
 
-/// The window of a pull. `stated` is the protocol's own; the last point of an arm is never early.
-pub fn window(age: Age, due_on: NaiveDate, stated: Option<(u32, u32)>, is_last: bool) -> Window {
-    let (before, after) = stated.unwrap_or_else(|| default_days(age));
+impl Defaults {
+    /// From the values of [`WINDOWS`] as stored, in its order; what is not stored has its default.
+    pub fn of_stored(stored: [Option<String>; 5]) -> Defaults {
+        let mut days_after = [0; 5];
+        for (place, (setting, text)) in WINDOWS.iter().zip(stored).enumerate() {
+            days_after[place] = setting.value(text.as_deref()).try_into().unwrap_or(0);
+        }
+        Defaults { days_after }
+    }
+
+    /// Days allowed before and after the due date. Never before.
+    pub fn days(&self, age: Age) -> (u32, u32) {
+        let class = match age {
+            Age::Days(0..=3) => 0,
+            Age::Days(4..=28) => 1,
+            Age::Days(29..=75) | Age::Months(0..=2) => 2,
+            Age::Days(76..=365) | Age::Months(3..=12) => 3,
+            Age::Days(_) | Age::Months(_) => 4,
+        };
+        (0, self.days_after[class])
+    }
+}
+
+/// The window of a pull. `stated` is the protocol's own, else the site's default holds; the last point of an arm
+/// is never early.
+pub fn window(
+    age: Age,
+    due_on: NaiveDate,
+    stated: Option<(u32, u32)>,
+    is_last: bool,
+    defaults: &Defaults,
+) -> Window {
+    let (before, after) = stated.unwrap_or_else(|| defaults.days(age));
     let before = if is_last { 0 } else { before };
     Window {
         earliest_on: plus_days(due_on, -i64::from(before)),
@@ -80,8 +111,11 @@ mod tests {
             (Age::Months(60), (0, 14)),
         ];
         for (age, expected) in table {
-            assert_eq!(default_days(age), expected, "{age:?}");
+            assert_eq!(Defaults::default().days(age), expected, "{age:?}");
         }
+        let own = Defaults::of_stored([None, None, Some("5".to_string()), None, None]);
+        assert_eq!(own.days(Age::Months(1)), (0, 5));
+        assert_eq!(own.days(Age::Months(3)), (0, 7));
     }
 
     #[test]
@@ -94,7 +128,7 @@ mod tests {
             (Some((0, 0)), false, "2027-03-03", "2027-03-03", "3 Mar 2027"),
         ];
         for (stated, is_last, earliest, latest, words) in table {
-            let found = window(Age::Months(12), due, stated, is_last);
+            let found = window(Age::Months(12), due, stated, is_last, &Defaults::default());
             assert_eq!(found, Window { earliest_on: day(earliest), latest_on: day(latest) });
             assert_eq!(found.words(), words);
         }

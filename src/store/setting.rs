@@ -4,6 +4,8 @@ use rusqlite::named_params;
 
 use super::door::Change;
 use super::{Answer, Reader};
+use crate::domain::setting::WINDOWS;
+use crate::domain::window::Defaults;
 
 pub fn set(change: &Change<'_>, name: &str, value: &str) -> Answer<()> {
     change.insert(
@@ -11,6 +13,15 @@ pub fn set(change: &Change<'_>, name: &str, value: &str) -> Answer<()> {
         named_params! { ":name": name, ":value": value },
     )?;
     Ok(())
+}
+
+/// The site's default windows that hold now.
+pub fn windows(reader: &Reader<'_>) -> Answer<Defaults> {
+    let mut stored = [const { None }; 5];
+    for (place, setting) in WINDOWS.iter().enumerate() {
+        stored[place] = get(reader, setting.name)?;
+    }
+    Ok(Defaults::of_stored(stored))
 }
 
 pub fn get(reader: &Reader<'_>, name: &str) -> Answer<Option<String>> {

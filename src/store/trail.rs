@@ -8,7 +8,7 @@ use super::{Answer, Reader};
 use crate::domain::act::Act;
 use crate::domain::digest::{Encoder, sha256};
 use crate::domain::reason::Reason;
-use crate::domain::subject::Subject;
+use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
 pub const TECHNICAL_TABLES: [&str; 12] = [
@@ -224,18 +224,74 @@ fn act_line(row: &Row<'_>) -> rusqlite::Result<ActLine> {
     })
 }
 
-/// The history of one record, oldest first.
-pub fn of_subject(reader: &Reader<'_>, subject: Subject) -> Answer<Vec<ActLine>> {
+/// What a record's page shows of its history: the newest acts, oldest of them first.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Recent {
+    pub subject: Subject,
+    pub lines: Vec<ActLine>,
+    /// Older acts than these stand on the page of the record's whole history.
+    pub has_older: bool,
+}
+
+/// The newest acts that a record's page shows; the rest stands on its history page.
+pub const RECENT: i64 = 50;
+
+/// The newest acts of one record, oldest of them first.
+pub fn of_subject(reader: &Reader<'_>, subject: Subject) -> Answer<Recent> {
+    let mut lines = of_subject_before(reader, subject, None, RECENT + 1)?;
+    let has_older = lines.len() as i64 > RECENT;
+    lines.truncate(RECENT as usize);
+    lines.reverse();
+    Ok(Recent { subject, lines, has_older })
+}
+
+/// The acts of one record before an act, newest first, at most `limit`: paging by key.
+pub fn of_subject_before(
+    reader: &Reader<'_>,
+    subject: Subject,
+    before: Option<i64>,
+    limit: i64,
+) -> Answer<Vec<ActLine>> {
     reader.all(
         &format!(
             "select {ACT_COLUMNS}
              from trail_subject t join trail_act a on a.id = t.act join trail_seal s on s.act = a.id
-             where t.kind = :kind and t.subject = :subject
-             order by a.id"
+             where t.kind = :kind and t.subject = :subject and t.act < :before
+             order by t.act desc
+             limit :limit"
         ),
-        named_params! { ":kind": subject.kind.code(), ":subject": subject.id },
+        named_params! {
+            ":kind": subject.kind.code(),
+            ":subject": subject.id,
+            ":before": before.unwrap_or(i64::MAX),
+            ":limit": limit,
+        },
         act_line,
     )
+}
+
+/// How people call a record: its number or code, or where it has neither the number of its row.
+pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
+    let table = subject.kind.code();
+    let column = match subject.kind {
+        Kind::Lot | Kind::Study | Kind::Sample => "number",
+        Kind::Customer
+        | Kind::Product
+        | Kind::Presentation
+        | Kind::Material
+        | Kind::Formulation
+        | Kind::Method
+        | Kind::Specification
+        | Kind::Instrument
+        | Kind::Condition
+        | Kind::Chamber
+        | Kind::Protocol => "code",
+        Kind::Account => "full_name",
+        _ => return Ok(subject.id.to_string()),
+    };
+    // Table and column come from the code, never from a person.
+    let sql = format!("select {column} from {table} where id = :id");
+    reader.one("record with this number", &sql, named_params! { ":id": subject.id }, |row| row.get(0))
 }
 
 /// One act.

@@ -8,10 +8,13 @@ use super::reply::{Outcome, page};
 use super::route::{Route, get};
 use super::show;
 use super::visit::Visit;
+use crate::domain::failure::Failure;
+use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::store::trail::ChangeLine;
 
-pub const ROUTES: &[Route] = &[get("/history", history), get("/history/{act}", act)];
+pub const ROUTES: &[Route] =
+    &[get("/history", history), get("/history/{act}", act), get("/history/of/{kind}/{id}", of_record)];
 
 const PAGE: i64 = 50;
 
@@ -20,19 +23,54 @@ const PAGE: i64 = 50;
 struct HistoryPage {
     shell: Shell,
     lines: Vec<TrailLine>,
-    older: Option<i64>,
+    /// What is under the heading.
+    lead: String,
+    /// Path of the next page.
+    older: Option<String>,
     head: String,
 }
+
+const LEAD: &str =
+    "Every act, newest first. No entry can be changed or removed, also not by the program itself.";
 
 fn history(visit: &Visit) -> Outcome {
     visit.knows_query(&["before"])?;
     let before = visit.query.get("before").and_then(|text| text.parse().ok());
     let (found, head) = visit
         .read(|reader| Ok((store::trail::before(reader, before, PAGE)?, store::trail::head(reader)?)))?;
-    let older = found.last().map(|line| line.act).filter(|act| *act > 1 && found.len() == PAGE as usize);
+    let last = found.last().map(|line| line.act).filter(|act| *act > 1 && found.len() == PAGE as usize);
+    let older = last.map(|act| format!("/history?before={act}"));
     let lines = found.iter().map(|line| trail_line(line, visit.at.zone)).collect();
     let head = head.map(|(act, digest)| format!("{act} · {}", show::digest(&digest))).unwrap_or_default();
-    page(&HistoryPage { shell: Shell::of(visit, "History"), lines, older, head })
+    page(&HistoryPage { shell: Shell::of(visit, "History"), lines, lead: LEAD.to_string(), older, head })
+}
+
+/// The whole history of one record, newest first.
+fn of_record(visit: &Visit) -> Outcome {
+    visit.knows_query(&["before"])?;
+    let kind = Kind::from_code(visit.param("kind")?);
+    let subject = Subject::new(kind.ok_or_else(|| Failure::missing("record"))?, visit.id("id")?);
+    let before = visit.query.get("before").and_then(|text| text.parse().ok());
+    let (mut found, name) = visit.read(|reader| {
+        Ok((
+            store::trail::of_subject_before(reader, subject, before, PAGE + 1)?,
+            store::trail::name_of(reader, subject)?,
+        ))
+    })?;
+    if found.is_empty() {
+        return Err(Failure::missing("history of this record"));
+    }
+    let has_older = found.len() as i64 > PAGE;
+    found.truncate(PAGE as usize);
+    let (code, words) = (subject.kind.code(), subject.kind.words());
+    let last = found.last().map(|line| line.act).filter(|_| has_older);
+    page(&HistoryPage {
+        shell: Shell::of(visit, &format!("History of {words} {name}")).crumb("/history", "History"),
+        lines: found.iter().map(|line| trail_line(line, visit.at.zone)).collect(),
+        lead: format!("Every act that concerns this {words}, newest first."),
+        older: last.map(|act| format!("/history/of/{code}/{}?before={act}", subject.id)),
+        head: String::new(),
+    })
 }
 
 #[derive(Template)]

@@ -7,7 +7,7 @@ use super::show;
 use crate::domain::act::Act;
 use crate::domain::status::Status;
 use crate::store::signature::Signature;
-use crate::store::trail::ActLine;
+use crate::store::trail::{ActLine, Recent};
 
 /// A status as word and shape, with a count inside the words where one is given.
 #[derive(Clone, Debug, Template)]
@@ -52,6 +52,8 @@ pub struct Trail {
     /// What the table is called.
     pub name: String,
     pub lines: Vec<TrailLine>,
+    /// Where the whole history of the record stands, if this is only its newest part.
+    pub whole: Option<String>,
 }
 
 impl askama::filters::HtmlSafe for Trail {}
@@ -71,10 +73,12 @@ pub struct TrailLine {
 }
 
 impl Trail {
-    pub fn of(lines: &[ActLine], zone: Tz) -> Trail {
+    pub fn of(recent: &Recent, zone: Tz) -> Trail {
+        let (kind, id) = (recent.subject.kind.code(), recent.subject.id);
         Trail {
             name: "History".to_string(),
-            lines: lines.iter().map(|line| trail_line(line, zone)).collect(),
+            lines: recent.lines.iter().map(|line| trail_line(line, zone)).collect(),
+            whole: recent.has_older.then(|| format!("/history/of/{kind}/{id}")),
         }
     }
 }

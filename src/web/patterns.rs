@@ -204,7 +204,7 @@ fn trail(theme: &str) -> Trail {
         line(42, "10:20", "Rafe Tolland", "corrected a reading", "was 6.38, is 6.83", "mistyped"),
         line(43, "15:40", "Rafe Tolland", "checked a result", "pH", ""),
     ];
-    Trail { name: format!("History, {theme}"), lines }
+    Trail { name: format!("History, {theme}"), lines, whole: None }
 }
 
 /// Viscosity of an invented lot: a fall, a missed pull, a value below the limit.

@@ -32,6 +32,11 @@ impl Cell {
         Cell::Text(words.into())
     }
 
+    /// A date, a name, a code: it stays on one line.
+    pub fn is_short(&self) -> bool {
+        matches!(self, Cell::Text(words) if words.chars().count() <= 14)
+    }
+
     pub fn number(words: impl Into<String>) -> Cell {
         Cell::Number(words.into())
     }

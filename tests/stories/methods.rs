@@ -169,3 +169,25 @@ fn a_new_version_starts_from_the_newest_and_two_writers_do_not_overwrite_each_ot
     let newest = lab.app.db.read(|reader| store::method::newest_approved(reader, method)).unwrap();
     assert_eq!(newest.unwrap().number, 1, "a draft is not used");
 }
+
+/// Two versions of a method side by side, as formulations show theirs.
+#[test]
+fn two_versions_of_a_method_show_the_fields_that_differ() {
+    let lab = Lab::new();
+    let fields = [("code", "M-014"), ("name", "pH of the whole suspension")];
+    let page = path(&lab.manager().does("/methods/new?kind=ph", "/methods/new", &fields));
+    let sign = format!("{page}/sign");
+    lab.manager().signs(&page, &sign, &[]);
+    lab.person("otis.vane").signs(&page, &sign, &[]);
+    let draft = "/methods/1/draft";
+    let changed = [("reason", "a longer wait at the meter"), ("hands_on_minutes", "25")];
+    let second = path(&lab.manager().does(draft, draft, &changed));
+    let seen = lab.auditor().sees(&second, "Compare with the version before");
+    let compare = seen.links().into_iter().find(|path| path.contains("/compare?")).unwrap();
+    let seen =
+        lab.auditor().sees(&compare, "1 difference between version 1 (approved) and version 2 (draft).");
+    assert!(seen.text().contains("Hands on minutes") && seen.text().contains("25"), "{}", seen.text());
+    assert!(lab.auditor().sees("/methods/1", "Compare the newest two").links().contains(&compare));
+    assert_eq!(lab.auditor().get("/methods/1/compare?old=1").status, 400);
+    assert_eq!(lab.auditor().get("/methods/1/compare?old=1&new=99").status, 404);
+}

@@ -341,3 +341,22 @@ fn reads_rest_and_completes(lab: &Lab, sample: i64, label: &str) {
     }
     supernate::acts::result::complete(db, &actor, test).unwrap();
 }
+
+/// Decision A11: the default windows are the site's setting; a running study keeps what it started with.
+#[test]
+fn the_sites_default_windows_hold_for_studies_that_start_after() {
+    let lab = Lab::new();
+    let first = world::study(&lab, "TW-104-0640", &KINDS);
+    let own = [("window.months-12", "10"), ("reason", "agreed with the customer in writing")];
+    lab.administrator().does("/settings", "/settings", &own);
+    let lot = world::lot(&lab, "TW-104-0641");
+    let second = world::study_of(&lab, lot, &KINDS);
+    let window = |study: i64| world::pull(&lab, study, 1, "6 months").window().unwrap().words();
+    assert_eq!(window(first), "1–8 Jun 2027");
+    assert_eq!(window(second), "1–11 Jun 2027");
+    lab.manager().sees("/protocol-versions/1", "−0/+10 d");
+    let most = [("window.later", "32"), ("reason", "agreed with the customer in writing")];
+    let refused = lab.administrator().submits("/settings", "/settings", &most);
+    assert_eq!(refused.status, 409);
+    assert!(refused.text().contains("32 is outside 0 to 31"), "{}", refused.text());
+}

@@ -1,9 +1,10 @@
 //! The one door: what it lets through, what it writes down, what it refuses.
 
-use crate::support::Lab;
+use crate::support::{Lab, world};
 use supernate::domain::act::Act;
 use supernate::domain::failure::Failure;
 use supernate::domain::reason::Reason;
+use supernate::domain::subject::Kind;
 use supernate::store;
 
 #[test]
@@ -79,4 +80,31 @@ fn every_change_of_an_act_has_its_line_and_secrets_stay_out_of_it() {
     assert_eq!(changes[0].record, "account");
     let fields = changes[0].changes.clone().unwrap();
     assert!(fields.contains("password_hash") && !fields.contains("argon2"), "{fields}");
+}
+
+/// A record's page shows the newest part of a long history, and a page of its own shows all of it.
+#[test]
+fn a_long_history_is_cut_on_the_page_and_whole_on_its_own() {
+    let lab = Lab::new();
+    let lot = world::lot(&lab, "TW-104-0640");
+    let page = format!("/lots/{lot}");
+    assert!(!lab.manager().sees(&page, "Oldest first").text().contains("The whole history"));
+    let actor = lab.actor("maren.oddy");
+    for number in 1..=55 {
+        let happens = lab.app.db.change(&actor, Act::RecordContainer, &Reason::none(), |change| {
+            change.concerns(Kind::Lot, lot)?;
+            change.tell(format!("event {number} of the lot"));
+            Ok(())
+        });
+        happens.unwrap();
+    }
+    let whole = format!("/history/of/lot/{lot}");
+    let cut = lab.manager().sees(&page, "The newest 50, oldest of them first");
+    assert!(cut.links().contains(&whole), "{:?}", cut.links());
+    assert!(!cut.text().contains("event 5 of the lot") && cut.text().contains("event 55 of the lot"));
+    let first = lab.auditor().sees(&whole, "History of lot TW-104-0640");
+    let older = first.links().into_iter().find(|path| path.contains("before=")).unwrap();
+    lab.auditor().sees(&older, "recorded a lot");
+    assert_eq!(lab.auditor().get("/history/of/lot/999").status, 404);
+    assert_eq!(lab.auditor().get("/history/of/nothing/1").status, 404);
 }

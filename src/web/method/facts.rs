@@ -84,6 +84,21 @@ fn done(content: &MethodContent) -> Vec<(String, String)> {
     ]
 }
 
+/// `1 container`, `3 containers`.
+fn replicate_words(count: u32, level: &str) -> String {
+    match count {
+        1 => format!(
+            "1 {}",
+            level.replacen("readings", "reading", 1).replacen("preparations", "preparation", 1).replacen(
+                "containers",
+                "container",
+                1
+            )
+        ),
+        count => format!("{count} {level}"),
+    }
+}
+
 fn days(days: u32) -> String {
     match days {
         0 => "the same day".to_string(),
@@ -98,7 +113,7 @@ fn reported(content: &MethodContent) -> Vec<(String, String)> {
         Level::Preparation => "preparations",
         Level::Container => "containers",
     };
-    let mut facts = vec![fact("Replicates", format!("{} {level}", content.replicates))];
+    let mut facts = vec![fact("Replicates", replicate_words(content.replicates, level))];
     if matches!(content.settings, Settings::Appearance { .. }) {
         facts.push(fact("Reported", "conforms, or the attribute and grade that does not"));
         return facts;

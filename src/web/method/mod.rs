@@ -1,5 +1,6 @@
 //! Methods and their versions: the list, a new method of a kind, drafts, signing.
 
+mod compare;
 pub(super) mod facts;
 mod form;
 mod grid;
@@ -31,6 +32,7 @@ pub const ROUTES: &[Route] = &[
     get("/methods/new", new_page),
     post("/methods/new", &[Act::AddMethod], add),
     get("/methods/{id}", method),
+    get("/methods/{id}/compare", compare::compare),
     get("/methods/{id}/draft", draft_page),
     post("/methods/{id}/draft", &[Act::DraftMethodVersion], draft),
     get("/method-versions/{id}", version),
@@ -163,6 +165,11 @@ fn method(visit: &Visit) -> Outcome {
             format!("/methods/{id}/draft"),
             "Write a new version",
         )
+        .quiet_link_if(
+            found.len() > 1,
+            found.get(1).map_or(String::new(), |before| compare::path(id, before, &found[0])),
+            "Compare the newest two",
+        )
         .table("", version_table(visit, &found, "/method-versions"))
         .trail(Trail::of(&lines, visit.at.zone))
         .show()
@@ -275,8 +282,11 @@ fn version(visit: &Visit) -> Outcome {
 
 fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
     let (method, version) = loaded(visit, id)?;
-    let lines =
-        visit.read(|reader| store::trail::of_subject(reader, Subject::new(Kind::MethodVersion, id)))?;
+    let (lines, all) = visit.read(|reader| {
+        let lines = store::trail::of_subject(reader, Subject::new(Kind::MethodVersion, id))?;
+        Ok((lines, store::version::of_parent(reader, Versioned::Method, version.parent)?))
+    })?;
+    let before = all.iter().find(|other| other.number < version.number);
     let title = format!("{}, version {}", method.code, method.number);
     let mut shell = shell(visit, &title)
         .crumb("/methods", "Methods")
@@ -295,6 +305,11 @@ fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Ou
     let page = Record::new(shell, lead)
         .fact("Why this version", &version.reason)
         .fact("Written by", &version.author_name)
+        .quiet_link_if(
+            before.is_some(),
+            before.map_or(String::new(), |before| compare::path(method.method, before, &version)),
+            "Compare with the version before",
+        )
         .quiet_link_if(may_edit, format!("{path}/edit"), "Rewrite the draft");
     facts::show(page, &method.content)
         .signatures(versions::signatures(visit, Versioned::Method, &version)?)

@@ -17,6 +17,7 @@ use crate::domain::protocol::{Arm, ProtocolContent};
 use crate::domain::study::Needs;
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::version::{VersionState, Versioned};
+use crate::domain::window::Defaults;
 use crate::store;
 use crate::store::Reader;
 use crate::store::protocol::Protocol;
@@ -29,6 +30,8 @@ pub(super) struct Loaded {
     pub content: ProtocolContent,
     pub facts: ProtocolFacts,
     pub needs: Needs,
+    /// The site's default windows that hold now.
+    pub windows: Defaults,
 }
 
 pub(super) fn load(reader: &Reader<'_>, id: i64) -> Result<Loaded, Failure> {
@@ -37,7 +40,8 @@ pub(super) fn load(reader: &Reader<'_>, id: i64) -> Result<Loaded, Failure> {
     let content: ProtocolContent = version.read()?;
     let facts = store::protocol::facts(reader, protocol.presentation, &content)?;
     let needs = store::protocol::needs(reader, &content)?;
-    Ok(Loaded { protocol, version, content, facts, needs })
+    let windows = store::setting::windows(reader)?;
+    Ok(Loaded { protocol, version, content, facts, needs, windows })
 }
 
 /// One arm as a matrix of ages and tests with what each age costs.
@@ -97,7 +101,7 @@ impl Loaded {
             };
             rows.push(AgeView {
                 age: planned.age.words(),
-                window: window_words(arm, at),
+                window: window_words(arm, at, &self.windows),
                 cells: self.content.tests.iter().enumerate().map(cell).collect(),
                 containers: one.containers,
                 minutes: minutes_words(one.minutes),
@@ -109,9 +113,9 @@ impl Loaded {
     }
 }
 
-fn window_words(arm: &Arm, at: usize) -> String {
+fn window_words(arm: &Arm, at: usize, windows: &Defaults) -> String {
     let planned = &arm.ages[at];
-    let (before, after) = planned.window.unwrap_or_else(|| crate::domain::window::default_days(planned.age));
+    let (before, after) = planned.window.unwrap_or_else(|| windows.days(planned.age));
     let before = if at + 1 == arm.ages.len() { 0 } else { before };
     format!("−{before}/+{after} d")
 }

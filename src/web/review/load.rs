@@ -14,7 +14,7 @@ use crate::store::review::decision::AnswerLine;
 use crate::store::review::facts::{Head, ReviewSample};
 use crate::store::review::page::{CheckLine, ReadingLine, ResultLine};
 use crate::store::signature::Signature;
-use crate::store::trail::ActLine;
+use crate::store::trail::Recent;
 use crate::store::{Answer, Reader};
 
 /// Everything about one sample.
@@ -33,7 +33,7 @@ pub struct Loaded {
     pub points: Vec<SeriesPoint>,
     pub clarities: Vec<(i64, u8)>,
     pub investigations: Vec<(i64, i64)>,
-    pub trail: Vec<ActLine>,
+    pub trail: Recent,
 }
 
 pub fn load(reader: &Reader<'_>, id: i64) -> Answer<Loaded> {
