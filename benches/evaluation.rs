@@ -1,7 +1,7 @@
 //! Cost of one evaluation: a group of 6 lots of 8 pulls, and the trend rules for 10 history lots of 8 pulls.
 //!
-//! `cargo bench --bench evaluation`. The same three models by explicit design matrices stand beside it, in the
-//! same run.
+//! `cargo bench --bench evaluation`. The same three models by explicit design matrices stand beside it, in
+//! the same run.
 
 use std::hint::black_box;
 

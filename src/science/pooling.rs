@@ -70,10 +70,6 @@ pub struct Pooling {
     pub slopes: Option<FTest>,
     /// Do intercepts differ, given one slope? Error term: the common-slope model. This one decides.
     pub intercepts: Option<FTest>,
-    /// The same with the error term of separate lines; shown, never decides.
-    pub intercepts_full_error: Option<FTest>,
-    /// Slopes and intercepts together; shown, never decides.
-    pub joint: Option<FTest>,
     /// The chosen model.
     pub model: Model,
     /// The level of both tests.
@@ -81,6 +77,8 @@ pub struct Pooling {
     /// The sum of squares below which residuals count as rounding.
     pub floor: f64,
     own_sse: Vec<f64>,
+    between_slopes: f64,
+    between_lots: f64,
 }
 
 impl Pooling {
@@ -116,12 +114,12 @@ impl Pooling {
             common_line_residuals: Residuals { sse: 0.0, df: 0 },
             slopes: None,
             intercepts: None,
-            intercepts_full_error: None,
-            joint: None,
             model: Model::CommonLine,
             alpha,
             lots: sums,
             own_sse,
+            between_slopes: 0.0,
+            between_lots: 0.0,
         };
         pooling.compare();
         if pooling.common_line_residuals.sse.is_finite() { Ok(pooling) } else { Err(NoLine::NotFinite) }
@@ -156,9 +154,8 @@ impl Pooling {
         if k > 1 {
             self.slopes = test(between_slopes, slope, full, full);
             self.intercepts = test(between_lots, line, slope, slope);
-            self.intercepts_full_error = test(between_lots, line, slope, full);
-            self.joint = test(between_slopes + between_lots, line, full, full);
         }
+        (self.between_slopes, self.between_lots) = (between_slopes, between_lots);
         (self.separate_residuals, self.common_slope_residuals, self.common_line_residuals) =
             (full, slope, line);
         self.model = self.choose(self.intercepts);
@@ -179,9 +176,24 @@ impl Pooling {
         }
     }
 
+    /// Do intercepts differ, with the error term of separate lines? Shown, never decides.
+    pub fn intercepts_full_error(&self) -> Option<FTest> {
+        let (line, slope) = (self.common_line_residuals, self.common_slope_residuals);
+        let several = self.lots.len() > 1;
+        several.then(|| test(self.between_lots, line, slope, self.separate_residuals))?
+    }
+
+    /// Slopes and intercepts together; shown, never decides.
+    pub fn joint(&self) -> Option<FTest> {
+        let full = self.separate_residuals;
+        let several = self.lots.len() > 1;
+        several
+            .then(|| test(self.between_slopes + self.between_lots, self.common_line_residuals, full, full))?
+    }
+
     /// The model that the other error term would have chosen.
     pub fn model_with_full_error(&self) -> Model {
-        self.choose(self.intercepts_full_error)
+        self.choose(self.intercepts_full_error())
     }
 
     /// Whether slopes were compared at all.

@@ -105,18 +105,28 @@ pub struct ShelfLife {
 /// The margin g(x) = c + βd − √(K(1/n + d²/Sxx)), d = x − x̄, is concave, so it is positive on one interval
 /// whose far end is the answer: the larger root of the squared equation on the branch c + βd ≥ 0.
 pub fn crossing(line: &MeanLine, limit: f64, side: Side, t: f64) -> Outcome {
+    meets(line, limit, side, t, 1.0 / line.n as f64)
+}
+
+/// Where the prediction limit for one future result meets a limit: the bound for one container, where the
+/// limit holds for each. The margin carries the variance of the result itself, 1 + 1/n in place of 1/n.
+pub fn prediction_crossing(line: &MeanLine, limit: f64, side: Side, t: f64) -> Outcome {
+    meets(line, limit, side, t, 1.0 + 1.0 / line.n as f64)
+}
+
+/// The shared form: g(x) = c + βd − √(K(`at_centre` + d²/Sxx)).
+fn meets(line: &MeanLine, limit: f64, side: Side, t: f64, at_centre: f64) -> Outcome {
     let sign = if side == Side::Lower { 1.0 } else { -1.0 };
     let (c, beta, k) = (sign * (line.mean_y - limit), sign * line.slope, t * t * line.variance);
-    let n = line.n as f64;
-    let margin = |d: f64| c + beta * d - (k * (1.0 / n + d * d / line.sxx)).sqrt();
+    let margin = |d: f64| c + beta * d - (k * (at_centre + d * d / line.sxx)).sqrt();
     if margin(-line.mean_x) < 0.0 {
         return Outcome::FailsAtZero;
     }
     if beta - (k / line.sxx).sqrt() >= 0.0 {
         return Outcome::NoCrossing;
     }
-    let (a, b, end) = (beta * beta - k / line.sxx, beta * c, c * c - k / n);
-    let discriminant = k * (c * c / line.sxx + beta * beta / n - k / (n * line.sxx));
+    let (a, b, end) = (beta * beta - k / line.sxx, beta * c, c * c - k * at_centre);
+    let discriminant = k * (c * c / line.sxx + at_centre * (beta * beta - k / line.sxx));
     let d = if a == 0.0 { -end / (2.0 * b) } else { far_root([a, b, end], c, beta, discriminant) };
     let age = line.mean_x + d;
     if age.is_finite() { Outcome::Crosses(age.max(0.0)) } else { Outcome::NoCrossing }

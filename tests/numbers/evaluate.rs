@@ -71,15 +71,13 @@ fn reference_sets_through_a_file() {
         assert_eq!(got["months_floor"].as_u64(), want["months_floor"].as_u64(), "{}", set.name);
         match want["months"].as_f64() {
             Some(months) => {
-                let tolerance = if set.name == "big_offset_numerics" { 2e-8 } else { 1e-8 };
-                agree(got["months"].as_f64().unwrap(), months, tolerance, &set.name);
+                agree(got["months"].as_f64().unwrap(), months, 1e-8, &set.name);
             }
             None => assert!(got["months"].is_null(), "{}", set.name),
         }
         let p = |key: &str| series["pooling"][key]["p"].as_f64();
         if let (Some(got), Some(want)) = (p("slopes"), expected["ancova"]["slopes"]["p"].as_f64()) {
-            let tolerance = if set.name == "big_offset_numerics" { 2e-8 } else { 1e-8 };
-            agree(got, want, tolerance, &format!("{} p slopes", set.name));
+            agree(got, want, 1e-8, &format!("{} p slopes", set.name));
         }
     }
 }

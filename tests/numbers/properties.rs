@@ -5,7 +5,9 @@ use supernate::science::distribution::student::Student;
 use supernate::science::interval::{Forecast, next_value};
 use supernate::science::pooling::{Model, Pooling};
 use supernate::science::regression::{Line, Point};
-use supernate::science::shelf_life::{Direction, Outcome, Side, Specification, crossing, of_model};
+use supernate::science::shelf_life::{
+    Direction, Outcome, Side, Specification, crossing, of_model, prediction_crossing,
+};
 use supernate::science::trend::context::{self, RULES};
 use supernate::science::trend::{Levels, early_warning, lot_trend, single_result};
 use supernate::science::warning_rules::facts::{Lot, Pull, Viscosity};
@@ -56,7 +58,7 @@ fn close(a: f64, b: f64, tolerance: f64) -> Result<(), TestCaseError> {
 
 /// Two analyses say the same: model, probabilities, statuses and roots (times `ages`).
 fn same(a: &Pooling, b: &Pooling, limits: (f64, f64), ages: f64) -> Result<(), TestCaseError> {
-    for (a, b) in [(a.slopes, b.slopes), (a.intercepts, b.intercepts), (a.joint, b.joint)] {
+    for (a, b) in [(a.slopes, b.slopes), (a.intercepts, b.intercepts), (a.joint(), b.joint())] {
         prop_assert_eq!(a.is_some(), b.is_some());
         if let (Some(a), Some(b)) = (a, b) {
             prop_assert!((a.p - b.p).abs() <= 1e-8, "{} {}", a.p, b.p);
@@ -127,6 +129,24 @@ proptest! {
     }
 
     #[test]
+    fn one_container_binds_before_the_mean(lots in lots(), limit in 85.0..95.0_f64) {
+        let pooling = pool(&lots);
+        let Some(line) = pooling.mean_line(pooling.model, 0) else { return Ok(()) };
+        let t = Student::new(line.df as f64).unwrap().upper_quantile(0.05).unwrap();
+        let bound = |x: f64| line.at(x) - t * (line.variance * (1.0 + line.leverage(x))).sqrt();
+        let mean = crossing(&line, limit, Side::Lower, t);
+        match prediction_crossing(&line, limit, Side::Lower, t) {
+            Outcome::Crosses(x) => {
+                prop_assert!((bound(x) - limit).abs() <= 1e-7 * limit, "{} {limit}", bound(x));
+                prop_assert!(mean.months().is_none_or(|months| x <= months * (1.0 + 1e-9)));
+            }
+            Outcome::NoCrossing => prop_assert_eq!(mean, Outcome::NoCrossing),
+            Outcome::FailsAtZero => prop_assert!(bound(0.0) < limit),
+            other => prop_assert!(false, "{other:?}"),
+        }
+    }
+
+    #[test]
     fn pooling_identical_lots_narrows_the_limits(lots in lots(), copies in 2..5_usize, x in 0.0..48.0_f64) {
         let twins: Vec<Vec<Point>> = vec![lots[0].clone(); copies];
         let pooling = pool(&twins);
@@ -176,7 +196,9 @@ proptest! {
 
     #[test]
     fn no_rule_lets_anything_but_numbers_out(
-        xs in proptest::collection::vec(odd(), 12), ys in proptest::collection::vec(odd(), 12), x in odd(), y in odd()
+        xs in proptest::collection::vec(odd(), 12),
+        ys in proptest::collection::vec(odd(), 12),
+        (x, y) in (odd(), odd()),
     ) {
         let points: Vec<Point> = xs.iter().zip(&ys).map(|(&x, &y)| Point { x, y }).collect();
         let history: Vec<&[Point]> = points.chunks(3).collect();
@@ -220,7 +242,8 @@ proptest! {
             .map(|&(rate, stress)| flow::Reading { rate, stress, torque_percent: None })
             .collect();
         if let Ok(curve) = flow::fit(&readings) {
-            prop_assert!(curve.fits.iter().all(|fit| fit.r_squared.is_finite() && fit.consistency.is_finite()));
+            let finite = |fit: &flow::Fit| fit.r_squared.is_finite() && fit.consistency.is_finite();
+            prop_assert!(curve.fits.iter().all(finite));
         }
         let heights: Vec<settling_curve::Reading> =
             pairs.iter().map(|&(time, height)| settling_curve::Reading { time, height }).collect();

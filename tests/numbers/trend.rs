@@ -184,6 +184,21 @@ fn rule_a_is_one_rule() {
 }
 
 #[test]
+fn a_bound_is_judged_only_where_it_stands_out() {
+    let lots: Vec<Vec<Point>> = (0..4).map(|i| line(100.0 + i as f64, -0.1, &NOISE[i])).collect();
+    let own = line(101.0, -0.1, &[0.1, -0.2, 0.3]);
+    let found = forecast(&slices(&lots), &own, 9.0).unwrap();
+    let limits = found.limits(0.01).unwrap();
+    let levels = Levels::default();
+    let high = found.judge_bound(limits.upper + 0.1, true, levels).unwrap();
+    assert_eq!(high.verdict, Verdict::Action);
+    assert_eq!(found.judge_bound(limits.centre, true, levels), Err(Needs::ExactValues));
+    assert_eq!(found.judge_bound(limits.upper + 0.1, false, levels), Err(Needs::ExactValues));
+    let low = found.judge_bound(limits.lower - 0.1, false, levels).unwrap();
+    assert_eq!(low.verdict, Verdict::Action);
+}
+
+#[test]
 fn a_gross_error_in_the_history_is_flagged() {
     let mut lots: Vec<Vec<Point>> = (0..4).map(|i| line(100.0 + i as f64, -0.1, &NOISE[i])).collect();
     assert!(history_screen::screen(&slices(&lots), 0.01).is_empty());

@@ -191,7 +191,7 @@ fn pooling(found: &Assessment) -> PoolingJson {
 }
 
 fn intercepts(pooling: &Pooling, test: FTest) -> InterceptsJson {
-    let p_full_mse = pooling.intercepts_full_error.map(|full| full.p);
+    let p_full_mse = pooling.intercepts_full_error().map(|full| full.p);
     InterceptsJson { f: test.f, df1: test.df1, df2: test.df2, p: test.p, p_full_mse }
 }
 

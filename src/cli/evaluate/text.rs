@@ -118,7 +118,7 @@ fn pooling(found: &Assessment) -> String {
     };
     let mut text = test("Slopes", pooling.slopes);
     text.push_str(&test("Intercepts", pooling.intercepts));
-    text.push_str(&test("Intercepts, error of separate lines (not used)", pooling.intercepts_full_error));
+    text.push_str(&test("Intercepts, error of separate lines (not used)", pooling.intercepts_full_error()));
     let why = match (found.series.lots.len(), pooling.tested()) {
         (1, _) => "one lot".into(),
         (_, false) => "not testable, so not pooled".into(),
@@ -200,7 +200,7 @@ fn standing_out(found: &Assessment, row: &TrendRow) -> String {
         && judged.judgement.verdict > Verdict::InTrend
     {
         text.push_str(&format!(
-            "    {} {place}: {} outside {} to {} (rule {}, p {}, ν = {})\n",
+            "    {} {place}: {} outside {} to {} (rule {}, p {}, ν = {}{})\n",
             word(judged.judgement.verdict),
             number(row.value),
             number(judged.limits.lower),
@@ -208,6 +208,7 @@ fn standing_out(found: &Assessment, row: &TrendRow) -> String {
             json::result_rule(judged.judgement.rule),
             probability(judged.judgement.p),
             number(judged.judgement.df),
+            if judged.judgement.weak { ", weak: little can be found here" } else { "" },
         ));
     }
     if let Ok(trend) = &row.lot_trend
@@ -224,8 +225,12 @@ fn standing_out(found: &Assessment, row: &TrendRow) -> String {
         let how = if warning.state == State::VeryLikely { "very likely" } else { "likely" };
         let month = warning.month.map(|month| format!(", from about month {month}")).unwrap_or_default();
         text.push_str(&format!(
-            "    {place}: {how} out before expiry{month} (probability {:.2})\n",
-            warning.probability
+            "    {place}: {how} out before expiry{month} (probability {})\n",
+            if warning.probability > 0.99 {
+                "above 0.99".into()
+            } else {
+                format!("{:.2}", warning.probability)
+            }
         ));
     }
     text

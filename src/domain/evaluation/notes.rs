@@ -22,8 +22,8 @@ pub(super) fn first(series: &Series, choices: &Choices) -> Vec<String> {
             }
             Replicates::Independent => {
                 format!(
-                    "replicates count as independent results in the lines: {results} results of {pulls} pulls; \
-                     the trend judges pull means"
+                    "replicates count as independent results in the lines: {results} results of {pulls} \
+                     pulls; the trend judges pull means"
                 )
             }
         });

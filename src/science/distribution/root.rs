@@ -17,7 +17,9 @@ pub(super) fn falling(start: f64, at: impl Fn(f64) -> (f64, f64)) -> f64 {
         }
         let newton = u - value / slope;
         let next = step(u, newton, low, high);
-        if (next - u).abs() <= 4.0 * f64::EPSILON * u.abs().max(1.0) {
+        let moved = (next - u).abs();
+        // Newton doubles the digits: after a step this small the next would be below rounding.
+        if (next == newton && moved <= 1e-9) || moved <= 4.0 * f64::EPSILON * u.abs().max(1.0) {
             return next;
         }
         u = next;

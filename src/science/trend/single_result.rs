@@ -127,6 +127,21 @@ impl Forecast {
         Ok(Judgement { verdict, rule: self.rule, p, df: self.mixture.df(), weak: self.weak })
     }
 
+    /// Judges a value known only to be above or below a bound. It stands out where the bound already does;
+    /// else nothing can be said.
+    pub fn judge_bound(&self, bound: f64, above: bool, levels: Levels) -> Result<Judgement, Needs> {
+        let judged = self.judge(bound, levels)?;
+        let tails = self.mixture.tails(bound).ok_or(Needs::FiniteNumbers)?;
+        let beyond = if above { tails.upper } else { tails.lower };
+        // The value lies further out than its bound, so its probability is at most this.
+        let verdict = levels.verdict(2.0 * beyond);
+        if verdict == Verdict::InTrend {
+            Err(Needs::ExactValues)
+        } else {
+            Ok(Judgement { verdict, ..judged })
+        }
+    }
+
     /// Median and the limits outside which a result has a two-sided probability below `level`.
     pub fn limits(&self, level: f64) -> Option<Limits> {
         Some(Limits {
