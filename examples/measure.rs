@@ -2,6 +2,9 @@
 //!
 //! `cargo run --release --example measure -- SMALL [LARGE]`, folders made by `make_data_set`. Entries are written into
 //! the small folder: it is used up. Medians of alternating rounds; times are of this machine, ratios count.
+//!
+//! `measure -- steps FOLDER WHAT TIMES` does one thing so many times and nothing else, for counting instructions:
+//! `examples/instructions.sh` takes the difference of two run lengths. WHAT is `counts`, `entry`, or a page's address.
 
 use std::fs::File;
 use std::io::{Seek, SeekFrom, Write};
@@ -31,7 +34,13 @@ const ORIGIN: &str = "http://127.0.0.1:8351";
 const PASSWORD: &str = "quiet mill pond herons";
 
 fn main() -> Result<(), Failure> {
-    let folders: Vec<PathBuf> = std::env::args().skip(1).map(PathBuf::from).collect();
+    let arguments: Vec<String> = std::env::args().skip(1).collect();
+    if let [mode, path, what, times] = arguments.as_slice()
+        && mode == "steps"
+    {
+        return steps(Path::new(path), what, times.parse().unwrap_or(1));
+    }
+    let folders: Vec<PathBuf> = arguments.iter().map(PathBuf::from).collect();
     let Some(small) = folders.first() else {
         return Err(Failure::Held("Name a data set, or a small and a large one.".to_string()));
     };
@@ -39,6 +48,10 @@ fn main() -> Result<(), Failure> {
     told("G12 start, ms, at most 2 x", &starts);
     let weeks: Vec<f64> = folders.iter().map(|path| page_ms(path, "/week")).collect::<Result<_, _>>()?;
     told("G1 week page live, ms, at most 1.10 x", &weeks);
+    for page in ["/review", "/checks", "/lots", "/sign-in"] {
+        let sides: Vec<f64> = folders.iter().map(|path| page_ms(path, page)).collect::<Result<_, _>>()?;
+        told(&format!("{page}, ms"), &sides);
+    }
     let counts: Vec<f64> = folders.iter().map(|path| count_us(path)).collect::<Result<_, _>>()?;
     told("G3 counts by state, us, at most 1.2 x", &counts);
     println!("resident after these pages: {} MiB (G12: at most 64)", resident_mib());
@@ -73,46 +86,90 @@ fn start_ms(path: &Path) -> Result<f64, Failure> {
     rounds(|| timed(|| folder::open(path, Durability::Full)))
 }
 
-/// A signed-in request through the router, in-process.
-fn page_ms(path: &Path, page: &str) -> Result<f64, Failure> {
-    let opened = folder::open(path, Durability::Full)?;
-    let site = opened.site.clone().ok_or_else(|| Failure::missing("site"))?;
-    let app = Arc::new(App {
-        db: opened.db,
-        secrets: opened.secrets,
-        site,
-        clock: Arc::new(Utc::now),
-        guard: None,
-        folder: path.to_path_buf(),
-        public_origin: ORIGIN.to_string(),
-        demo_people: Vec::new(),
-    });
-    let router = router(app);
-    let runtime = tokio::runtime::Builder::new_multi_thread().worker_threads(1).enable_all().build()?;
-    let send = |request: Request<Body>| {
-        let router = router.clone();
-        runtime.block_on(async move {
+/// One thing, `times` times.
+fn steps(path: &Path, what: &str, times: usize) -> Result<(), Failure> {
+    match what {
+        "counts" => {
+            let opened = folder::open(path, Durability::Full)?;
+            let today = Utc::now().date_naive();
+            (0..times).try_for_each(|_| opened.db.read(|reader| counted(reader, today)).map(drop))
+        }
+        "entry" => {
+            let opened = folder::open(path, Durability::Full)?;
+            let entries = Entries::into(&opened.db)?;
+            (0..times).try_for_each(|_| entries.one())
+        }
+        page => {
+            let visitor = Visitor::of(path)?;
+            (0..times).try_for_each(|_| visitor.opens(page).map(drop))
+        }
+    }
+}
+
+/// A signed-in person who opens pages through the router, in-process.
+struct Visitor {
+    router: axum::Router,
+    runtime: tokio::runtime::Runtime,
+    session: String,
+}
+
+impl Visitor {
+    fn of(path: &Path) -> Result<Visitor, Failure> {
+        let opened = folder::open(path, Durability::Full)?;
+        let site = opened.site.clone().ok_or_else(|| Failure::missing("site"))?;
+        let app = Arc::new(App {
+            db: opened.db,
+            secrets: opened.secrets,
+            site,
+            clock: Arc::new(Utc::now),
+            guard: None,
+            folder: path.to_path_buf(),
+            public_origin: ORIGIN.to_string(),
+            demo_people: Vec::new(),
+        });
+        let runtime = tokio::runtime::Builder::new_multi_thread().worker_threads(1).enable_all().build()?;
+        let mut visitor = Visitor { router: router(app), runtime, session: String::new() };
+        let sign_in = Request::post("/sign-in")
+            .header("sec-fetch-site", "same-origin")
+            .header(header::CONTENT_TYPE, "application/x-www-form-urlencoded")
+            .body(Body::from(format!("user_name=maren.oddy&password={}&next=", PASSWORD.replace(' ', "+"))))
+            .map_err(Failure::fault)?;
+        let (signed_in, _) = visitor.sends(sign_in)?;
+        let cookies =
+            signed_in.headers.get_all(header::SET_COOKIE).iter().filter_map(|value| value.to_str().ok());
+        let session =
+            cookies.filter_map(|text| text.split(';').next()).find(|text| text.starts_with("__Host-sid="));
+        visitor.session =
+            session.ok_or_else(|| Failure::missing("session of the measuring person"))?.to_string();
+        Ok(visitor)
+    }
+
+    fn sends(&self, request: Request<Body>) -> Result<(axum::http::response::Parts, usize), Failure> {
+        let router = self.router.clone();
+        self.runtime.block_on(async move {
             let response = router.oneshot(request).await.map_err(Failure::fault)?;
             let (parts, body) = response.into_parts();
             let size = axum::body::to_bytes(body, 64 << 20).await.map_err(Failure::fault)?.len();
-            Ok::<_, Failure>((parts, size))
+            Ok((parts, size))
         })
-    };
-    let sign_in = Request::post("/sign-in")
-        .header("sec-fetch-site", "same-origin")
-        .header(header::CONTENT_TYPE, "application/x-www-form-urlencoded")
-        .body(Body::from(format!("user_name=maren.oddy&password={}&next=", PASSWORD.replace(' ', "+"))))
-        .map_err(Failure::fault)?;
-    let (signed_in, _) = send(sign_in)?;
-    let cookie = signed_in.headers.get_all(header::SET_COOKIE).iter().filter_map(|value| value.to_str().ok());
-    let session =
-        cookie.filter_map(|text| text.split(';').next()).find(|text| text.starts_with("__Host-sid="));
-    let session = session.ok_or_else(|| Failure::missing("session of the measuring person"))?.to_string();
-    let ask =
-        || Request::get(page).header(header::COOKIE, &session).body(Body::empty()).map_err(Failure::fault);
-    let (first, size) = send(ask()?)?;
-    println!("{page} of {}: status {}, {size} bytes", path.display(), first.status.as_u16());
-    rounds(|| timed(|| send(ask()?)))
+    }
+
+    /// Status and size of a page.
+    fn opens(&self, page: &str) -> Result<(u16, usize), Failure> {
+        let request = Request::get(page)
+            .header(header::COOKIE, &self.session)
+            .body(Body::empty())
+            .map_err(Failure::fault)?;
+        let (parts, size) = self.sends(request)?;
+        Ok((parts.status.as_u16(), size))
+    }
+}
+
+fn page_ms(path: &Path, page: &str) -> Result<f64, Failure> {
+    let visitor = Visitor::of(path)?;
+    let (status, size) = visitor.opens(page)?;
+    println!("{page} of {}: status {status}, {size} bytes", path.display());
+    rounds(|| timed(|| visitor.opens(page)))
 }
 
 /// The counts of the week page.
@@ -127,19 +184,33 @@ fn count_us(path: &Path) -> Result<f64, Failure> {
     Ok(rounds(|| timed(|| opened.db.read(|reader| counted(reader, today))))? * 1e3)
 }
 
+/// Entries at the bench: three readings in one act.
+struct Entries<'a> {
+    db: &'a Db,
+    test: i64,
+    replicate: AtomicU64,
+}
+
+impl Entries<'_> {
+    fn into(db: &Db) -> Result<Entries<'_>, Failure> {
+        Ok(Entries { db, test: db.read(bulk::first_open_test)?, replicate: AtomicU64::new(1) })
+    }
+
+    fn one(&self) -> Result<(), Failure> {
+        let actor = Actor::console(Moment::new(Utc::now(), chrono_tz::Europe::London));
+        let first = self.replicate.fetch_add(3, Ordering::Relaxed) as i64;
+        self.db.change(&actor, Act::RecordReadings, &Reason::none(), |change| {
+            bulk::three_readings(change, self.test, first)
+        })
+    }
+}
+
 /// G4, G5 and G14 on one folder.
 fn entries(path: &Path) -> Result<(), Failure> {
     let opened = folder::open(path, Durability::Full)?;
     let db = &opened.db;
-    let test = db.read(bulk::first_open_test)?;
-    let replicate = AtomicU64::new(1);
-    let entry = || -> Result<(), Failure> {
-        let actor = Actor::console(Moment::new(Utc::now(), chrono_tz::Europe::London));
-        let first = replicate.fetch_add(3, Ordering::Relaxed) as i64;
-        db.change(&actor, Act::RecordReadings, &Reason::none(), |change| {
-            bulk::three_readings(change, test, first)
-        })
-    };
+    let made = Entries::into(db)?;
+    let entry = || made.one();
     let mut file = File::create(path.join("bare-write"))?;
     let mut bare = || -> Result<(), Failure> {
         file.seek(SeekFrom::Start(0))?;
@@ -148,7 +219,7 @@ fn entries(path: &Path) -> Result<(), Failure> {
     };
     let (mut entered, mut written) = (Vec::new(), Vec::new());
     for _ in 0..200 {
-        entered.push(timed(entry)?);
+        entered.push(timed(&entry)?);
         written.push(timed(&mut bare)?);
     }
     let (entered, written) = (median(entered), median(written));

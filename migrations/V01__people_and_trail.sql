@@ -1,5 +1,6 @@
 -- The trail. trail_act: one row per human act. trail_change: one row per changed record, written by generated
--- triggers. trail_seal: the chain over both. All three are insert-only, also for the program's own connection.
+-- triggers. trail_seal: the chain over both. All three are insert-only, also for the program's own connection; only the
+-- detail of the act that is being written is filled in before its seal closes it.
 
 create table trail_act (
     id integer primary key,
@@ -46,6 +47,12 @@ create table trail_subject (
 ) strict, without rowid;
 
 create trigger guard_trail_act_update before update on trail_act
+when old.id is not current_act() or old.detail is not null
+    or exists (select 1 from trail_seal where act = old.id)
+    or (new.id, new.at, new.offset_minutes, new.zone, new.account, new.user_name, new.full_name, new.role, new.act,
+        new.reason, new.session, new.address, new.outcome)
+    is not (old.id, old.at, old.offset_minutes, old.zone, old.account, old.user_name, old.full_name, old.role, old.act,
+        old.reason, old.session, old.address, old.outcome)
 begin select raise(abort, 'the trail is never changed'); end;
 create trigger guard_trail_act_delete before delete on trail_act
 begin select raise(abort, 'the trail is never changed'); end;

@@ -208,6 +208,8 @@ create table stop_override (
     signature integer not null references signature (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
+create index stop_override_by_account on stop_override (account, method_version) where account is not null;
+create index stop_override_by_instrument on stop_override (instrument) where instrument is not null;
 
 -- One imported file. What it brought is marked "imported, not observed here".
 create table import (

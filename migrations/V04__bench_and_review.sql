@@ -213,3 +213,48 @@ begin
         from method_version where id = new.method_version), 0)
     where pull = (select pull from sample where id = new.sample);
 end;
+
+-- Samples that still ask for something: taken or come in, or changed since, and no reviewer's signature after it. Kept by
+-- triggers so that the lists of the bench and of the reviewer never walk the signed years behind them; derived and
+-- not itself a record.
+create table open_sample (
+    sample integer primary key references sample (id)
+) strict;
+
+create trigger open_sample_received after insert on sample
+when new.pull is null
+begin
+    insert or ignore into open_sample (sample) values (new.id);
+end;
+create trigger open_sample_pulled after insert on pull_event
+when new.kind = 'pulled'
+begin
+    insert or ignore into open_sample (sample)
+    select s.id from pull p join sample s on s.pull = p.id where p.id = new.pull and p.imported is null;
+end;
+create trigger open_sample_result after insert on result
+when new.imported is null
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+create trigger open_sample_check after insert on result_check
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+create trigger open_sample_reading after insert on reading
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+create trigger open_sample_answer after insert on exception_answer
+begin
+    insert or ignore into open_sample (sample) values (new.sample);
+end;
+create trigger open_sample_loss after insert on stage_loss
+begin
+    insert or ignore into open_sample (sample) values (new.sample);
+end;
+create trigger open_sample_signed after insert on signature
+when new.kind = 'sample' and new.meaning = 'review'
+begin
+    delete from open_sample where sample = new.subject;
+end;

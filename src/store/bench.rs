@@ -202,10 +202,10 @@ pub fn of_test(reader: &Reader<'_>, sample_test: i64) -> Answer<BenchSample> {
 /// The containers taken for a pull, by number.
 fn containers(reader: &Reader<'_>, pull: i64) -> Answer<Vec<Container>> {
     reader.all(
-        "select c.id, c.label
-         from container c
-         where exists (select 1 from container_event e
-             where e.container = c.id and e.pull = :pull and e.kind in ('pulled', 'partial pull', 're-pull'))
+        "select distinct c.id, c.label
+         from container_event e
+         cross join container c on c.id = e.container
+         where e.pull = :pull and e.kind in ('pulled', 'partial pull', 're-pull')
          order by c.number",
         named_params! { ":pull": pull },
         |row| Ok(Container { id: row.get(0)?, label: row.get(1)? }),

@@ -183,9 +183,11 @@ impl Db {
         if outcome == "done" {
             submission::claim(&change)?;
         }
+        // The act's row comes first: were it last, SQLite would search every table for the rows that wait for it.
+        trail::insert_act(&change, act, role, reason, outcome)?;
         let answer = body(&mut change)?;
         let detail = change.detail.take();
-        trail::insert_act(&change, act, role, reason, detail.as_deref(), outcome)?;
+        trail::insert_detail(&change, detail.as_deref())?;
         trail::seal(&change)?;
         transaction.commit()?;
         if let Some(submission) = &actor.submission {

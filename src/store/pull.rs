@@ -73,8 +73,8 @@ const PROGRESS: &str = "asked as materialized (
     asked_test as materialized (
         select s.pull, t.id, m.minutes, m.needs_check,
             (select max(version) from result where sample_test = t.id) as version
-        from chosen k
-        cross join sample s on s.pull = k.pull
+        from chosen
+        cross join sample s on s.pull = chosen.pull
         cross join sample_test t on t.sample = s.id
         cross join asked m on m.id = t.method_version),
     known_test as (
@@ -103,14 +103,14 @@ const COLUMNS: &str = "select p.id, s.id, s.number, y.id, y.number, a.id, a.posi
         (select count(*) from container k where k.study_arm = a.id
              and not exists (select 1 from container_event where container = k.id)),
         g.account, (select full_name from account where id = g.account),
-        coalesce(t.minutes, 0), p.test_within_days, p.imported is not null, e.kind, e.happened_on,
+        coalesce(w.minutes, 0), p.test_within_days, p.imported is not null, e.kind, e.happened_on,
         y.started_on, p.due_on, p.earliest_on, p.latest_on, p.is_last, p.containers_needed,
-        coalesce(t.tests, 0), coalesce(t.started, 0), coalesce(t.complete, 0), coalesce(t.checked, 0),
-        max(coalesce(t.sent_back, 0),
-            coalesce(v.decision = 'send back' and v.act > coalesce(t.newest, 0), 0)),
-        coalesce(t.is_out, 0),
+        coalesce(w.tests, 0), coalesce(w.started, 0), coalesce(w.complete, 0), coalesce(w.checked, 0),
+        max(coalesce(w.sent_back, 0),
+            coalesce(v.decision = 'send back' and v.act > coalesce(w.newest, 0), 0)),
+        coalesce(w.is_out, 0),
         coalesce((select max(act) from signature
-            where kind = 'sample' and subject = s.id and meaning = 'review'), -1) > coalesce(t.newest, 0),
+            where kind = 'sample' and subject = s.id and meaning = 'review'), -1) > coalesce(w.newest, 0),
         p.uuid
     from chosen
     cross join pull p on p.id = chosen.pull
@@ -125,7 +125,7 @@ const COLUMNS: &str = "select p.id, s.id, s.number, y.id, y.number, a.id, a.posi
     left join pull_event e on e.id = (select max(id) from pull_event where pull = p.id)
     left join pull_assignment g on g.id = (select max(id) from pull_assignment where pull = p.id)
     left join review_decision v on v.id = (select max(id) from review_decision where sample = s.id)
-    left join progress t on t.pull = p.id";
+    left join progress w on w.pull = p.id";
 
 fn from_row(row: &Row<'_>) -> rusqlite::Result<Pull> {
     Ok(Pull {

@@ -127,8 +127,9 @@ pub fn open_methods(reader: &Reader<'_>, account: i64, today: chrono::NaiveDate)
         "select v.id, m.code, m.name, count(*),
              exists (select 1 from qualification q where q.account = :account and q.method_version = v.id
                  and :today between q.starts_on and q.ends_on)
-         from sample s
-         join sample_test t on t.sample = s.id
+         from open_sample o
+         cross join sample s on s.id = o.sample
+         cross join sample_test t on t.sample = s.id
          join method_version v on v.id = t.method_version
          join method m on m.id = v.method
          where v.imported is null
@@ -154,8 +155,9 @@ pub fn open_methods(reader: &Reader<'_>, account: i64, today: chrono::NaiveDate)
 pub fn open_tests(reader: &Reader<'_>, method_version: i64) -> Answer<Vec<(i64, i64)>> {
     reader.all(
         "select s.id, t.id
-         from sample_test t
-         join sample s on s.id = t.sample
+         from open_sample o
+         cross join sample s on s.id = o.sample
+         cross join sample_test t on t.sample = s.id
          left join pull p on p.id = s.pull
          where t.method_version = :version
              and (s.pull is null or coalesce((select e.kind from pull_event e where e.pull = s.pull

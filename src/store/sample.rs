@@ -33,7 +33,8 @@ pub fn at_bench(reader: &Reader<'_>) -> Answer<Vec<SampleLine>> {
                   order by k.id desc limit 1), '') <> 'sent back'
                  and r.version = (select max(version) from result where sample_test = t.id))),
              (select g.account from pull_assignment g where g.pull = p.id order by g.id desc limit 1)
-         from sample s
+         from open_sample o
+         cross join sample s on s.id = o.sample
          join lot l on l.id = s.lot
          join sample_test t on t.sample = s.id
          left join pull p on p.id = s.pull

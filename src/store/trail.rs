@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 12] = [
+pub const TECHNICAL_TABLES: [&str; 13] = [
     "trail_act",
     "trail_change",
     "trail_seal",
@@ -24,6 +24,7 @@ pub const TECHNICAL_TABLES: [&str; 12] = [
     "counter",
     "refinery_schema_history",
     "open_pull",
+    "open_sample",
 ];
 
 /// Trailed tables whose rows may be updated: accounts and codes, and versions until they are signed.
@@ -73,19 +74,19 @@ pub(in crate::store) fn next_act(reader: &Reader<'_>) -> Answer<i64> {
     reader.one("act", "select coalesce(max(id), 0) + 1 from trail_act", [], |row| row.get(0))
 }
 
+/// The row of the act being written, without its detail.
 pub(in crate::store) fn insert_act(
     change: &Change<'_>,
     act: Act,
     role: Option<&str>,
     reason: &Reason,
-    detail: Option<&str>,
     outcome: &str,
 ) -> Answer<()> {
     let actor = change.actor();
     change.insert(
-        "insert into trail_act (id, at, offset_minutes, zone, account, user_name, full_name, role, act, detail,
+        "insert into trail_act (id, at, offset_minutes, zone, account, user_name, full_name, role, act,
              reason, session, address, outcome)
-         values (:id, :at, :offset, :zone, :account, :user_name, :full_name, :role, :act, :detail,
+         values (:id, :at, :offset, :zone, :account, :user_name, :full_name, :role, :act,
              :reason, :session, :address, :outcome)",
         named_params! {
             ":id": change.act(),
@@ -97,12 +98,21 @@ pub(in crate::store) fn insert_act(
             ":full_name": actor.full_name,
             ":role": role,
             ":act": act.code(),
-            ":detail": detail,
             ":reason": reason.text(),
             ":session": actor.session,
             ":address": actor.address,
             ":outcome": outcome,
         },
+    )?;
+    Ok(())
+}
+
+/// What was done, known only when it is done; the row is closed by its seal.
+pub(in crate::store) fn insert_detail(change: &Change<'_>, detail: Option<&str>) -> Answer<()> {
+    let Some(detail) = detail else { return Ok(()) };
+    change.execute(
+        "update trail_act set detail = :detail where id = :act",
+        named_params! { ":detail": detail, ":act": change.act() },
     )?;
     Ok(())
 }
@@ -350,12 +360,14 @@ pub fn changes_of(reader: &Reader<'_>, act: i64) -> Answer<Vec<ChangeLine>> {
 
 /// The instant of the newest act, to notice a clock that was set back.
 pub fn newest_at(reader: &Reader<'_>) -> Answer<Option<String>> {
-    reader.maybe("select at from trail_act order by id desc limit 1", [], |row| row.get(0))
+    reader.maybe("select at from trail_act where id = (select max(id) from trail_act)", [], |row| row.get(0))
 }
 
 /// The newest act and its seal: the head of the chain.
 pub fn head(reader: &Reader<'_>) -> Answer<Option<(i64, String)>> {
-    reader.maybe("select act, lower(hex(digest)) from trail_seal order by act desc limit 1", [], |row| {
-        Ok((row.get(0)?, row.get(1)?))
-    })
+    reader.maybe(
+        "select act, lower(hex(digest)) from trail_seal where act = (select max(act) from trail_seal)",
+        [],
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
 }

@@ -81,13 +81,11 @@ const SEARCHED: &str = "Searched: the numbers of lots, studies and samples, the 
 fn find(visit: &Visit) -> Outcome {
     visit.knows_query(&["q"])?;
     let typed: String = visit.query.get("q").unwrap_or_default().trim().chars().take(200).collect();
-    let (exact, groups) = visit.read(|reader| {
-        let exact = store::find::exact(reader, &typed)?;
-        Ok((exact, store::find::holding(reader, &typed, MOST)?))
-    })?;
+    let exact = visit.read(|reader| store::find::exact(reader, &typed))?;
     if let [(found, hit)] = &exact[..] {
         return see(path(*found, hit));
     }
+    let groups = visit.read(|reader| store::find::holding(reader, &typed, MOST))?;
     let mut shell = Shell::of(visit, "Search");
     shell.searched = typed.clone();
     let count: usize = groups.iter().map(|(_, hits)| hits.len().min(MOST)).sum();

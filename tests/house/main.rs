@@ -8,6 +8,7 @@ mod support;
 mod arrows;
 mod contrast;
 mod coverage;
+mod plans;
 mod schema;
 mod sizes;
 mod templates;

@@ -74,6 +74,10 @@ CREATE INDEX specification_by_presentation on specification (presentation);
 
 CREATE INDEX stage_loss_by_sample on stage_loss (sample);
 
+CREATE INDEX stop_override_by_account on stop_override (account, method_version) where account is not null;
+
+CREATE INDEX stop_override_by_instrument on stop_override (instrument) where instrument is not null;
+
 CREATE INDEX study_by_lot on study (lot);
 
 CREATE INDEX trail_change_update on trail_change (record, row, act) where kind = 'update';
@@ -368,6 +372,10 @@ CREATE TABLE open_pull (
     latest_on text not null,                -- the last day to take it, then the last day to test it
     minutes integer not null default 0,     -- at the bench, from the methods of its tests
     account integer references account (id) -- who has it
+) strict;
+
+CREATE TABLE open_sample (
+    sample integer primary key references sample (id)
 ) strict;
 
 CREATE TABLE photo_mark (
@@ -797,6 +805,12 @@ CREATE TRIGGER guard_trail_act_delete before delete on trail_act
 begin select raise(abort, 'the trail is never changed'); end;
 
 CREATE TRIGGER guard_trail_act_update before update on trail_act
+when old.id is not current_act() or old.detail is not null
+    or exists (select 1 from trail_seal where act = old.id)
+    or (new.id, new.at, new.offset_minutes, new.zone, new.account, new.user_name, new.full_name, new.role, new.act,
+        new.reason, new.session, new.address, new.outcome)
+    is not (old.id, old.at, old.offset_minutes, old.zone, old.account, old.user_name, old.full_name, old.role, old.act,
+        old.reason, old.session, old.address, old.outcome)
 begin select raise(abort, 'the trail is never changed'); end;
 
 CREATE TRIGGER guard_trail_change_delete before delete on trail_change
@@ -863,4 +877,49 @@ begin
                     or (select verdict from result_check where sample_test = o.id and version =
                             (select max(version) from result where sample_test = o.id)
                         order by id desc limit 1) = 'sent back'));
+end;
+
+CREATE TRIGGER open_sample_answer after insert on exception_answer
+begin
+    insert or ignore into open_sample (sample) values (new.sample);
+end;
+
+CREATE TRIGGER open_sample_check after insert on result_check
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+
+CREATE TRIGGER open_sample_loss after insert on stage_loss
+begin
+    insert or ignore into open_sample (sample) values (new.sample);
+end;
+
+CREATE TRIGGER open_sample_pulled after insert on pull_event
+when new.kind = 'pulled'
+begin
+    insert or ignore into open_sample (sample)
+    select s.id from pull p join sample s on s.pull = p.id where p.id = new.pull and p.imported is null;
+end;
+
+CREATE TRIGGER open_sample_reading after insert on reading
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+
+CREATE TRIGGER open_sample_received after insert on sample
+when new.pull is null
+begin
+    insert or ignore into open_sample (sample) values (new.id);
+end;
+
+CREATE TRIGGER open_sample_result after insert on result
+when new.imported is null
+begin
+    insert or ignore into open_sample (sample) select sample from sample_test where id = new.sample_test;
+end;
+
+CREATE TRIGGER open_sample_signed after insert on signature
+when new.kind = 'sample' and new.meaning = 'review'
+begin
+    delete from open_sample where sample = new.subject;
 end;

@@ -28,7 +28,7 @@ macro_rules! of_family {
             "with recursive family (id) as (
                  select :lot
                  union
-                 select l.bulk_lot from lot l join family f on f.id = l.id where l.bulk_lot is not null
+                 select l.bulk_lot from lot l join family on family.id = l.id where l.bulk_lot is not null
              ) ",
             $sql
         )

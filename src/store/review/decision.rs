@@ -79,7 +79,9 @@ pub struct Agreed {
 pub fn agreed_by(reader: &Reader<'_>, account: i64) -> Answer<Vec<Agreed>> {
     reader.all(
         "select d.sample, d.content_digest, a.at
-         from review_decision d join trail_act a on a.id = d.act
+         from open_sample o
+         cross join review_decision d on d.sample = o.sample
+         join trail_act a on a.id = d.act
          where d.account = :account and d.decision = 'agree'
          and not exists (
              select 1 from review_decision later

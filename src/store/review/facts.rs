@@ -59,44 +59,33 @@ pub struct ReviewSample {
     pub facts: SampleFacts,
 }
 
-/// Samples that have a result and no review signature yet, or that changed after it.
-const OPEN: &str = "
-    select s.id
-    from sample s
-    where not exists (
-        select 1 from signature g where g.kind = 'sample' and g.subject = s.id and g.meaning = 'review')
-    and exists (
-        select 1 from sample_test t join result r on r.sample_test = t.id
-        where t.sample = s.id and r.imported is null)
-    union
-    select t.sample
-    from result r join sample_test t on t.id = r.sample_test
-    where r.version > 1 and r.imported is null
-    union
-    select t.sample
-    from result_check k join sample_test t on t.id = k.sample_test
-    where k.verdict = 'sent back'";
-
-/// Numbers of the samples whose review may be open. The facts tell which of them are.
+/// Numbers of the samples whose review may be open: with a result, and not signed since. The facts tell which of
+/// them are.
 pub fn open_ids(reader: &Reader<'_>) -> Answer<Vec<i64>> {
-    reader.all(OPEN, [], |row| row.get(0))
+    reader.all(
+        "select o.sample
+         from open_sample o
+         where exists (
+             select 1 from sample_test t join result r on r.sample_test = t.id
+             where t.sample = o.sample and r.imported is null)
+         order by o.sample",
+        [],
+        |row| row.get(0),
+    )
 }
 
 /// Samples that have a test waiting for its check.
 pub fn ids_to_check(reader: &Reader<'_>) -> Answer<Vec<i64>> {
     reader.all(
-        &format!(
-            "with open as ({OPEN})
-         select distinct t.sample
-         from open
-         join sample_test t on t.sample = open.id
+        "select distinct t.sample
+         from open_sample o
+         cross join sample_test t on t.sample = o.sample
          join method_version v on v.id = t.method_version
          join result r on r.sample_test = t.id
          where json_extract(v.content, '$.needs_check') = 1 and r.imported is null
          and not exists (select 1 from result_check k where k.sample_test = t.id and k.version = r.version)
          and not exists (select 1 from result later
-             where later.sample_test = t.id and later.version > r.version)"
-        ),
+             where later.sample_test = t.id and later.version > r.version)",
         [],
         |row| row.get(0),
     )
