@@ -5,7 +5,10 @@ use std::net::{TcpListener, TcpStream};
 use std::process::{Child, Command, Stdio};
 use std::time::{Duration, Instant};
 
-use crate::support::{PASSWORD, Scratch, form_body, fresh_folder};
+use supernate::domain::sample::Purpose;
+
+use crate::support::samples::Bench;
+use crate::support::{Lab, PASSWORD, Scratch, form_body};
 
 const ENTRIES: usize = 100;
 const KILLS: usize = 5;
@@ -48,8 +51,15 @@ impl Drop for Server {
     }
 }
 
-/// A signed-in person at a port.
+/// One box of a test: its page and its name.
 #[derive(Clone)]
+struct Place {
+    test: i64,
+    label: String,
+    name: String,
+}
+
+/// A signed-in analyst at a port.
 struct Visitor {
     port: u16,
     cookie: String,
@@ -58,26 +68,28 @@ struct Visitor {
 
 impl Visitor {
     fn sign_in(port: u16) -> Visitor {
-        let body = form_body(&[("user_name", "nell.farrow"), ("password", PASSWORD), ("next", "")]);
+        let body = form_body(&[("user_name", "rafe.tolland"), ("password", PASSWORD), ("next", "")]);
         let (status, answer) = send(port, "POST", "/sign-in", "", &body).expect("an answer to sign-in");
         assert_eq!(status, 303, "{answer}");
         let line = answer.lines().find_map(|line| line.strip_prefix("set-cookie: __Host-sid=")).unwrap();
         let cookie = format!("__Host-sid={}", line.split(';').next().unwrap());
-        let (_, page) = send(port, "GET", "/settings/clock", &cookie, "").expect("the form");
+        let (_, page) = send(port, "GET", "/me", &cookie, "").expect("a page with a form");
         let start = page.find("name=\"form_token\" value=\"").expect("a form token") + 25;
         let form_token = page[start..].split('"').next().unwrap().to_string();
         Visitor { port, cookie, form_token }
     }
 
-    /// Records one entry under its own submission key; whether it was acknowledged.
-    fn records(&self, number: usize) -> bool {
+    /// Records one reading under its own submission key; whether it was acknowledged.
+    fn records(&self, number: usize, place: &Place) -> bool {
         let body = form_body(&[
             ("form_token", self.form_token.as_str()),
-            ("submission", &format!("entry-{number:04}-of-this-story")),
-            ("reason", &format!("entry {number:04} of this story")),
+            ("submission", &format!("reading-{number:04}-of-this-story")),
+            ("version", "0"),
+            ("label", &place.label),
+            (&place.name, "100.1"),
         ]);
-        send(self.port, "POST", "/settings/clock", &self.cookie, &body)
-            .is_some_and(|(status, _)| status == 303)
+        let path = format!("/tests/{}", place.test);
+        send(self.port, "POST", &path, &self.cookie, &body).is_some_and(|(status, _)| status == 303)
     }
 }
 
@@ -97,49 +109,76 @@ fn send(port: u16, method: &str, path: &str, cookie: &str, body: &str) -> Option
     Some((status, answer))
 }
 
-/// Fault test F1 in small: kill -9 while 100 entries are posted, restart, post them all again.
+/// A folder with twenty-five samples of two tests of two replicates, and its hundred boxes.
+///
+/// Made at the computer's own time, because the program as a process of its own has no other clock.
+fn folder_with_boxes() -> (Scratch, Vec<Place>) {
+    let lab = Lab::new();
+    lab.clock(&chrono::Utc::now().to_rfc3339());
+    let bench = Bench::new(&lab);
+    let lot = bench.lot("TW-104-0700");
+    let mut places = Vec::new();
+    for _ in 0..ENTRIES / 4 {
+        let sample = bench.receives(lot, Purpose::Release, &["assay", "density"]);
+        let found = bench.sample(sample);
+        for test in &found.tests {
+            for slot in found.slots(test) {
+                let name = slot.key.name();
+                places.push(Place { test: test.id, label: found.number.clone(), name });
+            }
+        }
+    }
+    lab.app.db.settle().unwrap();
+    let Lab { folder, .. } = lab;
+    (folder, places)
+}
+
+/// Fault test F1 in small: kill -9 while 100 readings are posted, restart, post them all again.
 #[test]
 fn killed_while_recording_nothing_acknowledged_is_lost_and_nothing_is_double() {
-    let folder = fresh_folder();
+    let (folder, places) = folder_with_boxes();
+    assert_eq!(places.len(), ENTRIES);
     let mut acknowledged = Vec::new();
     for round in 0..KILLS {
         let mut server = Server::start(&folder);
         let visitor = Visitor::sign_in(server.port);
         let share = ENTRIES / KILLS;
-        let range = round * share..(round + 1) * share;
-        let poster =
-            std::thread::spawn(move || range.map(|number| visitor.records(number)).collect::<Vec<_>>());
-        std::thread::sleep(Duration::from_millis(5 + 9 * round as u64));
+        let mine: Vec<(usize, Place)> =
+            places.iter().cloned().enumerate().skip(round * share).take(share).collect();
+        let poster = std::thread::spawn(move || {
+            mine.iter().map(|(number, place)| visitor.records(*number, place)).collect::<Vec<_>>()
+        });
+        std::thread::sleep(Duration::from_millis(10 + 20 * round as u64));
         server.kill();
         acknowledged.extend(poster.join().unwrap());
     }
     assert!(acknowledged.iter().any(|done| !done), "no kill hit the work");
-    let kept = reasons(&folder);
-    for number in (0..ENTRIES).filter(|number| acknowledged[*number]) {
-        assert!(
-            kept.contains(&format!("entry {number:04} of this story")),
-            "entry {number} was acknowledged, then lost"
-        );
+    let kept = recorded(&folder);
+    for (place, _) in places.iter().zip(&acknowledged).filter(|(_, done)| **done) {
+        let found = kept.iter().filter(|(test, name)| *test == place.test && *name == place.name).count();
+        assert_eq!(found, 1, "{} of test {} was acknowledged", place.name, place.test);
     }
     let server = Server::start(&folder);
     let visitor = Visitor::sign_in(server.port);
-    for number in 0..ENTRIES {
-        assert!(visitor.records(number), "entry {number} was not taken the second time");
+    for (number, place) in places.iter().enumerate() {
+        assert!(visitor.records(number, place), "reading {number} was not taken the second time");
     }
     drop(server);
-    let mut all = reasons(&folder);
+    let mut all = recorded(&folder);
     all.sort();
-    let expected: Vec<String> =
-        (0..ENTRIES).map(|number| format!("entry {number:04} of this story")).collect();
+    let mut expected: Vec<(i64, String)> =
+        places.iter().map(|place| (place.test, place.name.clone())).collect();
+    expected.sort();
     assert_eq!(all, expected);
     let verdict =
         Command::new(env!("CARGO_BIN_EXE_supernate")).arg("verify").arg(&folder.0).output().unwrap();
     assert!(verdict.status.success(), "{}", String::from_utf8_lossy(&verdict.stdout));
 }
 
-/// The reasons of all entries of this story that stand in the history.
-fn reasons(folder: &Scratch) -> Vec<String> {
+/// Test and box of every reading in the file.
+fn recorded(folder: &Scratch) -> Vec<(i64, String)> {
     let file = rusqlite::Connection::open(folder.0.join("supernate.sqlite")).unwrap();
-    let mut statement = file.prepare("select reason from trail_act where act = 'ConfirmClock'").unwrap();
-    statement.query_map([], |row| row.get(0)).unwrap().map(Result::unwrap).collect()
+    let mut statement =
+        file.prepare("select sample_test, 'reading.0.' || replicate || '.' || field from reading").unwrap();
+    statement.query_map([], |row| Ok((row.get(0)?, row.get(1)?))).unwrap().map(Result::unwrap).collect()
 }

@@ -79,7 +79,7 @@ impl<'a> Bench<'a> {
             account: self.lab.actor(user_name).account,
             method_version,
             starts_on: NaiveDate::from_ymd_opt(2026, 1, 1).unwrap(),
-            ends_on: NaiveDate::from_ymd_opt(2029, 12, 31).unwrap(),
+            ends_on: supernate::domain::moment::plus_days(self.lab.now().date(), 1100),
             reference: "training record 12".to_string(),
         };
         acts::qualification::add(&self.lab.app.db, &self.lab.actor("maren.oddy"), &new).unwrap();
