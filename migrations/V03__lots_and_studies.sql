@@ -82,6 +82,17 @@ create table study (
 ) strict;
 create index study_by_lot on study (lot);
 
+-- A newer approved version of the protocol, for the pulls still to be taken. The newest row counts.
+create table study_amendment (
+    id integer primary key,
+    study integer not null references study (id),
+    protocol_version integer not null references protocol_version (id),
+    specification_version integer not null references specification_version (id),
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+create index study_amendment_by_study on study_amendment (study);
+
 create table study_arm (
     id integer primary key,
     study integer not null references study (id),
@@ -131,6 +142,7 @@ create table pull (
     test_within_days integer,
     containers_needed integer not null,
     is_last integer not null check (is_last in (0, 1)),
+    supersedes integer unique references pull (id),     -- planned in its place by an amendment
     imported integer references import (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;

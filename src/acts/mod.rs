@@ -1,6 +1,7 @@
 //! What people do, one function per act: load, decide, store. No SQL here, no HTTP, no rule.
 
 pub mod account;
+pub mod amendment;
 pub mod attachment;
 pub mod backup;
 pub mod chamber;

@@ -105,10 +105,32 @@ pub fn start(db: &Db, actor: &Actor, new: &NewStudy) -> Result<i64, Failure> {
     })
 }
 
-struct Made<'a> {
-    study: &'a str,
-    lot: i64,
-    content: &'a ProtocolContent,
+/// What the pulls of a study share.
+pub(super) struct Made<'a> {
+    pub study: &'a str,
+    pub lot: i64,
+    pub content: &'a ProtocolContent,
+}
+
+/// Inserts one pull with its number, its sample and its tests.
+pub(super) fn insert_pull(
+    change: &Change<'_>,
+    made: &Made<'_>,
+    place: usize,
+    arm: i64,
+    pull: &PlannedPull,
+    supersedes: Option<i64>,
+) -> Result<i64, Failure> {
+    let tests: Vec<&PlannedTest> =
+        made.content.tests.iter().filter(|test| pull.tests.contains(&test.test)).collect();
+    let sample = NewPullSample {
+        number: &study::pull_number(made.study, place),
+        lot: made.lot,
+        specification_version: made.content.specification_version,
+        tests: &tests,
+        supersedes,
+    };
+    store::study::insert_pull(change, arm, pull, &sample)
 }
 
 /// Inserts pulls numbered by their due dates, after the `first` that are there already.
@@ -120,16 +142,7 @@ fn insert_pulls(
 ) -> Result<(), Failure> {
     pulls.sort_by_key(|(arm, pull)| (pull.due_on, *arm));
     for (place, (arm, pull)) in (first + 1..).zip(pulls) {
-        let tests: Vec<&PlannedTest> =
-            made.content.tests.iter().filter(|test| pull.tests.contains(&test.test)).collect();
-        let number = study::pull_number(made.study, place);
-        let sample = NewPullSample {
-            number: &number,
-            lot: made.lot,
-            specification_version: made.content.specification_version,
-            tests: &tests,
-        };
-        store::study::insert_pull(change, arm, pull, &sample)?;
+        insert_pull(change, made, place, arm, pull, None)?;
     }
     Ok(())
 }

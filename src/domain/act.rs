@@ -90,6 +90,7 @@ acts! {
     DraftProtocolVersion, "wrote a protocol version", Roles(&[LabManager]);
     ApproveProtocolVersion, "approved a protocol version", Roles(&[LabManager, QaReviewer]);
     StartStudy, "started a study", Roles(&[LabManager]);
+    AmendStudy, "amended a study", Roles(&[LabManager]);
     TriggerArm, "triggered a contingent arm", Roles(&[LabManager, QaReviewer]);
     RecordContainer, "recorded a container", Roles(&[Analyst, LabManager]);
     AssignPull, "assigned a pull", Roles(&[LabManager]);

@@ -4,6 +4,7 @@ pub mod account;
 pub mod act;
 pub mod actor;
 pub mod age;
+pub mod amendment;
 pub mod attachment;
 pub mod chamber;
 pub mod check;

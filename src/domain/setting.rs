@@ -36,7 +36,7 @@ pub const BENCH_IDLE_MINUTES: Setting = Setting {
 };
 
 const WINDOW_HINT: &str =
-    "Whole days. A protocol may state its own; a running study keeps what it started with.";
+    "Whole days. A protocol may state its own; a running study keeps what it has until it is amended.";
 
 /// A default window: days after the due date; never before it (decision A11, common practice).
 const fn window(name: &'static str, label: &'static str, default: i64) -> Setting {

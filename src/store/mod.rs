@@ -1,6 +1,7 @@
 //! The only room that speaks SQL: one writer behind the one door, a few read-only connections.
 
 pub mod account;
+pub mod amendment;
 pub mod attachment;
 pub mod bench;
 pub mod bulk;

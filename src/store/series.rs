@@ -83,7 +83,9 @@ pub fn arms_of_study(reader: &Reader<'_>, study: i64) -> Answer<Vec<(ArmWords, V
          from study s
          join study_arm a on a.study = s.id
          join condition c on c.id = a.condition
-         left join specification_version v on v.id = s.specification_version
+         left join specification_version v on v.id = coalesce(
+             (select m.specification_version from study_amendment m where m.study = s.id order by m.id desc limit 1),
+             s.specification_version)
          where s.id = :study
          order by a.position",
         named_params! { ":study": study },

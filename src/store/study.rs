@@ -19,6 +19,7 @@ pub struct Study {
     pub lot_number: String,
     pub product_words: String,
     pub container_word: String,
+    /// The version it follows: of its newest amendment, else the one it started on.
     pub protocol_version: Option<i64>,
     pub protocol_words: Option<String>,
     pub specification_version: Option<i64>,
@@ -33,15 +34,19 @@ pub struct Study {
 }
 
 const SELECT: &str = "select y.id, y.number, l.id, l.number, d.code || ' ' || d.name || ', ' || p.pack,
-        p.container_word, y.protocol_version,
+        p.container_word, coalesce(m.protocol_version, y.protocol_version),
         (select r.code || ' version ' || v.number
-         from protocol_version v join protocol r on r.id = v.protocol where v.id = y.protocol_version),
-        y.specification_version, y.programme, y.started_on, y.rule_set, y.imported is not null,
+         from protocol_version v join protocol r on r.id = v.protocol
+         where v.id = coalesce(m.protocol_version, y.protocol_version)),
+        coalesce(m.specification_version, y.specification_version),
+        y.programme, y.started_on, y.rule_set, y.imported is not null,
         (select count(*) from study_arm where study = y.id),
-        (select count(*) from study_arm a join pull q on q.study_arm = a.id where a.study = y.id),
+        (select count(*) from study_arm a join pull q on q.study_arm = a.id
+         where a.study = y.id and not exists (select 1 from pull later where later.supersedes = q.id)),
         (select count(*) from study_arm a join pull q on q.study_arm = a.id join open_pull o on o.pull = q.id
          where a.study = y.id)
     from study y
+    left join study_amendment m on m.id = (select max(id) from study_amendment where study = y.id)
     join lot l on l.id = y.lot
     join presentation p on p.id = l.presentation
     join product d on d.id = p.product";
@@ -221,9 +226,9 @@ pub fn insert_pull(
     };
     let id = change.insert(
         "insert into pull (uuid, study_arm, age_months, age_days, age_text, due_on, earliest_on, latest_on,
-             test_within_days, containers_needed, is_last)
+             test_within_days, containers_needed, is_last, supersedes)
          values (:uuid, :arm, :months, :days, :age_text, :due_on, :earliest_on, :latest_on, :test_within,
-             :containers, :is_last)",
+             :containers, :is_last, :supersedes)",
         named_params! {
             ":uuid": new_uuid(),
             ":arm": arm,
@@ -236,6 +241,7 @@ pub fn insert_pull(
             ":test_within": pull.test_within_days,
             ":containers": pull.cost.containers,
             ":is_last": pull.is_last,
+            ":supersedes": sample.supersedes,
         },
     )?;
     insert_sample(change, id, sample)?;
@@ -249,6 +255,8 @@ pub struct NewPullSample<'a> {
     pub specification_version: i64,
     /// In bench order.
     pub tests: &'a [&'a PlannedTest],
+    /// The pull in whose place this one is planned.
+    pub supersedes: Option<i64>,
 }
 
 fn insert_sample(change: &Change<'_>, pull: i64, new: &NewPullSample<'_>) -> Answer<()> {

@@ -1,6 +1,7 @@
 //! Pages: a request becomes a [`visit::Visit`], a handler answers with a [`reply::Reply`], a failure has its page.
 
 pub mod account;
+pub mod amendment;
 pub mod app;
 pub mod attachment;
 pub mod bench;

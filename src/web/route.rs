@@ -81,6 +81,7 @@ pub fn all() -> Vec<Route> {
         super::chamber::ROUTES,
         super::protocol::ROUTES,
         super::study::ROUTES,
+        super::amendment::ROUTES,
         super::container::ROUTES,
         super::pull::ROUTES,
         super::week::ROUTES,

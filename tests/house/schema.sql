@@ -78,6 +78,8 @@ CREATE INDEX stop_override_by_account on stop_override (account, method_version)
 
 CREATE INDEX stop_override_by_instrument on stop_override (instrument) where instrument is not null;
 
+CREATE INDEX study_amendment_by_study on study_amendment (study);
+
 CREATE INDEX study_by_lot on study (lot);
 
 CREATE INDEX trail_change_update on trail_change (record, row, act) where kind = 'update';
@@ -448,6 +450,7 @@ CREATE TABLE pull (
     test_within_days integer,
     containers_needed integer not null,
     is_last integer not null check (is_last in (0, 1)),
+    supersedes integer unique references pull (id),     -- planned in its place by an amendment
     imported integer references import (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
@@ -689,6 +692,15 @@ CREATE TABLE study (
     started_on text,                        -- time zero; null only for imported studies
     rule_set text not null,                 -- the rules it is evaluated by, name and version
     imported integer references import (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE study_amendment (
+    id integer primary key,
+    study integer not null references study (id),
+    protocol_version integer not null references protocol_version (id),
+    specification_version integer not null references specification_version (id),
+    why text not null,
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 

@@ -5,6 +5,7 @@
 #[path = "../support/mod.rs"]
 mod support;
 
+mod amendments;
 mod attachments;
 mod backups;
 mod benches;

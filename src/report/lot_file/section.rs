@@ -22,7 +22,12 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
         "",
         &["lot_decisions", "lot_distributions"],
     ));
-    sections.push(maker.tables("studies", "Studies", "", &["studies", "arms", "pulls", "pull_events"]));
+    sections.push(maker.tables(
+        "studies",
+        "Studies",
+        "",
+        &["studies", "amendments", "arms", "pulls", "pull_events"],
+    ));
     maker.versions(&mut sections, "protocols", "Protocols", "protocol_versions");
     maker.versions(&mut sections, "specifications", "Specifications", "specification_versions");
     sections.push(Section {

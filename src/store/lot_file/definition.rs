@@ -67,7 +67,11 @@ pub(super) const QUERIES: &[Query] = &[
              from protocol_version v
              join protocol p on p.id = v.protocol
              join trail_act a on a.id = v.act
-             where v.id in (select protocol_version from study where lot in (select id from family))
+             where v.id in (
+                 select protocol_version from study where lot in (select id from family)
+                 union
+                 select m.protocol_version from study_amendment m join study s on s.id = m.study
+                 where s.lot in (select id from family))
              order by v.id"
         ),
     },

@@ -49,6 +49,22 @@ pub(super) const QUERIES: &[Query] = &[
         ),
     },
     Query {
+        name: "amendments",
+        title: "Amendments",
+        numeric: &[],
+        sql: of_family!(
+            "select m.id, s.number as study, p.code as protocol, v.number as protocol_version, m.why,
+                 a.full_name as amended_by, a.at as amended_at, m.act
+             from study_amendment m
+             join study s on s.id = m.study
+             join protocol_version v on v.id = m.protocol_version
+             join protocol p on p.id = v.protocol
+             join trail_act a on a.id = m.act
+             where s.lot in (select id from family)
+             order by m.id"
+        ),
+    },
+    Query {
         name: "arms",
         title: "Arms",
         numeric: &[],

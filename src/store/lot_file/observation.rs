@@ -202,7 +202,10 @@ pub(super) const QUERIES: &[Query] = &[
                  or (g.kind = 'formulation_version' and g.subject in (
                      select formulation_version from lot where id in (select id from family)))
                  or (g.kind = 'protocol_version' and g.subject in (
-                     select protocol_version from study where lot in (select id from family)))
+                     select protocol_version from study where lot in (select id from family)
+                     union
+                     select m.protocol_version from study_amendment m join study y on y.id = m.study
+                     where y.lot in (select id from family)))
                  or (g.kind = 'specification_version' and g.subject in (
                      select specification_version from study where lot in (select id from family)
                      union

@@ -20,6 +20,7 @@ use crate::domain::subject::{Kind, Subject};
 use crate::report::chart::Drawn;
 use crate::report::chart::from_series::of_arms;
 use crate::store;
+use crate::store::amendment::Amendment;
 use crate::store::container::{Container, LedgerLine};
 use crate::store::pull::Pull;
 use crate::store::study::{ArmLine, Study};
@@ -35,8 +36,30 @@ struct StudyPage {
     charts: Vec<Drawn>,
     ledger: Vec<LedgerRow>,
     warnings: Vec<String>,
+    /// Version, words, when, who and why of each amendment.
+    amendments: Vec<AmendmentRow>,
+    /// A newer approved version of the protocol waits and this person may apply it.
+    may_amend: bool,
     trigger: Option<Form>,
     trail: Trail,
+}
+
+struct AmendmentRow {
+    protocol_version: i64,
+    words: String,
+    at: String,
+    by: String,
+    why: String,
+}
+
+fn amendment_row(visit: &Visit, one: Amendment) -> AmendmentRow {
+    AmendmentRow {
+        protocol_version: one.protocol_version,
+        words: one.protocol_words,
+        at: show::instant(&one.at, visit.at.zone),
+        by: one.by,
+        why: one.why,
+    }
 }
 
 struct ArmRow {
@@ -173,7 +196,7 @@ pub(super) fn one(visit: &Visit) -> Outcome {
 }
 
 fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
-    let (study, arms, pulls, points, ledger, lines) = visit.read(|reader| {
+    let (study, arms, mut pulls, points, ledger, lines) = visit.read(|reader| {
         Ok((
             store::study::get(reader, id)?,
             store::study::arms(reader, id)?,
@@ -183,6 +206,15 @@ fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outc
             store::trail::of_subject(reader, Subject::new(Kind::Study, id))?,
         ))
     })?;
+    let (amendments, superseded, newer) = visit.read(|reader| {
+        let newer = acts::amendment::newer_version(reader, &study)?;
+        Ok((
+            store::amendment::of_study(reader, id)?,
+            store::amendment::superseded(reader, id)?,
+            newer.is_some(),
+        ))
+    })?;
+    pulls.retain(|pull| !superseded.contains(&pull.id));
     let trigger = match failed {
         Some(failed) => Some(failed),
         None => trigger_form(visit, id, &arms)?,
@@ -205,6 +237,8 @@ fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outc
         charts: of_arms(&study.lot_number, &points, true),
         ledger: ledger_rows(visit, &arms, ledger),
         warnings,
+        amendments: amendments.into_iter().map(|one| amendment_row(visit, one)).collect(),
+        may_amend: newer && visit.may(Act::AmendStudy),
         trigger,
         trail: Trail::of(&lines, visit.at.zone),
         study,
