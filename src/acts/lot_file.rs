@@ -17,8 +17,8 @@ use crate::domain::subject::Kind;
 use crate::report::export;
 use crate::report::lot_file::{BY_SECTION, BY_TIME, export_text, html, read_me};
 use crate::report::zip::{MANIFEST, pack};
-use crate::store;
 use crate::store::door::Db;
+use crate::store::{self, Reader};
 
 /// A lot file that was made.
 #[derive(Clone, Debug)]
@@ -31,26 +31,40 @@ pub struct Made {
 
 /// Makes the lot file of a lot and writes the archive's digest on the trail.
 ///
+/// The archive is made from one snapshot before the act begins, so that a large lot keeps nobody from writing.
 /// `folder` is the data folder, for the attachments. `with_mark` puts the byte-order mark before each CSV.
 pub fn make(db: &Db, actor: &Actor, lot: i64, folder: &Path, with_mark: bool) -> Result<Made, Failure> {
+    if !actor.is_system() && Act::ExportLotFile.role_for(&actor.roles).is_none() {
+        // Refuses and notes the attempt before any work is done.
+        db.change(actor, Act::ExportLotFile, &Reason::none(), |_| Ok(()))?;
+    }
+    let (file, export) = db.read(|reader| {
+        let file = store::lot_file::load(reader, lot)?;
+        let export = export(reader, actor, &file)?;
+        Ok((file, export))
+    })?;
+    let bytes = pack(&files(&file, &export, folder, with_mark)?)?;
+    let digest = sha256_hex(&bytes);
     db.change(actor, Act::ExportLotFile, &Reason::none(), |change| {
-        let file = store::lot_file::load(change, lot)?;
-        let head = store::trail::head(change)?;
-        let export = Export {
-            at: actor.at.exported(),
-            by: actor.full_name.clone(),
-            program: format!(
-                "Supernate {}, SQLite {}",
-                env!("CARGO_PKG_VERSION"),
-                store::door::library_version()
-            ),
-            head: head.map(|(act, seal)| format!("{act} {seal}")).unwrap_or_default(),
-        };
-        let bytes = pack(&files(&file, &export, folder, with_mark)?)?;
-        let digest = sha256_hex(&bytes);
         change.concerns(Kind::Lot, lot)?;
         change.tell(format!("{}, sha256 {digest}", file.number));
-        Ok(Made { name: name(&file.number), bytes, digest })
+        Ok(())
+    })?;
+    Ok(Made { name: name(&file.number), bytes, digest })
+}
+
+fn export(reader: &Reader<'_>, actor: &Actor, file: &LotFile) -> Result<Export, Failure> {
+    let head = store::trail::head(reader)?;
+    Ok(Export {
+        at: actor.at.exported(),
+        by: actor.full_name.clone(),
+        program: format!(
+            "Supernate {}, SQLite {}",
+            env!("CARGO_PKG_VERSION"),
+            store::door::library_version()
+        ),
+        head: head.map(|(act, seal)| format!("{act} {seal}")).unwrap_or_default(),
+        systems: store::lot_file::system::facts(reader, file.zone)?,
     })
 }
 

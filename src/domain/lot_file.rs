@@ -90,4 +90,6 @@ pub struct Export {
     pub program: String,
     /// The newest entry of the whole trail and its seal.
     pub head: String,
+    /// What the site's system is and how it stands: name and words.
+    pub systems: Vec<(String, String)>,
 }

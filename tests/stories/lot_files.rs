@@ -78,6 +78,9 @@ fn every_form_holds_the_same_results_as_the_database() {
 fn the_same_records_give_the_same_bytes_apart_from_the_export_line() {
     let (lab, lot) = with_lot();
     let first = unpacked(&export(&lab, lot).bytes);
+    let systems = text(&first, "lot-file.html");
+    assert!(systems.contains("holds: each of "), "the chain was checked for the export");
+    assert!(systems.contains("SQLite 3.") && systems.contains("not confirmed on this system"));
     lab.later_minutes(3);
     let second = unpacked(&export(&lab, lot).bytes);
     for (name, bytes) in &first {
@@ -86,14 +89,17 @@ fn the_same_records_give_the_same_bytes_apart_from_the_export_line() {
             _ if name.ends_with(".html") => {
                 let (one, other) = (text(&first, name), text(&second, name));
                 let differ = one.lines().zip(other.lines()).filter(|(one, other)| one != other);
-                assert!(differ.clone().all(|(line, _)| line.contains("Exported at")), "{name}");
-                assert_eq!(differ.count(), 2, "{name}");
+                let is_of_export =
+                    |line: &str| line.contains("Exported at") || line.contains("id=\"systems\"");
+                assert!(differ.clone().all(|(line, _)| is_of_export(line)), "{name}");
+                assert_eq!(differ.count(), 3, "{name}");
             }
             _ => assert_eq!(bytes, &second[name], "{name}"),
         }
     }
     let file = lab.app.db.read(|reader| store::lot_file::load(reader, lot)).unwrap();
-    let export = Export { at: "a".into(), by: "b".into(), program: "c".into(), head: "d".into() };
+    let systems = vec![("e".to_string(), "f".to_string())];
+    let export = Export { at: "a".into(), by: "b".into(), program: "c".into(), head: "d".into(), systems };
     let packed =
         || supernate::report::zip::pack(&files(&file, &export, &lab.folder.0, false).unwrap()).unwrap();
     assert_eq!(packed(), packed());

@@ -122,11 +122,14 @@ pub fn read_me(file: &LotFile) -> Vec<u8> {
     .into_bytes()
 }
 
-/// The one part that differs between two exports of the same records, besides the line of it in the HTML files.
+/// The one part that differs between two exports of the same records, besides the lines of it in the HTML files.
 pub fn export_text(export: &Export) -> Vec<u8> {
-    format!(
+    let mut text = format!(
         "exported at {}\r\nexported by {}\r\nprogram {}\r\nhead of the trail {}\r\n",
         export.at, export.by, export.program, export.head
-    )
-    .into_bytes()
+    );
+    for (name, words) in &export.systems {
+        text.push_str(&format!("{}: {words}\r\n", name.to_lowercase()));
+    }
+    text.into_bytes()
 }

@@ -3,6 +3,7 @@
 mod definition;
 mod life;
 mod observation;
+pub mod system;
 
 use std::collections::BTreeSet;
 

@@ -213,6 +213,8 @@ pub(super) const QUERIES: &[Query] = &[
                  or (g.kind = 'method_version' and g.subject in (
                      select t.method_version from sample_test t join sample x on x.id = t.sample
                      where x.lot in (select id from family)))
+                 or (g.kind = 'shelf_life_assignment' and g.subject in (
+                     select shelf_life_assignment from lot_decision where lot in (select id from family)))
                  or (g.kind = 'investigation' and g.subject in (
                      select i.id from investigation i
                      join result r on r.id = i.result
