@@ -56,6 +56,7 @@ create table reading (
     qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'not read')),
     read_at text,                           -- when it was read, if not at the act itself (late entry)
     due_at text,                            -- planned instant of a timed reading
+    inspected_every integer check (inspected_every > 1), -- a count seen only after each so many: known to this
     instrument integer references instrument (id),
     hints text,                             -- JSON: the hints it drew
     hint_answer text check (hint_answer in ('kept', 'changed after hint')),
@@ -257,4 +258,20 @@ create trigger open_sample_signed after insert on signature
 when new.kind = 'sample' and new.meaning = 'review'
 begin
     delete from open_sample where sample = new.subject;
+end;
+
+-- Tests whose newest result waits for the laboratory check, so that the week and the queue never walk all results.
+-- An index over the rows above, kept by triggers, derived and not itself a record.
+create table open_check (
+    sample_test integer primary key references sample_test (id)
+) strict;
+create trigger open_check_asked after insert on result
+when new.imported is null and (select json_extract(v.content, '$.needs_check')
+    from sample_test t join method_version v on v.id = t.method_version where t.id = new.sample_test) = 1
+begin
+    insert or ignore into open_check (sample_test) values (new.sample_test);
+end;
+create trigger open_check_answered after insert on result_check
+begin
+    delete from open_check where sample_test = new.sample_test;
 end;

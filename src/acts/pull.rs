@@ -147,13 +147,26 @@ fn close(change: &mut Change<'_>, found: &Pull, event: Event, reason: &Reason) -
 
 /// Gives a pull to a person who works at the bench. Refuses in the order of [`pull::may_assign`].
 pub fn assign(db: &Db, actor: &Actor, id: i64, account: i64) -> Result<(), Failure> {
+    assign_several(db, actor, &[id], account)
+}
+
+/// Gives pulls to a person who works at the bench, all of them or none. Refuses when none is chosen, then in the
+/// order of [`pull::may_assign`] for each.
+pub fn assign_several(db: &Db, actor: &Actor, ids: &[i64], account: i64) -> Result<(), Failure> {
     db.change(actor, Act::AssignPull, &Reason::none(), |change| {
-        let found = store::pull::get(change, id)?;
+        pull::may_assign_several(ids.len())?;
         let person = store::account::get(change, account)?;
         let is_at_bench = person.is_enabled
             && (person.roles.contains(&Role::Analyst) || person.roles.contains(&Role::LabManager));
-        pull::may_assign(&found.facts, is_at_bench)?;
-        store::pull::insert_assignment(change, id, account)?;
-        tell(change, &found, &format!("to {}", person.full_name))
+        let mut told = Vec::new();
+        for id in ids {
+            let found = store::pull::get(change, *id)?;
+            pull::may_assign(&found.facts, is_at_bench)?;
+            store::pull::insert_assignment(change, *id, account)?;
+            tell(change, &found, "")?;
+            told.push(format!("{}, {}", found.number, found.age_text));
+        }
+        change.tell(format!("{} to {}", told.join("; "), person.full_name));
+        Ok(())
     })
 }

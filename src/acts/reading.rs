@@ -59,19 +59,21 @@ pub fn record(
             may_record_entry(change, &sample, test, &readings, entry, how)?;
             let due_at = due_at(&readings, entry, change.actor().at);
             let questions = super::question::of(change, &sample, test, &readings, entry)?;
-            let beside = Beside { due_at, questions, ..beside(how, container) };
+            let inspected_every = inspected_every(test, entry);
+            let beside = Beside { due_at, questions, inspected_every, ..beside(how, container) };
             let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;
             readings.push(as_recorded(id, entry, change.actor(), how));
-            told.push(format!("{}: {}", entry.slot.short(), entry.said.shown()));
+            told.push(entry);
             ids.push(id);
         }
         concerns(change, &sample)?;
         // Where a second person reads blind, the history must not tell them the first value.
         let told = match test.content.second_reader_tolerance {
-            Some(_) => format!("{}, {} values", test.title, ids.len()),
-            None => told.join("; "),
+            Some(_) if ids.len() == 1 => "1 value".to_string(),
+            Some(_) => format!("{} values", ids.len()),
+            None => reading::told(&test.title, &told),
         };
-        change.tell(format!("{} · {told}", sample.number));
+        change.tell(format!("{}, {} · {told}", sample.number, test.title));
         Ok(ids)
     })
 }
@@ -99,6 +101,7 @@ pub fn correct(db: &Db, actor: &Actor, how: &How, entry: &Entry, reason: &Reason
             supersedes: Some(was.id),
             container: was.container.or(container),
             due_at: was.due_at.clone(),
+            inspected_every: inspected_every(test, entry),
             read_at: how.read_at.map(|at| at.stored()).or_else(|| reread(was, reason)),
             answer: was.has_open_question().then_some("changed after hint"),
             questions: super::question::of(change, &sample, test, &readings, entry)?,
@@ -106,13 +109,22 @@ pub fn correct(db: &Db, actor: &Actor, how: &How, entry: &Entry, reason: &Reason
         };
         let id = store::reading::insert(change, test.id, &entry.slot.key, &entry.said, &beside)?;
         concerns(change, &sample)?;
-        let (was, is) = (was.shown(), entry.said.shown());
+        let shown = |qualifier: &str, typed: &str| entry.slot.shown(qualifier, typed);
+        let was = shown(&was.qualifier, &was.typed);
+        let is = shown(entry.said.qualifier(), &entry.said.typed());
         change.tell(format!("{} · {}: was {was}, is {is}", sample.number, entry.slot.short()));
         if test.is_complete() {
             super::result::judge_again(change, how.sample_test)?;
         }
         Ok(id)
     })
+}
+
+/// A count that the method looks at only after each so many is known to that interval (decision A15).
+fn inspected_every(test: &BenchTest, entry: &Entry) -> Option<u32> {
+    let Settings::Redispersibility { inspect_every, .. } = test.content.settings else { return None };
+    let is_count = entry.slot.key.field.ends_with("inversions") && matches!(entry.said, Said::Number(_));
+    (is_count && inspect_every > 1).then_some(inspect_every)
 }
 
 /// A mistyped value keeps the instant at which it was read; one that was read again is of now.
@@ -135,6 +147,7 @@ pub fn keep(db: &Db, actor: &Actor, sample_test: i64, reading: i64) -> Result<()
             container: asked.container,
             read_at: Some(asked.read_instant().to_string()),
             due_at: asked.due_at.clone(),
+            inspected_every: asked.inspected_every,
             instrument: asked.instrument,
             questions: asked.questions.clone(),
             answer: Some("kept"),
@@ -355,6 +368,7 @@ fn as_recorded(id: i64, entry: &Entry, actor: &Actor, how: &How) -> Reading {
         qualifier: entry.said.qualifier().to_string(),
         read_at: how.read_at.map(|at| at.stored()),
         due_at: None,
+        inspected_every: None,
         instrument: how.instrument,
         questions,
         answer: None,

@@ -33,7 +33,8 @@ pub fn receive(db: &Db, actor: &Actor, new: &NewSample) -> Result<i64, Failure> 
         }
         change.concerns(Kind::Sample, id)?;
         change.concerns(Kind::Lot, new.lot)?;
-        change.tell(format!("{number}, {}: {} tests", new.purpose.words(), tests.len()));
+        let tests = if tests.len() == 1 { "1 test".to_string() } else { format!("{} tests", tests.len()) };
+        change.tell(format!("{number}, {}: {tests}", new.purpose.words()));
         Ok(id)
     })
 }

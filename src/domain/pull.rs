@@ -233,6 +233,8 @@ pub enum PullRefusal {
     NotYetDue(String),
     #[error("Choose a person who works at the bench.")]
     NotAtBench,
+    #[error("No pull is chosen. Tick at least one.")]
+    NoPullChosen,
 }
 
 impl NamedReason for PullRefusal {
@@ -349,6 +351,11 @@ pub fn may_miss(facts: &PullFacts, today: NaiveDate) -> Result<(), PullRefusal> 
         Some(due_on) if today < due_on => Err(PullRefusal::NotYetDue(date_shown(due_on))),
         _ => Ok(()),
     }
+}
+
+/// Giving pulls to a person begins with choosing one.
+pub fn may_assign_several(chosen: usize) -> Result<(), PullRefusal> {
+    if chosen == 0 { Err(PullRefusal::NoPullChosen) } else { Ok(()) }
 }
 
 /// Refuses in this order: imported, missed, cancelled, signed, a person who is not at the bench.

@@ -66,6 +66,16 @@ pub fn shown(qualifier: &str, typed: &str) -> String {
     }
 }
 
+/// `more than 10, at most 15`: what a count says that was looked at after each so many.
+pub fn interval_words(typed: &str, every: u32) -> Option<String> {
+    let most: u32 = typed.trim().parse().ok()?;
+    // The last look before this count came after a whole number of intervals.
+    match most.saturating_sub(1) / every.max(1) * every {
+        0 => Some(format!("at most {most}")),
+        least => Some(format!("more than {least}, at most {most}")),
+    }
+}
+
 /// A check that a value drew while it could be re-read.
 #[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 pub struct Question {
@@ -87,6 +97,8 @@ pub struct Reading {
     pub qualifier: String,
     pub read_at: Option<String>,
     pub due_at: Option<String>,
+    /// A count that was looked at only after each so many: it is known to this interval (decision A15).
+    pub inspected_every: Option<u32>,
     pub instrument: Option<i64>,
     pub questions: Vec<Question>,
     /// `kept` or `changed after hint`.
@@ -102,7 +114,9 @@ pub struct Reading {
 
 impl Reading {
     pub fn shown(&self) -> String {
-        shown(&self.qualifier, &self.typed)
+        let shown = shown(&self.qualifier, &self.typed);
+        let interval = self.inspected_every.and_then(|every| interval_words(&self.typed, every));
+        interval.map_or(shown.clone(), |interval| format!("{shown} ({interval})"))
     }
 
     /// The instant it was read: stated, or that of its act.
@@ -147,6 +161,27 @@ pub fn first_of<'a>(readings: &'a [Reading], reading: &'a Reading) -> Option<&'a
 pub struct Entry {
     pub slot: Slot,
     pub said: Said,
+}
+
+/// What was recorded, for the history: by container or replicate, each value behind its name once.
+/// `bottle A07-3NGQ: Colour matches, Caking none; bottle A08-6AWE: …`
+pub fn told(test_title: &str, entries: &[&Entry]) -> String {
+    let mut columns: Vec<&str> = Vec::new();
+    for entry in entries {
+        if !columns.contains(&entry.slot.column.as_str()) {
+            columns.push(&entry.slot.column);
+        }
+    }
+    let value = |entry: &&Entry| {
+        let shown = entry.slot.shown(entry.said.qualifier(), &entry.said.typed());
+        if entry.slot.title == test_title { shown } else { format!("{} {shown}", entry.slot.title) }
+    };
+    let told = columns.into_iter().map(|column| {
+        let of_column = entries.iter().copied().filter(|entry| entry.slot.column == column);
+        let values = of_column.map(|entry| value(&entry)).collect::<Vec<_>>().join(", ");
+        if column.is_empty() { values } else { format!("{column}: {values}") }
+    });
+    told.collect::<Vec<_>>().join("; ")
 }
 
 /// Where the pull of a sample is.
@@ -312,6 +347,11 @@ pub fn heights_agree(name: &str, value: impl Fn(&str) -> Option<Decimal>) -> Res
 /// A planned reading is not taken more than a tenth of its time early (common practice; at least one minute).
 pub fn is_too_early(due_minute: u32, seconds_before: i64) -> bool {
     seconds_before > i64::from((due_minute * 6).max(60))
+}
+
+/// The whole minutes before its time from which a planned reading may be taken.
+pub fn earliest_minutes(due_minute: u32) -> i64 {
+    i64::from((due_minute / 10).max(1))
 }
 
 /// Late by more than a tenth of its time (common practice; at least two minutes): marked for the reviewer.

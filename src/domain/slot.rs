@@ -3,7 +3,7 @@
 use rust_decimal::Decimal;
 
 use super::method::{Grade, Level, MethodContent, Settings, Stage};
-use super::reading::Said;
+use super::reading::{Said, shown};
 use super::typed::{NumberRule, count, number};
 
 /// A container that gives readings.
@@ -82,20 +82,24 @@ impl Slot {
         if self.column.is_empty() { self.title.clone() } else { format!("{}, {}", self.title, self.column) }
     }
 
+    /// A value as a person reads it: a grade by its word.
+    pub fn shown(&self, qualifier: &str, typed: &str) -> String {
+        let Accepts::Grade(grades) = &self.accepts else { return shown(qualifier, typed) };
+        let grade = grades.iter().find(|grade| qualifier == "words" && grade.code == typed);
+        grade.map_or_else(|| shown(qualifier, typed), |grade| grade.word.clone())
+    }
+
     /// Reads what was typed, or says in a sentence why it cannot be recorded.
     pub fn read(&self, text: &str) -> Result<Said, String> {
+        if let Some(sentence) = self.bound_fault(text) {
+            return Err(sentence);
+        }
         match &self.accepts {
             Accepts::Number { least, most } => {
                 let rule = NumberRule { least: *least, most: *most, ..self.number_rule() };
                 number(text, &rule).map(Said::Number).map_err(|fault| fault.to_string())
             }
-            Accepts::Count { least, most, is_capped } => {
-                if *is_capped && text.trim().starts_with('>') {
-                    let label = self.label();
-                    return Err(format!(
-                        "{label}: press “More than {most}, not uniform” in place of “{text}”."
-                    ));
-                }
+            Accepts::Count { least, most, .. } => {
                 let rule = NumberRule {
                     least: Decimal::from(*least),
                     most: Decimal::from(*most),
@@ -128,6 +132,29 @@ impl Slot {
             0 => Err(format!("{} is empty. Write what was seen.", self.label())),
             1..=1000 => Ok(Said::Words(text.to_string())),
             length => Err(format!("{} has {length} characters; at most 1000 fit. Shorten it.", self.label())),
+        }
+    }
+}
+
+impl Slot {
+    /// “<0.05” and “>100” are bounds and no readings; each box says what is done in their place (screen_U52).
+    fn bound_fault(&self, text: &str) -> Option<String> {
+        let text = text.trim();
+        let is_less = text.starts_with(['<', '≤']);
+        if !is_less && !text.starts_with(['>', '≥']) {
+            return None;
+        }
+        let label = self.label();
+        match &self.accepts {
+            Accepts::Count { most, is_capped: true, .. } if !is_less => {
+                Some(format!("{label}: press “More than {most}, not uniform” in place of “{text}”."))
+            }
+            Accepts::Number { .. } | Accepts::Count { .. } => Some(format!(
+                "{label}: “{text}” says {} and is no reading. Type the number that was shown; where none was \
+                 shown, use “Could not be read” and write “{text}” there with the reason.",
+                if is_less { "less than" } else { "more than" }
+            )),
+            _ => None,
         }
     }
 }
@@ -192,6 +219,11 @@ pub fn slots(title: &str, content: &MethodContent, containers: &[Container], wor
         .collect()
 }
 
+/// `A07-3NGQ` of `ST-033-A07-3NGQ`: on the page of one sample the study is known, and a heading is narrow.
+pub fn short_label(label: &str) -> &str {
+    label.rmatch_indices('-').nth(1).map_or(label, |(at, _)| &label[at + 1..])
+}
+
 /// (container, replicate, words) of each column.
 fn columns(content: &MethodContent, containers: &[Container], word: &str) -> Vec<(Option<i64>, u32, String)> {
     let replicates = content.replicates.max(1);
@@ -224,7 +256,11 @@ fn columns(content: &MethodContent, containers: &[Container], word: &str) -> Vec
     taken
         .flat_map(|container| {
             (1..=replicates).map(move |replicate| {
-                (Some(container.id), replicate, format!("{word} {}{}", container.label, repeat(replicate)))
+                (
+                    Some(container.id),
+                    replicate,
+                    format!("{word} {}{}", short_label(&container.label), repeat(replicate)),
+                )
             })
         })
         .collect()
@@ -413,6 +449,27 @@ mod tests {
         }
         assert_eq!(labelled("TW-104-0640-R1", "TW-104-0640-R1", &[]), Some(None));
         assert_eq!(labelled("0640", "TW-104-0640-R1", &[]), None);
+    }
+
+    #[test]
+    fn a_bound_is_no_reading_and_each_box_says_what_to_do() {
+        let of = |kind| {
+            let content = super::super::method::preset::of(kind);
+            slots("Test", &content, &[], "bottle").into_iter().next().unwrap()
+        };
+        use super::super::method::TestKind::{Ph, Redispersibility};
+        let said = |kind, text: &str| of(kind).read(text).unwrap_err();
+        assert!(said(Ph, "<4.0").contains("“<4.0” says less than and is no reading"));
+        assert!(said(Ph, "> 10").contains("says more than"));
+        assert!(said(Redispersibility, ">100").contains("press “More than 100, not uniform”"));
+        assert!(said(Redispersibility, "≤5").contains("says less than"));
+    }
+
+    #[test]
+    fn a_label_is_short_within_its_study() {
+        for (label, short) in [("ST-033-A07-3NGQ", "A07-3NGQ"), ("A07-3NGQ", "A07-3NGQ"), ("7", "7")] {
+            assert_eq!(short_label(label), short);
+        }
     }
 
     #[test]

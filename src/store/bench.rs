@@ -1,5 +1,7 @@
 //! A sample as the bench sees it: label words, containers, tests with their methods, readings, losses.
 
+use std::collections::HashMap;
+
 use rusqlite::{Row, named_params};
 
 use super::{Answer, Reader, reading, stage};
@@ -171,21 +173,48 @@ fn pull_from_row(row: &Row<'_>) -> rusqlite::Result<Option<BenchPull>> {
 
 /// A sample with its tests, containers, readings and losses.
 pub fn sample(reader: &Reader<'_>, id: i64) -> Answer<BenchSample> {
-    let (mut sample, content) = reader.one(
-        "sample with this number",
-        &format!("{SELECT} where s.id = :id"),
-        named_params! { ":id": id },
+    samples(reader, &[id])?.pop().ok_or_else(|| Failure::missing("sample with this number"))
+}
+
+/// Samples with their tests, containers, readings and losses, in the order asked for; five queries, however many
+/// they are. A number that is of no sample is left out.
+pub fn samples(reader: &Reader<'_>, ids: &[i64]) -> Answer<Vec<BenchSample>> {
+    let asked = serde_json::to_string(ids).map_err(Failure::fault)?;
+    let rows = reader.all(
+        &format!("{SELECT} where s.id in (select value from json_each(:samples))"),
+        named_params! { ":samples": asked },
         from_row,
     )?;
-    sample.specification =
-        content.map(|content| serde_json::from_str(&content)).transpose().map_err(Failure::fault)?;
-    if let Some(pull) = &sample.pull {
-        sample.containers = containers(reader, pull.id)?;
+    let mut samples = Vec::with_capacity(rows.len());
+    for (mut sample, content) in rows {
+        let content = content.map(|content| serde_json::from_str(&content)).transpose();
+        sample.specification = content.map_err(Failure::fault)?;
+        samples.push(sample);
     }
-    sample.tests = tests(reader, id)?;
-    sample.losses = stage::losses(reader, id)?;
-    sample.readings = reading::of_sample(reader, id)?;
-    Ok(sample)
+    samples.sort_by_key(|sample| ids.iter().position(|id| *id == sample.id));
+    let place: HashMap<i64, usize> = samples.iter().enumerate().map(|(at, sample)| (sample.id, at)).collect();
+    let at = |id: i64| place.get(&id).copied();
+    for (id, container) in containers(reader, &asked)? {
+        if let Some(at) = at(id) {
+            samples[at].containers.push(container);
+        }
+    }
+    for (id, test) in tests(reader, &asked)? {
+        if let Some(at) = at(id) {
+            samples[at].tests.push(test);
+        }
+    }
+    for (id, loss) in stage::losses_of(reader, &asked)? {
+        if let Some(at) = at(id) {
+            samples[at].losses.push(loss);
+        }
+    }
+    for (id, test, reading) in reading::of_samples(reader, &asked)? {
+        if let Some(at) = at(id) {
+            samples[at].readings.push((test, reading));
+        }
+    }
+    Ok(samples)
 }
 
 /// The sample of a test.
@@ -199,20 +228,21 @@ pub fn of_test(reader: &Reader<'_>, sample_test: i64) -> Answer<BenchSample> {
     sample(reader, id)
 }
 
-/// The containers taken for a pull, by number.
-fn containers(reader: &Reader<'_>, pull: i64) -> Answer<Vec<Container>> {
+/// The containers taken for the pulls of samples, by number.
+fn containers(reader: &Reader<'_>, samples: &str) -> Answer<Vec<(i64, Container)>> {
     reader.all(
-        "select distinct c.id, c.label
-         from container_event e
-         cross join container c on c.id = e.container
-         where e.pull = :pull and e.kind in ('pulled', 'partial pull', 're-pull')
+        "select distinct s.id, c.id, c.label, c.number
+         from json_each(:samples) j
+         join sample s on s.id = j.value
+         join container_event e on e.pull = s.pull and e.kind in ('pulled', 'partial pull', 're-pull')
+         join container c on c.id = e.container
          order by c.number",
-        named_params! { ":pull": pull },
-        |row| Ok(Container { id: row.get(0)?, label: row.get(1)? }),
+        named_params! { ":samples": samples },
+        |row| Ok((row.get(0)?, Container { id: row.get(1)?, label: row.get(2)? })),
     )
 }
 
-fn tests(reader: &Reader<'_>, sample: i64) -> Answer<Vec<BenchTest>> {
+fn tests(reader: &Reader<'_>, samples: &str) -> Answer<Vec<(i64, BenchTest)>> {
     let rows = reader.all(
         "select t.id, t.test, t.title, t.method_version, m.id, m.code, m.kind, v.content,
              (select max(r.version) from result r where r.sample_test = t.id),
@@ -224,16 +254,23 @@ fn tests(reader: &Reader<'_>, sample: i64) -> Answer<Vec<BenchTest>> {
                  order by k.id desc limit 1),
              (select k.why from result_check k where k.sample_test = t.id
                  and k.version = (select max(version) from result where sample_test = t.id)
-                 order by k.id desc limit 1)
+                 order by k.id desc limit 1),
+             t.sample
          from sample_test t
          join method_version v on v.id = t.method_version
          join method m on m.id = v.method
-         where t.sample = :sample
+         where t.sample in (select value from json_each(:samples))
          order by t.position",
-        named_params! { ":sample": sample },
-        |row| Ok((test_from_row(row)?, row.get::<_, String>(6)?, row.get::<_, String>(7)?)),
+        named_params! { ":samples": samples },
+        |row| {
+            let content = (row.get::<_, String>(6)?, row.get::<_, String>(7)?);
+            Ok((row.get::<_, i64>(12)?, test_from_row(row)?, content))
+        },
     )?;
-    rows.into_iter().map(|(test, kind, content)| read_test(test, &kind, &content)).collect()
+    let test = |(sample, test, (kind, content)): (i64, Row0, (String, String))| {
+        Ok((sample, read_test(test, &kind, &content)?))
+    };
+    rows.into_iter().map(test).collect()
 }
 
 /// A test before its method is read.

@@ -35,3 +35,9 @@ pub fn method_version(reader: &Reader<'_>, sample_test: i64) -> Answer<i64> {
         |row| row.get(0),
     )
 }
+
+/// How many tests wait for their check.
+pub fn count_waiting(reader: &Reader<'_>) -> Answer<usize> {
+    let count: i64 = reader.one("count", "select count(*) from open_check", [], |row| row.get(0))?;
+    Ok(usize::try_from(count).unwrap_or_default())
+}

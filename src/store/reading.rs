@@ -11,7 +11,7 @@ use crate::domain::slot::SlotKey;
 const SELECT: &str = "select r.sample_test, r.id, r.container, r.replicate, r.field, r.typed, r.value,
         r.qualifier, r.read_at, r.due_at, r.instrument, r.hints, r.hint_answer, r.supersedes, r.act,
         coalesce(a.account, 0), coalesce(a.full_name, ''), coalesce(a.at, ''), a.reason,
-        coalesce(c.label, ''), json_extract(v.content, '$.level')
+        coalesce(c.label, ''), json_extract(v.content, '$.level'), r.inspected_every, t.sample
     from reading r
     left join trail_act a on a.id = r.act
     join sample_test t on t.id = r.sample_test
@@ -33,6 +33,7 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<(i64, Reading)> {
         qualifier: row.get(7)?,
         read_at: row.get(8)?,
         due_at: row.get(9)?,
+        inspected_every: row.get(21)?,
         instrument: row.get(10)?,
         questions: hints.and_then(|text| serde_json::from_str(&text).ok()).unwrap_or_default(),
         answer: row.get(12)?,
@@ -46,12 +47,19 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<(i64, Reading)> {
     Ok((row.get(0)?, reading))
 }
 
-/// All rows of all tests of a sample with their test, oldest first.
-pub fn of_sample(reader: &Reader<'_>, sample: i64) -> Answer<Vec<(i64, Reading)>> {
+/// All rows of all tests of these samples (a JSON list) with sample and test, oldest first.
+pub fn of_samples(reader: &Reader<'_>, samples: &str) -> Answer<Vec<(i64, i64, Reading)>> {
     reader.all(
-        &format!("{SELECT} where t.sample = :sample order by r.id"),
-        named_params! { ":sample": sample },
-        from_row,
+        &format!(
+            "{SELECT} where r.sample_test in (select o.id from json_each(:samples) j
+                 join sample_test o on o.sample = j.value)
+             order by r.id"
+        ),
+        named_params! { ":samples": samples },
+        |row| {
+            let (test, reading) = from_row(row)?;
+            Ok((row.get(22)?, test, reading))
+        },
     )
 }
 
@@ -71,6 +79,7 @@ pub struct Beside {
     pub container: Option<i64>,
     pub read_at: Option<String>,
     pub due_at: Option<String>,
+    pub inspected_every: Option<u32>,
     pub instrument: Option<i64>,
     pub questions: Vec<Question>,
     pub answer: Option<&'static str>,
@@ -90,9 +99,9 @@ pub fn insert(
     };
     change.insert(
         "insert into reading (sample_test, container, replicate, field, typed, value, qualifier, read_at,
-             due_at, instrument, hints, hint_answer, supersedes)
+             due_at, inspected_every, instrument, hints, hint_answer, supersedes)
          values (:test, :container, :replicate, :field, :typed, :value, :qualifier, :read_at, :due_at,
-             :instrument, :hints, :answer, :supersedes)",
+             :inspected_every, :instrument, :hints, :answer, :supersedes)",
         named_params! {
             ":test": sample_test,
             ":container": key.container.or(beside.container),
@@ -103,6 +112,7 @@ pub fn insert(
             ":qualifier": said.qualifier(),
             ":read_at": beside.read_at,
             ":due_at": beside.due_at,
+            ":inspected_every": beside.inspected_every,
             ":instrument": beside.instrument,
             ":hints": hints,
             ":answer": beside.answer,
@@ -135,7 +145,10 @@ pub fn open_methods(reader: &Reader<'_>, account: i64, today: chrono::NaiveDate)
          where v.imported is null
              and (s.pull is null or coalesce((select e.kind from pull_event e where e.pull = s.pull
                 order by e.id desc limit 1), '') = 'pulled')
-             and not exists (select 1 from result r where r.sample_test = t.id)
+             and (not exists (select 1 from result r where r.sample_test = t.id)
+                or (select k.verdict from result_check k where k.sample_test = t.id and k.version =
+                        (select max(version) from result where sample_test = t.id)
+                    order by k.id desc limit 1) = 'sent back')
          group by v.id
          order by m.code, v.number",
         named_params! { ":account": account, ":today": super::Day(today) },
@@ -162,7 +175,10 @@ pub fn open_tests(reader: &Reader<'_>, method_version: i64) -> Answer<Vec<(i64, 
          where t.method_version = :version
              and (s.pull is null or coalesce((select e.kind from pull_event e where e.pull = s.pull
                 order by e.id desc limit 1), '') = 'pulled')
-             and not exists (select 1 from result r where r.sample_test = t.id)
+             and (not exists (select 1 from result r where r.sample_test = t.id)
+                or (select k.verdict from result_check k where k.sample_test = t.id and k.version =
+                        (select max(version) from result where sample_test = t.id)
+                    order by k.id desc limit 1) = 'sent back')
          order by p.latest_on is null, p.latest_on, s.id
          limit 200",
         named_params! { ":version": method_version },

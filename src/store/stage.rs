@@ -7,15 +7,18 @@ use super::{Answer, Reader};
 use crate::domain::method::Stage;
 use crate::domain::stage::StageLoss;
 
-/// The losses of a sample, oldest first.
-pub fn losses(reader: &Reader<'_>, sample: i64) -> Answer<Vec<StageLoss>> {
+/// The losses of samples (a JSON list) with their sample, oldest first.
+pub fn losses_of(reader: &Reader<'_>, samples: &str) -> Answer<Vec<(i64, StageLoss)>> {
     reader.all(
-        "select container, stage, why from stage_loss where sample = :sample order by id",
-        named_params! { ":sample": sample },
+        "select sample, container, stage, why
+         from stage_loss
+         where sample in (select value from json_each(:samples))
+         order by id",
+        named_params! { ":samples": samples },
         |row| {
-            let stage: String = row.get(1)?;
+            let stage: String = row.get(2)?;
             let stage = Stage::from_words(&stage).ok_or(rusqlite::Error::InvalidQuery)?;
-            Ok(StageLoss { container: row.get(0)?, stage, why: row.get(2)? })
+            Ok((row.get(0)?, StageLoss { container: row.get(1)?, stage, why: row.get(3)? }))
         },
     )
 }

@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 13] = [
+pub const TECHNICAL_TABLES: [&str; 14] = [
     "trail_act",
     "trail_change",
     "trail_seal",
@@ -25,6 +25,7 @@ pub const TECHNICAL_TABLES: [&str; 13] = [
     "refinery_schema_history",
     "open_pull",
     "open_sample",
+    "open_check",
 ];
 
 /// Trailed tables whose rows may be updated: accounts and codes, and versions until they are signed.

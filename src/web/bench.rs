@@ -197,7 +197,8 @@ fn session(visit: &Visit) -> Outcome {
         ))
     })?;
     let samples = visit.read(|reader| {
-        open.iter().map(|(id, _)| store::bench::sample(reader, *id)).collect::<Result<Vec<_>, _>>()
+        let ids: Vec<i64> = open.iter().map(|(id, _)| *id).collect();
+        store::bench::samples(reader, &ids)
     })?;
     let label = visit.query.get("label").unwrap_or_default().trim().to_string();
     let found = samples

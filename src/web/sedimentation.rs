@@ -16,7 +16,7 @@ use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::method::{Halves, Settings};
 use crate::domain::moment::Moment;
-use crate::domain::reading::{Entry, Reading, in_slot, is_late, is_too_early};
+use crate::domain::reading::{Entry, Reading, earliest_minutes, in_slot, is_late, is_too_early};
 use crate::domain::reason::Reason;
 use crate::domain::result::seconds_late;
 use crate::domain::rounding::to_decimals;
@@ -50,6 +50,9 @@ pub struct Timer {
     pub words: String,
     pub path: String,
     pub is_done: bool,
+    /// It may be read now, or from this instant on.
+    pub is_open: bool,
+    pub open_at: String,
 }
 
 pub fn cylinders(visit: &Visit, loaded: &Loaded, said: &Said) -> Result<Cylinders, Failure> {
@@ -106,6 +109,7 @@ fn timers(visit: &Visit, loaded: &Loaded, totals: &[&Slot], path: &dyn Fn(usize)
         for slot in of_cylinder {
             let Some(minute) = slot.due_minute else { continue };
             let due = zero.plus_minutes(i64::from(minute));
+            let opens = due.plus_minutes(-earliest_minutes(minute));
             let is_done = in_slot(&loaded.readings, &slot.key).is_some();
             let words = if is_done { "recorded".to_string() } else { format!("due {}", due.shown()) };
             timers.push(Timer {
@@ -114,6 +118,8 @@ fn timers(visit: &Visit, loaded: &Loaded, totals: &[&Slot], path: &dyn Fn(usize)
                 words,
                 path: format!("{}#{}", path(at), slot.key.name()),
                 is_done,
+                is_open: opens.utc <= visit.at.utc,
+                open_at: opens.exported(),
             });
         }
     }

@@ -410,9 +410,21 @@ function showTimers() {
     if (left <= 0 && item.dataset.phase !== phase) announce(`${item.dataset.dueName}: ${words}`);
     item.dataset.phase = phase;
     one("use", item)?.setAttribute("href", left > 0 ? "#mark-timer" : "#mark-due");
+    openWhenDue(one("[data-open-at]", item));
   }
   const flash = due.length > 0 && Math.floor(Date.now() / 1000) % 2 === 0;
   document.title = flash ? `● Read now: ${due[0]}` : title;
+}
+
+// A reading is taken from its allowed minute on; the page itself comes anew, with the box of the reading.
+function openWhenDue(link) {
+  if (!link?.hidden || Date.parse(link.dataset.openAt) > now()) return;
+  link.hidden = false;
+  link.addEventListener("click", () => {
+    if (link.pathname + link.search !== location.pathname + location.search) return;
+    location.hash = link.hash;
+    location.reload();
+  });
 }
 
 function announce(words) {

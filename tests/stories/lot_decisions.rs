@@ -47,6 +47,24 @@ fn a_lot_is_released_on_reviewed_results_with_the_expiry_of_the_assigned_shelf_l
 }
 
 #[test]
+fn a_released_lot_is_distributed_from_a_day_on() {
+    let lab = Lab::new();
+    let (bench, lot) = bench_and_lot(&lab);
+    reviewed(&bench, lot);
+    let qa = lab.reviewer();
+    qa.signs(&format!("/lots/{lot}/decision"), &format!("/lots/{lot}/release"), &[]);
+    let (page, action) = (format!("/lots/{lot}"), format!("/lots/{lot}/distribution"));
+    let none = qa.submits(&page, &action, &[("first_on", "yesterday"), ("markets", "")]);
+    assert_eq!(none.status, 422, "{}", none.text());
+    assert!(none.text().contains("“yesterday” is not a date"), "{}", none.text());
+    let before = qa.submits(&page, &action, &[("first_on", "1 Dec 2026"), ("markets", "Ireland")]);
+    assert_eq!(before.status, 409, "{}", before.text());
+    let seen = qa.does(&page, &action, &[("first_on", "3 Dec 2026"), ("markets", "Ireland")]);
+    assert!(seen.text().contains("Distributed from 3 Dec 2026: Ireland"), "{}", seen.text());
+    assert!(bench.sample(bench.receives(lot, Purpose::Complaint, &["assay"])).is_distributed);
+}
+
+#[test]
 fn a_release_without_complete_checked_reviewed_and_conforming_results_is_refused() {
     let lab = Lab::new();
     let (bench, lot) = bench_and_lot(&lab);

@@ -214,7 +214,9 @@ fn readings_corrections_and_signatures_are_in_every_form() {
     let files = unpacked(&export(&lab, lot).bytes);
     let json: serde_json::Value = serde_json::from_str(&text(&files, "lot.json")).unwrap();
     let table = |name: &str| json["tables"][name].as_array().unwrap().clone();
-    let count = |sample| lab.app.db.read(|reader| store::reading::of_sample(reader, sample)).unwrap().len();
+    let count = |sample| {
+        lab.app.db.read(|reader| store::reading::of_samples(reader, &format!("[{sample}]"))).unwrap().len()
+    };
     let in_database = count(sample) + count(corrected);
     assert_eq!(in_database, 7);
     assert_eq!(table("readings").len(), in_database);

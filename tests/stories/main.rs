@@ -11,6 +11,7 @@ mod backups;
 mod benches;
 mod checks;
 mod conflicts;
+mod daily;
 mod definitions;
 mod demos;
 mod formulations;

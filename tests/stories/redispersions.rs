@@ -48,6 +48,11 @@ fn stages_open_in_order_and_the_worst_bottle_judges() {
         assert_eq!(seen.status, 303, "{}", seen.text());
     }
     analyst.sees(&turns, "more than 100");
+    let readings = lab.app.db.read(|reader| store::reading::of_test(reader, tests[1])).unwrap();
+    let every: Vec<_> = readings.iter().filter(|one| one.key.field == "inversions").collect();
+    let intervals: Vec<_> = every.iter().map(|one| one.inspected_every).collect();
+    assert_eq!(intervals, [Some(5), Some(5), None], "a censored count is no interval");
+    assert_eq!(every[0].shown(), "10 (more than 5, at most 10)");
     analyst.does(&turns, &format!("/tests/{}", tests[1]), &[("then", "complete")]);
     let seen = analyst.sees(&turns, "out of specification");
     assert!(seen.text().contains("Investigation 1"), "{}", seen.text());

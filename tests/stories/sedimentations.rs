@@ -12,7 +12,7 @@ fn a_cylinder_is_read_over_hours_and_days() {
     let (_, tests, label) = at_bench(&lab, &[TestKind::Sedimentation]);
     let (analyst, page) = (lab.analyst(), page(tests[0], &label));
     let cylinders = format!("/tests/{}/cylinders", tests[0]);
-    analyst.sees(&page, "Started now, its readings fall at — 10 min: 1 Dec 2026, 09:10");
+    analyst.sees(&page, "Started now, its readings fall at: 10 min: 1 Dec 2026, 09:10");
     let full = analyst.submits(&page, &cylinders, &[("total_ml", "130")]);
     assert_eq!(full.status, 422);
     assert!(full.text().contains("it must lie between 0 and 120"), "{}", full.text());

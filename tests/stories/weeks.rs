@@ -143,6 +143,29 @@ fn the_week_says_who_has_what_and_how_long_it_takes() {
 }
 
 #[test]
+fn several_pulls_are_given_to_a_person_with_one_form() {
+    let lab = Lab::new();
+    let study = world::study(&lab, "TW-104-0640", &KINDS);
+    let pulls = [1, 3].map(|arm| world::pull(&lab, study, arm, "Initial"));
+    let ilse = lab.actor("ilse.brandt").account.to_string();
+    let names = pulls.iter().map(|pull| format!("pull.{}", pull.id)).collect::<Vec<_>>();
+    let page = "/week/assign";
+    let none = lab.manager().submits(page, page, &[("account", &ilse)]);
+    assert_eq!(none.status, 409, "{}", none.text());
+    assert!(none.text().contains("No pull is chosen"), "{}", none.text());
+    let given = [("account", ilse.as_str()), (&names[0], "yes"), (&names[1], "yes")];
+    let week = lab.manager().does(page, page, &given);
+    let minutes = supernate::domain::protocol::cost::minutes_words(pulls[0].minutes + pulls[1].minutes);
+    assert!(week.text().contains(&format!("Ilse Brandt {minutes}")), "{}", week.text());
+    for pull in &pulls {
+        lab.auditor().sees(&format!("/pulls/{}", pull.id), "to Ilse Brandt");
+    }
+    let later = world::pull(&lab, study, 1, "12 months");
+    let unknown = [("account", ilse.as_str()), (&format!("pull.{}", later.id), "yes")];
+    assert_eq!(lab.manager().submits(page, page, &unknown).status, 400);
+}
+
+#[test]
 fn the_calendar_file_has_one_event_for_each_pull_to_take() {
     let lab = Lab::new();
     let study = world::study(&lab, "TW-104-0640", &KINDS);

@@ -43,7 +43,7 @@ pub(super) const QUERIES: &[Query] = &[
         sql: of_family!(
             "select r.id, s.number as sample, t.test, t.title, c.label as container, r.replicate, r.field, r.typed,
                  r.value, r.qualifier, i.code as instrument, a.full_name as read_by, a.at as recorded_at, r.read_at,
-                 r.due_at, r.hints, r.hint_answer, r.supersedes, n.id as superseded_by,
+                 r.due_at, r.inspected_every, r.hints, r.hint_answer, r.supersedes, n.id as superseded_by,
                  case when r.supersedes is null then null else a.reason end as reason, r.act
              from reading r
              join sample_test t on t.id = r.sample_test

@@ -78,14 +78,9 @@ pub fn open_ids(reader: &Reader<'_>) -> Answer<Vec<i64>> {
 pub fn ids_to_check(reader: &Reader<'_>) -> Answer<Vec<i64>> {
     reader.all(
         "select distinct t.sample
-         from open_sample o
-         cross join sample_test t on t.sample = o.sample
-         join method_version v on v.id = t.method_version
-         join result r on r.sample_test = t.id
-         where json_extract(v.content, '$.needs_check') = 1 and r.imported is null
-         and not exists (select 1 from result_check k where k.sample_test = t.id and k.version = r.version)
-         and not exists (select 1 from result later
-             where later.sample_test = t.id and later.version > r.version)",
+         from open_check o
+         join sample_test t on t.id = o.sample_test
+         order by t.sample",
         [],
         |row| row.get(0),
     )

@@ -86,6 +86,7 @@ pub struct ReadingLine {
     pub qualifier: String,
     pub read_at: Option<String>,
     pub due_at: Option<String>,
+    pub inspected_every: Option<u32>,
     pub instrument: String,
     /// JSON of the questions it drew.
     pub hints: Option<String>,
@@ -104,7 +105,7 @@ pub fn readings(reader: &Reader<'_>, sample: i64) -> Answer<Vec<ReadingLine>> {
         "select r.id, t.id, coalesce(c.label, ''), r.replicate, r.field, r.typed, r.qualifier, r.read_at, r.due_at,
              coalesce(i.code, ''), r.hints, r.hint_answer, old.typed, old.qualifier,
              not exists (select 1 from reading later where later.supersedes = r.id),
-             a.full_name, a.at, a.reason
+             a.full_name, a.at, a.reason, r.inspected_every
          from sample_test t
          join reading r on r.sample_test = t.id
          join trail_act a on a.id = r.act
@@ -133,6 +134,7 @@ fn reading_from_row(row: &Row<'_>) -> rusqlite::Result<ReadingLine> {
         qualifier,
         read_at: row.get(7)?,
         due_at: row.get(8)?,
+        inspected_every: row.get(18)?,
         instrument: row.get(9)?,
         hints: row.get(10)?,
         hint_answer: row.get(11)?,

@@ -135,12 +135,17 @@ fn forms(visit: &Visit, pull: &Pull) -> Result<Vec<(String, Form)>, Failure> {
     Ok(forms)
 }
 
-fn assign_form(visit: &Visit, pull: &Pull) -> Result<Form, Failure> {
+/// The people a pull can be given to.
+pub(in crate::web) fn people_at_bench(visit: &Visit) -> Result<Vec<(String, String)>, Failure> {
     let people = visit.read(store::account::people)?;
     let at_bench = people.into_iter().filter(|person| {
         person.is_enabled && [Role::Analyst, Role::LabManager].iter().any(|role| person.roles.contains(role))
     });
-    let choices = at_bench.map(|person| (person.id.to_string(), person.full_name));
+    Ok(at_bench.map(|person| (person.id.to_string(), person.full_name)).collect())
+}
+
+fn assign_form(visit: &Visit, pull: &Pull) -> Result<Form, Failure> {
+    let choices = people_at_bench(visit)?;
     let now = pull.assigned.map(|account| account.to_string()).unwrap_or_default();
     Ok(Form::new(visit, &format!("/pulls/{}/assign", pull.id), "Assign")?
         .field(Field::new("account", "Who does it", Entry::Select).choices(choices).value(now))

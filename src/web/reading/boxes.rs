@@ -6,7 +6,7 @@ use super::load::Loaded;
 use crate::domain::judgement::limit::limit_words;
 use crate::domain::judgement::spread::Spread;
 use crate::domain::method::{Level, Settings};
-use crate::domain::reading::{Reading, in_slot};
+use crate::domain::reading::{Reading, in_slot, interval_words, shown};
 use crate::domain::rounding::to_decimals;
 use crate::domain::slot::{Accepts, Slot, SlotKey};
 use crate::web::field::Choice;
@@ -55,7 +55,7 @@ impl askama::filters::HtmlSafe for ReadingBox {}
 pub fn recorded_text(reading: &Reading) -> String {
     match reading.qualifier.as_str() {
         "not read" => "could not be read".to_string(),
-        _ => reading.shown(),
+        qualifier => shown(qualifier, &reading.typed),
     }
 }
 
@@ -86,12 +86,12 @@ impl ReadingBox {
             low,
             high,
             choices: choices(&slot.accepts),
-            note: note(slot),
+            note: reading.and_then(interval).unwrap_or_else(|| note(slot)),
             is_refused: refused.is_some(),
             hint: refused.or(question).unwrap_or_default(),
             is_why_open: said.wants_reason.contains(&name),
             why_words: said.form.get(&format!("{name}-why-words")).unwrap_or_default().to_string(),
-            can_be_unread: !matches!(slot.accepts, Accepts::Words),
+            can_be_unread: !matches!(slot.accepts, Accepts::Words | Accepts::Setting(_)),
             unread: said.form.get(&unread_name).unwrap_or(&unread_recorded).to_string(),
             unread_hint: error(&unread_name).unwrap_or_default(),
             unread_recorded,
@@ -126,6 +126,11 @@ fn choices(accepts: &Accepts) -> Vec<Choice> {
         anchor: grade.anchor.clone(),
     };
     grades.iter().map(choice).collect()
+}
+
+/// What a recorded count says that was looked at after each so many.
+fn interval(reading: &Reading) -> Option<String> {
+    interval_words(&reading.typed, reading.inspected_every?)
 }
 
 fn note(slot: &Slot) -> String {
@@ -215,7 +220,8 @@ fn grid_row(
 fn cell(loaded: &Loaded, slot: &Slot, said: &Said) -> Cell {
     if let Some(why) = loaded.closed(slot) {
         let there = in_slot(&loaded.readings, &slot.key);
-        return Cell::Words(there.map(Reading::shown).unwrap_or(why));
+        let shown = there.map(|one| slot.shown(&one.qualifier, &one.typed));
+        return Cell::Words(shown.unwrap_or(why));
     }
     Cell::Box(Box::new(ReadingBox::of(slot, in_slot(&loaded.readings, &slot.key), said)))
 }

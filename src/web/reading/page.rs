@@ -84,6 +84,8 @@ struct TestPage<'a> {
     instruments: Vec<InstrumentChoice>,
     chosen: String,
     grid: Option<Grid>,
+    /// A completed test shows its result; its boxes open for a correction.
+    folds_grid: bool,
     counter: Option<Counter>,
     cylinders: Option<Cylinders>,
     asks_unspecified: bool,
@@ -140,6 +142,7 @@ pub fn test_page(status: u16, visit: &Visit, loaded: &Loaded, said: &Said, stale
         },
         chosen: loaded.instrument.map(|id| id.to_string()).unwrap_or_default(),
         grid: shows_grid.then(|| grid(loaded, &slots, said)),
+        folds_grid: !loaded.is_open() && said.form.get("form_token").is_none(),
         counter: if is_ready { counter(visit, loaded, said)? } else { None },
         cylinders: if is_ready && is_cylinder { Some(cylinders(visit, loaded, said)?) } else { None },
         asks_unspecified: is_ready && loaded.is_open() && takes_unspecified(&loaded.test.content.settings),
@@ -263,8 +266,19 @@ fn label_of(loaded: &Loaded, reading: &Reading) -> String {
     }
 }
 
+/// A value as a person reads it: a grade by its word, a count with its interval.
+fn shown_of(loaded: &Loaded, reading: &Reading) -> String {
+    match loaded.sample.slots(&loaded.test).into_iter().find(|slot| slot.key == reading.key) {
+        Some(slot) if reading.qualifier == "words" => slot.shown(&reading.qualifier, &reading.typed),
+        _ => reading.shown(),
+    }
+}
+
 fn changes(loaded: &Loaded, visit: &Visit) -> Vec<ChangeRow> {
-    let was = |id: i64| loaded.readings.iter().find(|one| one.id == id).map(Reading::shown);
+    let was = |id: i64| {
+        let was = loaded.readings.iter().find(|one| one.id == id)?;
+        Some(shown_of(loaded, was))
+    };
     loaded
         .readings
         .iter()
@@ -272,7 +286,7 @@ fn changes(loaded: &Loaded, visit: &Visit) -> Vec<ChangeRow> {
         .map(|reading| ChangeRow {
             label: label_of(loaded, reading),
             was: reading.supersedes.and_then(was).unwrap_or_default(),
-            is: reading.shown(),
+            is: shown_of(loaded, reading),
             by: reading.by.clone(),
             at: show::instant(&reading.at, visit.at.zone),
             why: reading.reason.clone().unwrap_or_default(),
@@ -291,7 +305,7 @@ fn read_rows(loaded: &Loaded, visit: &Visit, refusals: &[String]) -> Vec<ReadRow
         .filter(|reading| !hides_first || reading.account == loaded.account)
         .map(|reading| ReadRow {
             label: label_of(loaded, reading),
-            shown: reading.shown(),
+            shown: shown_of(loaded, reading),
             by: reading.by.clone(),
             at: show::instant(reading.read_instant(), visit.at.zone),
         })
@@ -307,6 +321,18 @@ fn saved_words(loaded: &Loaded, visit: &Visit) -> String {
 
 /// The hidden fields that each form of the page carries.
 impl TestPage<'_> {
+    /// The one instrument there is to read with, where nothing is left to choose.
+    fn only_instrument(&self) -> Option<String> {
+        let [one] = &self.instruments[..] else { return None };
+        let words = [one.words.clone(), one.state.clone()];
+        let words = words.into_iter().filter(|words| !words.is_empty()).collect::<Vec<_>>().join(": ");
+        (one.is_usable && one.is_chosen).then_some(words)
+    }
+
+    fn can_choose(&self) -> bool {
+        self.instruments.iter().any(|one| one.is_usable)
+    }
+
     fn hidden(&self) -> Vec<(&'static str, String)> {
         vec![
             ("form_token", self.shell.form_token.clone()),

@@ -2,7 +2,7 @@
 
 use chrono_tz::Tz;
 
-use crate::domain::reading::{Question, shown};
+use crate::domain::reading::{Question, interval_words, shown};
 use crate::store::review::page::{CheckLine, ReadingLine, ResultLine};
 use crate::web::show;
 
@@ -96,6 +96,7 @@ fn reading_row(line: &ReadingLine, zone: Tz) -> ReadingRow {
     if let Some(at) = &line.due_at {
         notes.push(format!("due {}", show::instant(at, zone)));
     }
+    notes.extend(line.inspected_every.and_then(|every| interval_words(&line.typed, every)));
     ReadingRow {
         place: place(line),
         field: field_words(&line.field),

@@ -1,5 +1,6 @@
 //! The lab manager's week: what is late or closing, seven days, who has what, and the weeks to come.
 
+mod assign;
 mod lists;
 
 use askama::Template;
@@ -9,10 +10,11 @@ use super::page::Shell;
 use super::part::StatusMark;
 use super::pull::due_words;
 use super::reply::{Outcome, page};
-use super::route::{Route, get};
+use super::route::{Route, get, post};
 use super::show;
 use super::study::one::mark;
 use super::visit::Visit;
+use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::moment::{date_shown, plus_days};
 use crate::domain::protocol::cost::minutes_words;
@@ -24,6 +26,8 @@ use crate::store::week::{OpenCylinder, PersonDay};
 pub const ROUTES: &[Route] = &[
     get("/week", the_week),
     get("/week/pulls", lists::pulls),
+    get("/week/assign", assign::show),
+    post("/week/assign", &[Act::AssignPull], assign::assign),
     get("/week/list", lists::print_list),
     get("/week/calendar.ics", lists::calendar),
 ];
@@ -110,6 +114,7 @@ struct PersonView {
 /// Everything the page asks the store, in one snapshot.
 struct Facts {
     counts: [usize; 4],
+    to_check: usize,
     urgent: Vec<Pull>,
     pulls: Vec<Pull>,
     sums: Vec<store::week::DaySum>,
@@ -131,6 +136,7 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
         }
         Ok(Facts {
             counts,
+            to_check: store::check::count_waiting(reader)?,
             urgent: store::pull::list(reader, Show::Urgent, today, None, MOST_ROWS)?,
             pulls: store::pull::list(reader, Show::Week, today, None, MOST_ROWS)?,
             sums: store::week::days(reader, today, last)?,
@@ -150,6 +156,8 @@ struct WeekPage {
     late: String,
     closing: String,
     in_test: String,
+    to_check: String,
+    may_assign: bool,
     is_idle: bool,
     next: Option<(String, i64, String)>,
     now: String,
@@ -181,6 +189,11 @@ fn the_week(visit: &Visit) -> Outcome {
             count => format!("{count} windows close today or tomorrow"),
         },
         in_test: are(in_test, "are in testing"),
+        to_check: match facts.to_check {
+            1 => "1 result waits for a check".to_string(),
+            count => format!("{count} results wait for a check"),
+        },
+        may_assign: visit.may(Act::AssignPull),
         is_idle: in_week + late + closing + in_test == 0,
         next: facts.next.clone().map(|(on, pull, number)| (date_shown(on), pull, number)),
         now: visit.at.shown(),
