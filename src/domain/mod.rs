@@ -22,6 +22,7 @@ pub mod import;
 pub mod instrument;
 pub mod investigation;
 pub mod judgement;
+pub mod label;
 pub mod lot;
 pub mod lot_decision;
 pub mod lot_file;

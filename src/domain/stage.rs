@@ -106,6 +106,11 @@ pub fn may_close(
     if is_any { Ok(()) } else { Err(StageRefusal::NothingOpen(stage.words().to_string())) }
 }
 
+/// The part of an appearance that a stage stands for (decision A4).
+pub fn part_words(stage: Stage) -> &'static str {
+    if stage == Stage::AfterRedispersion { "after the label shake" } else { "as stored" }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

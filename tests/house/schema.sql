@@ -367,6 +367,10 @@ CREATE TABLE method_version (
     unique (method, number)
 ) strict;
 
+CREATE TABLE open_check (
+    sample_test integer primary key references sample_test (id)
+) strict;
+
 CREATE TABLE open_pull (
     pull integer primary key references pull (id),
     stage text not null check (stage in ('to take', 'in test')),
@@ -494,6 +498,7 @@ CREATE TABLE reading (
     qualifier text not null check (qualifier in ('=', '>', '<', 'words', 'not read')),
     read_at text,                           -- when it was read, if not at the act itself (late entry)
     due_at text,                            -- planned instant of a timed reading
+    inspected_every integer check (inspected_every > 1), -- a count seen only after each so many: known to this
     instrument integer references instrument (id),
     hints text,                             -- JSON: the hints it drew
     hint_answer text check (hint_answer in ('kept', 'changed after hint')),
@@ -836,6 +841,18 @@ begin select raise(abort, 'the trail is never changed'); end;
 
 CREATE TRIGGER guard_trail_seal_update before update on trail_seal
 begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER open_check_answered after insert on result_check
+begin
+    delete from open_check where sample_test = new.sample_test;
+end;
+
+CREATE TRIGGER open_check_asked after insert on result
+when new.imported is null and (select json_extract(v.content, '$.needs_check')
+    from sample_test t join method_version v on v.id = t.method_version where t.id = new.sample_test) = 1
+begin
+    insert or ignore into open_check (sample_test) values (new.sample_test);
+end;
 
 CREATE TRIGGER open_pull_asked after insert on sample_test
 begin

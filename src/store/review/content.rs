@@ -50,7 +50,8 @@ const PARTS: [(&str, &str); 12] = [
     (
         "reading",
         "select r.id, r.sample_test, r.container, r.replicate, r.field, r.typed, r.value, r.qualifier, r.read_at,
-             r.due_at, r.inspected_every, r.instrument, r.hints, r.hint_answer, r.supersedes, a.account, a.at, a.reason, r.act
+             r.due_at, r.inspected_every, r.instrument, r.hints, r.hint_answer, r.supersedes, a.account, a.at,
+             a.reason, r.act
          from sample_test t
          join reading r on r.sample_test = t.id
          join trail_act a on a.id = r.act

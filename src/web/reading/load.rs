@@ -3,13 +3,14 @@
 use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::instrument::{self, InstrumentFacts};
+use crate::domain::label::labelled;
 use crate::domain::method::Level;
 use crate::domain::moment::Moment;
 use crate::domain::protocol::LimitsDo;
 use crate::domain::qualification;
 use crate::domain::reading::{Reading, in_slot, may_record, may_touch};
 use crate::domain::result::reader_key;
-use crate::domain::slot::{Slot, SlotKey, labelled};
+use crate::domain::slot::{Slot, SlotKey};
 use crate::domain::specification::{Limit, LimitSet};
 use crate::domain::stage::may_read;
 use crate::domain::typed;

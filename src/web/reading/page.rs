@@ -11,7 +11,7 @@ use crate::domain::failure::{Failure, Stale};
 use crate::domain::instrument::{EventKind, may_use};
 use crate::domain::method::Settings;
 use crate::domain::reading::{Reading, standing};
-use crate::domain::slot::part_words;
+use crate::domain::stage::part_words;
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::web::bench::{place, standing as test_standing};
