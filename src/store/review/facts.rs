@@ -79,7 +79,7 @@ pub fn ids_to_check(reader: &Reader<'_>) -> Answer<Vec<i64>> {
     reader.all(
         "select distinct t.sample
          from open_check o
-         join sample_test t on t.id = o.sample_test
+         cross join sample_test t on t.id = o.sample_test
          order by t.sample",
         [],
         |row| row.get(0),
