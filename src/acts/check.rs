@@ -44,6 +44,7 @@ pub fn send_back(
 fn facts(change: &Change<'_>, sample_test: i64) -> Result<(ReviewSample, TestFacts), Failure> {
     let id = store::review::sample_of_test(change, sample_test)?;
     let sample = store::review::sample(change, id)?;
+    concerned(change, &sample)?;
     let test = sample.facts.tests.iter().find(|test| test.sample_test == sample_test).cloned();
     let test = test.ok_or_else(|| Failure::missing("test with this number"))?;
     Ok((sample, test))
@@ -56,12 +57,20 @@ fn is_qualified(change: &Change<'_>, sample_test: i64) -> Result<(), Failure> {
     Ok(qualification::may_test(&facts, today)?)
 }
 
-/// Lists the act in the histories of the sample, its lot and its study.
+/// Tells what was done with a sample, in its history and those of its lot and study.
 pub(in crate::acts) fn told(
     change: &mut Change<'_>,
     sample: &ReviewSample,
     what: &str,
 ) -> Result<(), Failure> {
+    concerned(change, sample)?;
+    change.tell(format!("{}: {what}", sample.head.number));
+    Ok(())
+}
+
+/// Lists the act in the histories of the sample, its lot and its study. Before a rule of own work is asked, so
+/// that a refused attempt stands there too.
+pub(in crate::acts) fn concerned(change: &Change<'_>, sample: &ReviewSample) -> Result<(), Failure> {
     change.concerns(Kind::Sample, sample.head.sample)?;
     change.concerns(Kind::Lot, sample.head.lot)?;
     if let Some(study) = sample.head.study {
@@ -70,6 +79,5 @@ pub(in crate::acts) fn told(
     if let Some(pull) = sample.head.pull {
         change.concerns(Kind::Pull, pull)?;
     }
-    change.tell(format!("{}: {what}", sample.head.number));
     Ok(())
 }

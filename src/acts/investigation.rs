@@ -11,7 +11,7 @@ use crate::domain::role::Role;
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::store::door::{Change, Db};
-use crate::store::investigation::{Investigation, InvestigationEntry, NewEntry};
+use crate::store::investigation::{Investigation, NewEntry};
 
 /// Writes a finding, evidence or another lot that was considered.
 pub fn write(db: &Db, actor: &Actor, id: i64, new: &NewEntry) -> Result<(), Failure> {
@@ -57,14 +57,16 @@ pub fn conclude(
     db.change(actor, Act::ConcludeInvestigation, &Reason::none(), |change| {
         let found = store::investigation::get(change, id)?;
         let entries = store::investigation::entries(change, id)?;
+        change.concerns(Kind::Investigation, id)?;
         let readings = store::reading::of_test(change, found.sample_test)?;
         may_conclude(ConcludeFacts {
             is_concluded: found.is_concluded,
             is_steered: entries.iter().any(|entry| entry.kind == "steered by"),
             findings: entries.iter().filter(|entry| entry.kind == "finding").count(),
-            is_reader: readings.iter().any(|reading| reading.account == actor.account),
+            readers: readings.iter().map(|reading| reading.account).collect(),
+            concluder: actor.account,
         })?;
-        let canonical = canonical(&found, &entries, text);
+        let canonical = store::investigation::canonical(&found, &entries, text);
         let signature = signed.put_under(change, Subject::new(Kind::Investigation, id), &canonical)?;
         let new = NewEntry {
             kind: "conclusion".to_string(),
@@ -75,26 +77,6 @@ pub fn conclude(
         store::investigation::insert_entry(change, id, &new)?;
         told(change, &found, &format!("conclusion: {text}"))
     })
-}
-
-/// The text that is signed: the result, every line of the working record, the conclusion.
-pub fn canonical(found: &Investigation, entries: &[InvestigationEntry], conclusion: &str) -> String {
-    let mut text = format!(
-        "investigation {}\nresult {} of {} {}: {} {}\nfirst known {}\n",
-        found.number,
-        found.result,
-        found.sample_number,
-        found.test_title,
-        found.shown,
-        found.unit,
-        found.first_known_at
-    );
-    for entry in entries.iter().filter(|entry| entry.kind != "conclusion") {
-        let lot = entry.other_lot.as_deref().unwrap_or_default();
-        text.push_str(&format!("{} {} {}: {} {lot}\n", entry.at, entry.by, entry.kind, entry.text));
-    }
-    text.push_str(&format!("conclusion {conclusion}\n"));
-    text
 }
 
 fn told(change: &mut Change<'_>, found: &Investigation, text: &str) -> Result<(), Failure> {

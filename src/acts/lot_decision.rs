@@ -7,6 +7,7 @@ use crate::domain::failure::Failure;
 use crate::domain::lot_decision::{Decision, DecisionFacts, may_reject, may_release};
 use crate::domain::moment::date_shown;
 use crate::domain::reason::Reason;
+use crate::domain::review::not_own_work;
 use crate::domain::shelf_life::expiry;
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::version::Versioned;
@@ -67,10 +68,11 @@ fn words(result: &ReleaseResult) -> String {
     format!("{}{part} {} {}, {}", result.title, result.shown, result.unit, result.verdict)
 }
 
-/// Releases a lot. Refuses in the order of [`may_release`].
+/// Releases a lot. Refuses own work in its release samples, then in the order of [`may_release`].
 pub fn release(db: &Db, actor: &Actor, lot: i64, signed: &Signed<Release>) -> Result<(), Failure> {
     db.change(actor, Act::DecideLot, &Reason::none(), |change| {
         let grounds = grounds(change, lot)?;
+        stayed_out(change, &grounds)?;
         may_release(&grounds.facts)?;
         let new = NewDecision {
             lot,
@@ -87,11 +89,12 @@ pub fn release(db: &Db, actor: &Actor, lot: i64, signed: &Signed<Release>) -> Re
     })
 }
 
-/// Rejects a lot; the reason is the signer's statement. Refuses in the order of [`may_reject`].
+/// Rejects a lot; the reason is the signer's statement. Refuses own work, then in the order of [`may_reject`].
 pub fn reject(db: &Db, actor: &Actor, lot: i64, signed: &Signed<Rejection>) -> Result<(), Failure> {
     let why = signed.statement().unwrap_or_default().to_string();
     db.change(actor, Act::DecideLot, &Reason::stated(&why), |change| {
         let grounds = grounds(change, lot)?;
+        stayed_out(change, &grounds)?;
         may_reject(&grounds.facts, &why)?;
         let new = NewDecision {
             lot,
@@ -105,6 +108,13 @@ pub fn reject(db: &Db, actor: &Actor, lot: i64, signed: &Signed<Rejection>) -> R
         change.tell(format!("{} rejected", grounds.lot.number));
         Ok(())
     })
+}
+
+/// Nobody decides on a lot whose release samples they read or checked.
+fn stayed_out(change: &Change<'_>, grounds: &Grounds) -> Result<(), Failure> {
+    change.concerns(Kind::Lot, grounds.lot.id)?;
+    let account = change.actor().account;
+    Ok(grounds.facts.release.iter().try_for_each(|sample| not_own_work(sample, account))?)
 }
 
 fn put<M: Means>(change: &mut Change<'_>, new: &NewDecision, signed: &Signed<M>) -> Result<(), Failure> {

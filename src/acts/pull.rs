@@ -58,6 +58,7 @@ pub fn take(db: &Db, actor: &Actor, id: i64, taking: &Taking) -> Result<(), Fail
     let reason = if taking.why.trim().is_empty() { Reason::none() } else { reason };
     db.change(actor, Act::RecordPull, &reason, |change| {
         let found = store::pull::get(change, id)?;
+        change.concerns(Kind::Pull, id)?;
         let take = as_take(change, &found, taking)?;
         pull::may_take(&take, &found.facts, actor.at.date())?;
         let is_partial = take.scanned.len() < found.facts.containers_needed;
@@ -83,6 +84,7 @@ pub fn take(db: &Db, actor: &Actor, id: i64, taking: &Taking) -> Result<(), Fail
 pub fn take_more(db: &Db, actor: &Actor, id: i64, taking: &Taking) -> Result<(), Failure> {
     db.change(actor, Act::RecordPull, &Reason::stated(taking.why.trim()), |change| {
         let found = store::pull::get(change, id)?;
+        change.concerns(Kind::Pull, id)?;
         let take = as_take(change, &found, taking)?;
         pull::may_take_more(&take, &found.facts)?;
         insert_containers(change, &take, id, container::Event::RePull, Some(&take.why))?;

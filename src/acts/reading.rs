@@ -198,6 +198,7 @@ fn may_read(
 ) -> Result<Option<i64>, Failure> {
     let actor = change.actor();
     let Some(container) = labelled(&how.label, &sample.number, &sample.containers) else {
+        concerns(change, sample)?;
         return Err(ReadingRefusal::WrongLabel(how.label.clone()).into());
     };
     if let Some(read_at) = how.read_at {

@@ -1,6 +1,6 @@
 //! The review by QA: answers to exceptions, the decision, and the signing of a list.
 
-use super::check::told;
+use super::check::{concerned, told};
 use super::secret::Secrets;
 use super::signature::{Review, Signed};
 use crate::domain::act::Act;
@@ -9,7 +9,7 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::failure::Failure;
 use crate::domain::reason::Reason;
 use crate::domain::review::exception::{NewAnswer, answered};
-use crate::domain::review::{ReviewRefusal, may_agree, may_send_back, may_sign};
+use crate::domain::review::{ReviewRefusal, may_agree, may_send_back, may_sign, not_own_work};
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::store::door::{Change, Db};
@@ -57,9 +57,8 @@ fn is_opened(secrets: &Secrets, change: &Change<'_>, sample: i64, opened: &Opene
 pub fn answer(db: &Db, actor: &Actor, sample: i64, about: &str, new: &NewAnswer) -> Result<(), Failure> {
     db.change(actor, Act::AnswerException, &Reason::none(), |change| {
         let found = store::review::sample(change, sample)?;
-        if found.facts.is_own_work_of(change.actor().account) {
-            return Err(ReviewRefusal::OwnWork(found.head.number).into());
-        }
+        concerned(change, &found)?;
+        not_own_work(&found.facts, change.actor().account)?;
         let exception = found.facts.exceptions.iter().find(|exception| exception.about == about);
         let text = answered(exception, new)?;
         let flag = exception.and_then(|exception| exception.flag);
@@ -76,6 +75,7 @@ pub fn agree(db: &Db, secrets: &Secrets, actor: &Actor, sample: i64, opened: &Op
     db.change(actor, Act::DecideReview, &Reason::none(), |change| {
         is_opened(secrets, change, sample, opened)?;
         let found = store::review::sample(change, sample)?;
+        concerned(change, &found)?;
         may_agree(&found.facts, change.actor().account)?;
         store::review::decision::insert(change, sample, "agree", &opened.content_digest, None)?;
         told(change, &found, "agreed, not signed yet")
@@ -158,6 +158,9 @@ pub fn sign(
         let (kept, dropped) = split(change, store::review::facts::many(change, &ids)?, listed)?;
         if kept.is_empty() && !dropped.is_empty() {
             return Err(ReviewRefusal::AllChanged.into());
+        }
+        for (sample, _) in &kept {
+            concerned(change, sample)?;
         }
         let facts: Vec<_> = kept.iter().map(|(sample, _)| sample.facts.clone()).collect();
         may_sign(&facts, change.actor().account, signed.statement().unwrap_or_default())?;

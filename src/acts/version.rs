@@ -131,11 +131,11 @@ pub fn approve(
         let signatures = store::signature::of(change, of.kind(), id)?;
         let authors: Vec<i64> =
             signatures.iter().map(|signature| signature.account).chain([version.author]).collect();
+        concerns(change, of, id, version.parent)?;
         may_approve(version.state, actor.account, &authors)?;
         seen_is_current(&version, seen)?;
         check(change, &version)?;
         signed.put_under(change, Subject::new(of.kind(), id), &version.canonical())?;
-        concerns(change, of, id, version.parent)?;
         change.tell(format!("version {}", version.number));
         Ok(())
     })

@@ -49,8 +49,8 @@ pub enum CheckRefusal {
     TestSentBack(String),
     #[error("{0} is not waiting for a check.")]
     NotWaitingForCheck(String),
-    #[error("You read or completed {0} yourself. A second qualified person checks it.")]
-    OwnReadings(String),
+    #[error("You read or completed {title} yourself. A second qualified person checks it.")]
+    OwnReadings { title: String, performers: Vec<i64> },
     #[error("{0} was completed anew since you opened this page. Look at it again, then decide.")]
     ResultChanged(String),
     #[error("Say in at least {SHORTEST_WHY} characters what to look at again; the analyst reads it.")]
@@ -60,6 +60,13 @@ pub enum CheckRefusal {
 impl NamedReason for CheckRefusal {
     fn field(&self) -> Option<String> {
         matches!(self, CheckRefusal::WhyTooShort).then(|| "why".to_string())
+    }
+
+    fn took_part(&self) -> Option<Vec<i64>> {
+        match self {
+            CheckRefusal::OwnReadings { performers, .. } => Some(performers.clone()),
+            _ => None,
+        }
     }
 }
 
@@ -74,7 +81,7 @@ pub fn may_check(facts: &TestFacts, checker: i64, seen_version: i64) -> Result<(
         TestState::WaitingForCheck => {}
     }
     if facts.performers.contains(&checker) {
-        return Err(CheckRefusal::OwnReadings(title()));
+        return Err(CheckRefusal::OwnReadings { title: title(), performers: facts.performers.clone() });
     }
     if facts.version != Some(seen_version) {
         return Err(CheckRefusal::ResultChanged(title()));
@@ -129,11 +136,12 @@ mod tests {
     #[test]
     fn the_check_is_refused_in_the_documented_order() {
         let ph = || "pH".to_string();
+        let own_readings = CheckRefusal::OwnReadings { title: ph(), performers: vec![4] };
         let table = [
             (facts(None, None, true), 4, 1, Err(CheckRefusal::TestOpen(ph()))),
             (facts(Some(1), Some(false), true), 4, 2, Err(CheckRefusal::TestSentBack(ph()))),
             (facts(Some(1), Some(true), true), 4, 2, Err(CheckRefusal::NotWaitingForCheck(ph()))),
-            (facts(Some(1), None, true), 4, 2, Err(CheckRefusal::OwnReadings(ph()))),
+            (facts(Some(1), None, true), 4, 2, Err(own_readings)),
             (facts(Some(2), None, true), 5, 1, Err(CheckRefusal::ResultChanged(ph()))),
             (facts(Some(2), None, true), 5, 2, Ok(())),
         ];

@@ -10,6 +10,8 @@ pub enum Failure {
     Refused(Refusal),
     /// Somebody else changed the record since the form was shown. 409 with both values.
     Stale(Stale),
+    /// A rule said no because it is the person's own work. 403, recorded in the trail.
+    OwnWork(OwnWork),
     /// No role of the person permits the act. 403, recorded in the trail.
     Denied(Act),
     /// The thing does not exist, or not for this person. 404.
@@ -26,6 +28,15 @@ pub enum Failure {
     Held(String),
     /// Something broke. 500 with a reference number only.
     Fault(Fault),
+}
+
+/// An attempt to sign, check or decide on own work.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct OwnWork {
+    pub act: Act,
+    pub sentence: String,
+    /// The accounts that took part; another person with a role for the act could do it.
+    pub took_part: Vec<i64>,
 }
 
 /// What changed under the person's hands.
@@ -82,6 +93,7 @@ impl std::fmt::Display for Failure {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         match self {
             Failure::Refused(refusal) => f.write_str(&refusal.sentence),
+            Failure::OwnWork(own) => f.write_str(&own.sentence),
             Failure::Stale(stale) => write!(f, "{} was changed by {}.", stale.what, stale.changed_by),
             Failure::Denied(act) => write!(f, "This act needs one of these roles: {}.", act.who_may()),
             Failure::Missing(what) => write!(f, "There is no {what}."),

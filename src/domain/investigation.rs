@@ -20,7 +20,7 @@ pub enum InvestigationRefusal {
     #[error("{0} is neither lab manager nor QA reviewer and cannot steer an investigation.")]
     CannotSteer(String),
     #[error("You took part in the readings. Another QA reviewer concludes.")]
-    OwnReadings,
+    OwnReadings(Vec<i64>),
 }
 
 impl NamedReason for InvestigationRefusal {
@@ -30,6 +30,13 @@ impl NamedReason for InvestigationRefusal {
                 Some("other_lot".to_string())
             }
             InvestigationRefusal::CannotSteer(_) => Some("account".to_string()),
+            _ => None,
+        }
+    }
+
+    fn took_part(&self) -> Option<Vec<i64>> {
+        match self {
+            InvestigationRefusal::OwnReadings(readers) => Some(readers.clone()),
             _ => None,
         }
     }
@@ -53,12 +60,14 @@ pub fn may_write(
 }
 
 /// What concluding asks.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Debug)]
 pub struct ConcludeFacts {
     pub is_concluded: bool,
     pub is_steered: bool,
     pub findings: usize,
-    pub is_reader: bool,
+    /// The accounts that took the readings, and the one that concludes.
+    pub readers: Vec<i64>,
+    pub concluder: i64,
 }
 
 /// Refuses in this order: concluded, nobody steers, no finding, own readings.
@@ -72,8 +81,8 @@ pub fn may_conclude(facts: ConcludeFacts) -> Result<(), InvestigationRefusal> {
     if facts.findings == 0 {
         return Err(InvestigationRefusal::NoFinding);
     }
-    if facts.is_reader {
-        return Err(InvestigationRefusal::OwnReadings);
+    if facts.readers.contains(&facts.concluder) {
+        return Err(InvestigationRefusal::OwnReadings(facts.readers));
     }
     Ok(())
 }
@@ -85,16 +94,22 @@ mod tests {
     #[test]
     fn refusals_come_in_their_order() {
         use InvestigationRefusal::*;
-        let good = ConcludeFacts { is_concluded: false, is_steered: true, findings: 1, is_reader: false };
+        let good = || ConcludeFacts {
+            is_concluded: false,
+            is_steered: true,
+            findings: 1,
+            readers: vec![4],
+            concluder: 7,
+        };
         let table = [
-            (good, None),
-            (ConcludeFacts { is_reader: true, ..good }, Some(OwnReadings)),
-            (ConcludeFacts { findings: 0, is_reader: true, ..good }, Some(NoFinding)),
-            (ConcludeFacts { is_steered: false, findings: 0, ..good }, Some(NobodySteers)),
-            (ConcludeFacts { is_concluded: true, is_steered: false, ..good }, Some(InvestigationConcluded)),
+            (good(), None),
+            (ConcludeFacts { concluder: 4, ..good() }, Some(OwnReadings(vec![4]))),
+            (ConcludeFacts { findings: 0, concluder: 4, ..good() }, Some(NoFinding)),
+            (ConcludeFacts { is_steered: false, findings: 0, ..good() }, Some(NobodySteers)),
+            (ConcludeFacts { is_concluded: true, is_steered: false, ..good() }, Some(InvestigationConcluded)),
         ];
         for (facts, expected) in table {
-            assert_eq!(may_conclude(facts).err(), expected, "{facts:?}");
+            assert_eq!(may_conclude(facts.clone()).err(), expected, "{facts:?}");
         }
         assert_eq!(may_write(true, "finding", None, 4), Err(InvestigationConcluded));
         assert_eq!(may_write(false, "other lot considered", None, 4), Err(OtherLotMissing));

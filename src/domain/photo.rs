@@ -6,17 +6,21 @@ use super::method::Halves;
 use super::refusal::NamedReason;
 use super::rounding::to_decimals;
 
-/// Heights as fractions of the picture, 0 at its top.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+/// The marks as fractions of the picture: heights from 0 at its top, and where across, from 0 at the left, when they
+/// were clicked. Only the heights give the ratio.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub struct Marks {
     pub base_y: Decimal,
     pub interface_y: Decimal,
     pub fill_line_y: Decimal,
+    pub base_x: Option<Decimal>,
+    pub interface_x: Option<Decimal>,
+    pub fill_line_x: Option<Decimal>,
 }
 
 #[derive(Clone, Debug, PartialEq, Eq, thiserror::Error)]
 pub enum PhotoRefusal {
-    #[error("A mark lies outside the picture. Heights are fractions from 0 (top) to 1.")]
+    #[error("A mark lies outside the picture. Places are fractions from 0 (top, left) to 1.")]
     OutsidePicture,
     #[error("The fill line does not lie above the base. Mark base, interface and fill line again.")]
     FillBelowBase,
@@ -39,7 +43,8 @@ impl NamedReason for PhotoRefusal {
 /// Refuses in this order: outside the picture, fill line below the base, interface below the base.
 pub fn ratio(marks: Marks) -> Result<Decimal, PhotoRefusal> {
     let all = [marks.base_y, marks.interface_y, marks.fill_line_y];
-    if all.iter().any(|y| *y < Decimal::ZERO || *y > Decimal::ONE) {
+    let across = [marks.base_x, marks.interface_x, marks.fill_line_x];
+    if all.iter().chain(across.iter().flatten()).any(|at| *at < Decimal::ZERO || *at > Decimal::ONE) {
         return Err(PhotoRefusal::OutsidePicture);
     }
     if marks.fill_line_y >= marks.base_y {
@@ -68,6 +73,8 @@ mod tests {
             base_y: d(base),
             interface_y: d(interface),
             fill_line_y: d(fill),
+            base_x: Some(d("0.5")),
+            ..Marks::default()
         };
         assert_eq!(ratio(marks("0.9000", "0.5000", "0.1000")), Ok(d("0.5000")));
         assert_eq!(ratio(marks("0.9", "0.3", "0.0")), Ok(d("0.6667")));

@@ -256,6 +256,10 @@ impl NamedReason for PullRefusal {
             _ => None,
         }
     }
+
+    fn is_noted(&self) -> bool {
+        matches!(self, PullRefusal::WrongLabel { .. } | PullRefusal::LabelOfOther { .. })
+    }
 }
 
 /// A pull that is neither imported, taken, missed nor cancelled. Refuses in this order.

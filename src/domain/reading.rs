@@ -281,6 +281,10 @@ impl NamedReason for ReadingRefusal {
             _ => None,
         }
     }
+
+    fn is_noted(&self) -> bool {
+        matches!(self, ReadingRefusal::WrongLabel(_))
+    }
 }
 
 /// Whether readings can be recorded at all. Refuses in this order: the pull, the signature, the completed test.

@@ -64,7 +64,7 @@ pub enum SignatureRefusal {
     #[error("This record was signed with this meaning already.")]
     AlreadySigned,
     #[error("The author cannot approve. A second person with the role can.")]
-    ApproverIsAuthor,
+    ApproverIsAuthor(Vec<i64>),
     #[error("It has changed since you looked at it. Look at it again, then sign.")]
     ChangedSinceSeen,
     #[error("The author signs first; then a second person approves.")]
@@ -76,6 +76,13 @@ impl NamedReason for SignatureRefusal {
         match self {
             SignatureRefusal::NotAuthenticated => Some("password".to_string()),
             SignatureRefusal::NotOwnName(_) => Some("user_name".to_string()),
+            _ => None,
+        }
+    }
+
+    fn took_part(&self) -> Option<Vec<i64>> {
+        match self {
+            SignatureRefusal::ApproverIsAuthor(authors) => Some(authors.clone()),
             _ => None,
         }
     }

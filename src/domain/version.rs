@@ -106,7 +106,7 @@ pub fn may_approve(state: VersionState, approver: i64, authors: &[i64]) -> Resul
         VersionState::Draft | VersionState::Imported => Err(SignatureRefusal::NotSignedByAuthor),
         VersionState::Approved => Err(SignatureRefusal::AlreadySigned),
         VersionState::SignedByAuthor if authors.contains(&approver) => {
-            Err(SignatureRefusal::ApproverIsAuthor)
+            Err(SignatureRefusal::ApproverIsAuthor(authors.to_vec()))
         }
         VersionState::SignedByAuthor => Ok(()),
     }
@@ -194,7 +194,7 @@ mod tests {
         let table = [
             (VersionState::Draft, 2, Err(SignatureRefusal::NotSignedByAuthor)),
             (VersionState::Approved, 2, Err(SignatureRefusal::AlreadySigned)),
-            (VersionState::SignedByAuthor, 1, Err(SignatureRefusal::ApproverIsAuthor)),
+            (VersionState::SignedByAuthor, 1, Err(SignatureRefusal::ApproverIsAuthor(vec![1]))),
             (VersionState::SignedByAuthor, 2, Ok(())),
             (VersionState::Imported, 2, Err(SignatureRefusal::NotSignedByAuthor)),
         ];

@@ -107,39 +107,64 @@ pub struct Measured {
     pub at: String,
 }
 
+const MEASURED: &str =
+    "select m.base_y, m.interface_y, m.fill_line_y, m.base_x, m.interface_x, m.fill_line_x,
+        m.ratio, m.account, a.full_name, a.at, m.attachment
+    from photo_mark m join trail_act a on a.id = m.act";
+
+fn measured_row(row: &Row<'_>) -> rusqlite::Result<Measured> {
+    let across = |place: usize| row.get::<_, Option<Exact>>(place).map(|found| found.map(|exact| exact.0));
+    Ok(Measured {
+        marks: Marks {
+            base_y: row.get::<_, Exact>(0)?.0,
+            interface_y: row.get::<_, Exact>(1)?.0,
+            fill_line_y: row.get::<_, Exact>(2)?.0,
+            base_x: across(3)?,
+            interface_x: across(4)?,
+            fill_line_x: across(5)?,
+        },
+        ratio: row.get::<_, Exact>(6)?.0,
+        account: row.get(7)?,
+        by: row.get(8)?,
+        at: row.get(9)?,
+    })
+}
+
 /// The measurements on a photo, oldest first.
 pub fn measured(reader: &Reader<'_>, attachment: i64) -> Answer<Vec<Measured>> {
     reader.all(
-        "select m.base_y, m.interface_y, m.fill_line_y, m.ratio, m.account, a.full_name, a.at
-         from photo_mark m join trail_act a on a.id = m.act
-         where m.attachment = :attachment
-         order by m.id",
+        &format!("{MEASURED} where m.attachment = :attachment order by m.id"),
         named_params! { ":attachment": attachment },
-        |row| {
-            Ok(Measured {
-                marks: Marks {
-                    base_y: row.get::<_, Exact>(0)?.0,
-                    interface_y: row.get::<_, Exact>(1)?.0,
-                    fill_line_y: row.get::<_, Exact>(2)?.0,
-                },
-                ratio: row.get::<_, Exact>(3)?.0,
-                account: row.get(4)?,
-                by: row.get(5)?,
-                at: row.get(6)?,
-            })
-        },
+        measured_row,
+    )
+}
+
+/// The measurements on all photos of a record with the number of each photo, oldest first.
+pub fn measured_of(reader: &Reader<'_>, subject: Subject) -> Answer<Vec<(i64, Measured)>> {
+    reader.all(
+        &format!(
+            "{MEASURED} join attachment f on f.id = m.attachment
+             where f.kind = :kind and f.subject = :subject
+             order by m.id"
+        ),
+        named_params! { ":kind": subject.kind.code(), ":subject": subject.id },
+        |row| Ok((row.get(10)?, measured_row(row)?)),
     )
 }
 
 pub fn insert_marks(change: &Change<'_>, attachment: i64, marks: &Marks, ratio: Decimal) -> Answer<i64> {
     change.insert(
-        "insert into photo_mark (attachment, base_y, interface_y, fill_line_y, ratio, account)
-         values (:attachment, :base, :interface, :fill, :ratio, :account)",
+        "insert into photo_mark (attachment, base_y, interface_y, fill_line_y, base_x, interface_x, fill_line_x,
+             ratio, account)
+         values (:attachment, :base, :interface, :fill, :base_x, :interface_x, :fill_x, :ratio, :account)",
         named_params! {
             ":attachment": attachment,
             ":base": Exact(marks.base_y),
             ":interface": Exact(marks.interface_y),
             ":fill": Exact(marks.fill_line_y),
+            ":base_x": marks.base_x.map(Exact),
+            ":interface_x": marks.interface_x.map(Exact),
+            ":fill_x": marks.fill_line_x.map(Exact),
             ":ratio": Exact(ratio),
             ":account": change.actor().account,
         },

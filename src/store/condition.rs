@@ -4,7 +4,8 @@ use rusqlite::{Row, named_params};
 
 use super::door::Change;
 use super::{Answer, Exact, Reader};
-use crate::domain::condition::{NewCondition, Use};
+use crate::domain::condition::{self, HumidityRule, NewCondition, Use};
+use crate::domain::moment::Moment;
 
 /// A condition as pages and rules need it.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -73,6 +74,38 @@ pub fn insert(change: &Change<'_>, new: &NewCondition, is_in_catalogue: bool) ->
             ":least_months": new.least_months,
             ":source": new.source,
             ":in_catalogue": is_in_catalogue,
+        },
+    )
+}
+
+/// The text that QA signed for a condition outside the catalogue, from its row and the act that added it; `None` for
+/// one of the catalogue.
+pub fn canonical_of(reader: &Reader<'_>, id: i64) -> Answer<Option<String>> {
+    reader.maybe(
+        "select c.code, c.temperature_c, c.temperature_tolerance_c, c.humidity_percent,
+             c.humidity_tolerance_percent, c.humidity_rule, c.use, c.least_months, c.source,
+             coalesce(a.reason, ''), a.at, a.zone
+         from condition c join trail_act a on a.id = c.act
+         where c.id = :id and c.in_catalogue = 0 and c.source <> 'imported'",
+        named_params! { ":id": id },
+        |row| {
+            let rule: String = row.get(5)?;
+            let zone: String = row.get(11)?;
+            let added =
+                zone.parse().ok().and_then(|zone| Moment::from_stored(&row.get::<_, String>(10).ok()?, zone));
+            let new = NewCondition {
+                code: row.get(0)?,
+                temperature_c: row.get::<_, Exact>(1)?.0,
+                temperature_tolerance_c: row.get::<_, Exact>(2)?.0,
+                humidity_percent: row.get::<_, Option<Exact>>(3)?.map(|exact| exact.0),
+                humidity_tolerance_percent: row.get::<_, Option<Exact>>(4)?.map(|exact| exact.0),
+                humidity_rule: HumidityRule::from_words(&rule).ok_or(rusqlite::Error::InvalidQuery)?,
+                used_for: Use::from_words(&row.get::<_, String>(6)?),
+                least_months: row.get(7)?,
+                source: row.get(8)?,
+            };
+            let added = added.ok_or(rusqlite::Error::InvalidQuery)?;
+            Ok(condition::canonical(&new, &row.get::<_, String>(9)?, added.date()))
         },
     )
 }

@@ -1,5 +1,6 @@
 //! The one door for every write: authority, trail, body and seal in one transaction.
 
+use std::cell::RefCell;
 use std::ops::Deref;
 use std::path::{Path, PathBuf};
 use std::sync::atomic::{AtomicI64, AtomicU64, Ordering};
@@ -8,9 +9,9 @@ use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use rusqlite::{Connection, OpenFlags, Params};
 
 use super::{Answer, Reader, migrate, submission, trail, trigger};
-use crate::domain::act::Act;
+use crate::domain::act::{Act, Allowed};
 use crate::domain::actor::Actor;
-use crate::domain::failure::Failure;
+use crate::domain::failure::{Failure, OwnWork};
 use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
@@ -48,6 +49,8 @@ pub struct Change<'a> {
     actor: &'a Actor,
     act: i64,
     detail: Option<String>,
+    /// The records it concerns so far: a refused attempt on own work is listed there as well.
+    concerned: RefCell<Vec<Subject>>,
 }
 
 impl<'a> Deref for Change<'a> {
@@ -75,6 +78,7 @@ impl Change<'_> {
 
     /// Lists this act in the history of a record.
     pub fn concerns(&self, kind: Kind, id: i64) -> Answer<()> {
+        self.concerned.borrow_mut().push(Subject::new(kind, id));
         trail::concerns(self, Subject::new(kind, id))
     }
 
@@ -145,8 +149,9 @@ impl Db {
 
     /// Does one act: authority, then the body, then the trail's row and the seal, in one transaction.
     ///
-    /// A role that does not permit the act is `Denied`, and the denial is itself an act in the trail. Whatever
-    /// goes wrong in the body rolls everything back.
+    /// A role that does not permit the act is `Denied`, and a rule that the act would be on own work is `OwnWork`;
+    /// both, and refusals that are noted, are themselves acts in the trail. Whatever goes wrong in the body rolls
+    /// everything back.
     pub fn change<T>(
         &self,
         actor: &Actor,
@@ -158,7 +163,35 @@ impl Db {
             self.write(actor, act, reason, None, "denied", |_| Ok(()))?;
             return Err(Failure::Denied(act));
         };
-        self.write(actor, act, reason, role, "done", body)
+        let mut concerned = Vec::new();
+        let done = self.write(actor, act, reason, role, "done", |change| {
+            let answer = body(change);
+            concerned = change.concerned.take();
+            answer
+        });
+        let Err(Failure::Refused(refusal)) = &done else { return done };
+        if refusal.is_noted {
+            self.write(actor, act, reason, role, "denied", |change| {
+                change.tell(&refusal.sentence);
+                concerned.iter().try_for_each(|subject| change.concerns(subject.kind, subject.id))
+            })?;
+        }
+        if let Some(took_part) = refusal.took_part.clone() {
+            return Err(Failure::OwnWork(OwnWork { act, sentence: refusal.sentence.clone(), took_part }));
+        }
+        done
+    }
+
+    /// Refuses a person whose roles permit none of these acts; the attempt is itself an act in the trail.
+    pub fn permits(&self, actor: &Actor, acts: &[Act]) -> Answer<()> {
+        let is_permitted =
+            |act: &Act| !matches!(act.allowed(), Allowed::Roles(_)) || permitted_role(actor, *act).is_some();
+        match acts.first() {
+            Some(first) if !acts.iter().any(is_permitted) => {
+                self.change(actor, *first, &Reason::none(), |_| Ok(()))
+            }
+            _ => Ok(()),
+        }
     }
 
     fn write<T>(
@@ -177,6 +210,7 @@ impl Db {
             actor,
             act: trail::next_act(&Reader::over(&connection))?,
             detail: None,
+            concerned: RefCell::default(),
         };
         self.current.line.store(0, Ordering::SeqCst);
         self.current.act.store(change.act, Ordering::SeqCst);

@@ -158,6 +158,33 @@ pub fn entries(reader: &Reader<'_>, investigation: i64) -> Answer<Vec<Investigat
     )
 }
 
+/// The text that is signed: the result, every line of the working record, the conclusion.
+pub fn canonical(found: &Investigation, entries: &[InvestigationEntry], conclusion: &str) -> String {
+    let mut text = format!(
+        "investigation {}\nresult {} of {} {}: {} {}\nfirst known {}\n",
+        found.number,
+        found.result,
+        found.sample_number,
+        found.test_title,
+        found.shown,
+        found.unit,
+        found.first_known_at
+    );
+    for entry in entries.iter().filter(|entry| entry.kind != "conclusion") {
+        let lot = entry.other_lot.as_deref().unwrap_or_default();
+        text.push_str(&format!("{} {} {}: {} {lot}\n", entry.at, entry.by, entry.kind, entry.text));
+    }
+    text.push_str(&format!("conclusion {conclusion}\n"));
+    text
+}
+
+/// The text that the conclusion's signature went over, from the rows as they are; `None` without a conclusion.
+pub fn canonical_of(reader: &Reader<'_>, id: i64) -> Answer<Option<String>> {
+    let (found, entries) = (get(reader, id)?, entries(reader, id)?);
+    let conclusion = entries.iter().find(|entry| entry.kind == "conclusion");
+    Ok(conclusion.map(|entry| canonical(&found, &entries, &entry.text)))
+}
+
 /// What is written into the working record.
 #[derive(Clone, Debug, Default)]
 pub struct NewEntry {

@@ -311,6 +311,7 @@ fn change_password(visit: &Visit) -> Outcome {
 }
 
 fn end_session(visit: &Visit) -> Outcome {
+    visit.knows_form(&["session"])?;
     let digest = visit.form.get("session").unwrap_or_default();
     acts::session::end_own(visit.db(), visit.actor()?, digest)?;
     super::reply::see("/me")

@@ -6,6 +6,7 @@ use super::field::{Entry, Field};
 use super::form::{self, Form, Typed};
 use super::page::Shell;
 use super::part::Trail;
+use super::photo::Measurements;
 use super::reply::{Outcome, Reply, page_with};
 use super::route::{Route, get, post};
 use super::show;
@@ -15,11 +16,11 @@ use crate::acts::attachment::NewFile;
 use crate::domain::act::Act;
 use crate::domain::attachment::MediaType;
 use crate::domain::failure::Failure;
-use crate::domain::photo::{Marks, sees_others};
+use crate::domain::photo::Marks;
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::typed::NumberRule;
 use crate::store;
-use crate::store::attachment::{Attachment, Measured};
+use crate::store::attachment::Attachment;
 
 pub const ROUTES: &[Route] = &[
     get("/files/{kind}/{subject}", files),
@@ -147,15 +148,6 @@ fn attach(visit: &Visit) -> Outcome {
     )
 }
 
-struct MeasureRow {
-    by: String,
-    at: String,
-    base: String,
-    interface: String,
-    fill_line: String,
-    ratio: String,
-}
-
 #[derive(Template)]
 #[template(path = "attachment/attachment.html")]
 struct AttachmentPage {
@@ -164,8 +156,7 @@ struct AttachmentPage {
     digest: String,
     is_photo: bool,
     measures: Option<Form>,
-    rows: Vec<MeasureRow>,
-    hidden: usize,
+    measured: Measurements,
     trail: Trail,
 }
 
@@ -193,27 +184,11 @@ fn attachment_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) ->
         None if is_photo && visit.may(Act::MarkPhoto) => Some(marks_form(visit, id)?),
         None => None,
     };
-    let by: Vec<i64> = measured.iter().map(|one| one.account).collect();
-    let sees = sees_others(&by, visit.actor()?.account, visit.may(Act::MarkPhoto));
-    let hidden = if sees { 0 } else { measured.len() };
-    let rows =
-        if sees { measured.into_iter().map(|one| measure_row(one, visit)).collect() } else { Vec::new() };
+    let measured = Measurements::of(visit, measured)?;
     let digest = show::digest(&found.sha256);
     let trail = Trail::of(&lines, visit.at.zone);
-    let page =
-        AttachmentPage { shell, file: row(found, visit), digest, is_photo, measures, rows, hidden, trail };
+    let page = AttachmentPage { shell, file: row(found, visit), digest, is_photo, measures, measured, trail };
     page_with(status, &page)
-}
-
-fn measure_row(measured: Measured, visit: &Visit) -> MeasureRow {
-    MeasureRow {
-        by: measured.by,
-        at: show::instant(&measured.at, visit.at.zone),
-        base: measured.marks.base_y.to_string(),
-        interface: measured.marks.interface_y.to_string(),
-        fill_line: measured.marks.fill_line_y.to_string(),
-        ratio: measured.ratio.to_string(),
-    }
 }
 
 const MARKS: [(&str, &str); 3] = [("base", "Base"), ("interface", "Interface"), ("fill", "Fill line")];
@@ -241,15 +216,23 @@ fn measure(visit: &Visit) -> Outcome {
     )
 }
 
-/// The ratio needs heights alone; the place across only says where somebody clicked.
+/// Heights are needed; the place across is kept where somebody clicked.
 fn typed_marks(typed: &mut Typed<'_>) -> Option<Marks> {
-    let mut heights = Vec::new();
+    let (mut across, mut heights) = (Vec::new(), Vec::new());
     for (name, words) in MARKS {
         let rule = NumberRule::between(words, 0, 1);
-        typed.maybe_decimal(&format!("{name}.x"), &rule);
+        across.push(typed.maybe_decimal(&format!("{name}.x"), &rule));
         heights.push(typed.decimal(&format!("{name}.y"), &rule).map(|number| number.value));
     }
-    Some(Marks { base_y: heights[0]?, interface_y: heights[1]?, fill_line_y: heights[2]? })
+    let x = |place: usize| across[place].clone().map(|number| number.map(|number| number.value));
+    Some(Marks {
+        base_y: heights[0]?,
+        interface_y: heights[1]?,
+        fill_line_y: heights[2]?,
+        base_x: x(0)?,
+        interface_x: x(1)?,
+        fill_line_x: x(2)?,
+    })
 }
 
 fn download(visit: &Visit) -> Outcome {

@@ -13,6 +13,7 @@ use crate::acts;
 use crate::acts::signature::Approval;
 use crate::domain::act::Act;
 use crate::domain::condition::{HumidityRule, NewCondition, Use};
+use crate::domain::digest::sha256_hex;
 use crate::domain::failure::Failure;
 use crate::domain::reason::Reason;
 use crate::domain::role::Role;
@@ -80,16 +81,16 @@ struct ConditionPage {
 
 fn one(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
-    let (condition, signed, lines) = visit.read(|reader| {
+    let (condition, signed, text, lines) = visit.read(|reader| {
         Ok((
             store::condition::get(reader, id)?,
             store::signature::of(reader, Kind::Condition, id)?,
+            store::condition::canonical_of(reader, id)?,
             store::trail::of_subject(reader, Subject::new(Kind::Condition, id))?,
         ))
     })?;
     let shell = Shell::of(visit, &condition.name).crumb("/conditions", "Conditions");
-    // A condition is never changed, so its signature always stands over what was signed.
-    let digest = signed.first().map(|one| one.digest.clone()).unwrap_or_default();
+    let digest = sha256_hex(text.unwrap_or_default().as_bytes());
     let signatures = Signatures::of(&signed, &digest, visit.at.zone);
     page(&ConditionPage { shell, row: row(condition), signatures, trail: Trail::of(&lines, visit.at.zone) })
 }

@@ -5,7 +5,8 @@ use askama::Template;
 use super::page::Shell;
 use super::reply::{Reply, page_with};
 use super::visit::Visit;
-use crate::domain::failure::Failure;
+use crate::domain::failure::{Failure, OwnWork};
+use crate::store;
 
 #[derive(Template)]
 #[template(path = "failure.html")]
@@ -18,7 +19,11 @@ struct FailurePage {
 
 /// The page of a failure. A fault's full chain goes to the log once, under the reference number of the page.
 pub fn reply(visit: &Visit, failure: Failure) -> Reply {
-    let (status, title, sentence, help) = words(&failure);
+    let (status, title, sentence, mut help) = words(&failure);
+    if let Failure::OwnWork(own) = &failure {
+        help = who_could(visit, own);
+        tracing::warn!(path = %visit.path, act = own.act.code(), "own work refused");
+    }
     let reference = match &failure {
         Failure::Fault(fault) => Some(logged(visit, fault)),
         _ => None,
@@ -49,6 +54,7 @@ fn words(failure: &Failure) -> (u16, &'static str, String, String) {
             format!("“{}” needs one of these roles: {}.", capital(act.words()), act.who_may()),
             "The attempt is noted in the history. An administrator can change roles.".to_string(),
         ),
+        Failure::OwnWork(own) => (403, "This is your own work", own.sentence.clone(), String::new()),
         Failure::Missing(what) => (
             404,
             "Not found",
@@ -73,6 +79,23 @@ fn words(failure: &Failure) -> (u16, &'static str, String, String) {
             "Tell the administrator the reference below; with it the log says what happened.".to_string(),
         ),
     }
+}
+
+/// Who holds a role for the act and took no part (screen_U76).
+fn who_could(visit: &Visit, own: &OwnWork) -> String {
+    let people = visit.read(store::account::people).unwrap_or_default();
+    let could = |person: &&store::account::Account| {
+        person.is_enabled
+            && own.act.role_for(&person.roles).is_some()
+            && !own.took_part.contains(&person.id)
+            && visit.actor().is_ok_and(|actor| actor.account != person.id)
+    };
+    let names: Vec<&str> = people.iter().filter(could).map(|person| person.full_name.as_str()).collect();
+    let who = match names.is_empty() {
+        true => format!("Nobody else holds one of these roles: {}.", own.act.who_may()),
+        false => format!("With a role for it and no part in the work: {}.", names.join(", ")),
+    };
+    format!("{who} Nothing was changed; the attempt is noted in the history.")
 }
 
 fn logged(visit: &Visit, fault: &crate::domain::failure::Fault) -> String {

@@ -82,10 +82,11 @@ fn investigation(visit: &Visit) -> Outcome {
 
 fn investigation_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
     let subject = Subject::new(Kind::Investigation, id);
-    let (found, entries, signed, trail) = visit.read(|reader| {
+    let (found, entries, text, signed, trail) = visit.read(|reader| {
         Ok((
             store::investigation::get(reader, id)?,
             store::investigation::entries(reader, id)?,
+            store::investigation::canonical_of(reader, id)?,
             store::signature::of(reader, Kind::Investigation, id)?,
             store::trail::of_subject(reader, subject)?,
         ))
@@ -99,8 +100,6 @@ fn investigation_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>)
             place.1 = failed;
         }
     }
-    let conclusion = entries.iter().find(|entry| entry.kind == "conclusion");
-    let text = conclusion.map(|entry| acts::investigation::canonical(&found, &entries, &entry.text));
     let digest = sha256_hex(text.unwrap_or_default().as_bytes());
     let page = InvestigationPage {
         shell,

@@ -32,6 +32,7 @@ pub mod page;
 pub mod pairs;
 pub mod part;
 pub mod patterns;
+pub mod photo;
 pub mod product;
 pub mod protocol;
 pub mod pull;

@@ -234,7 +234,7 @@ fn sign_in_first(visit: &Visit, route: Option<Route>) -> Reply {
 /// What still works while writes are held for the clock: signing in and out, and confirming it.
 const MAY_GO_ON: [&str; 3] = ["/sign-in", "/sign-out", "/settings/clock"];
 
-/// Session, origin, form token and submission key, in this order; then the handler.
+/// Session, origin, form token, roles and submission key, in this order; then the handler.
 fn guarded(visit: &mut Visit, route: Option<Route>, head: &Head) -> Result<Reply, Failure> {
     visit.query = Pairs::read(&head.query)?;
     if let Some(token) = &head.session {
@@ -259,6 +259,9 @@ fn guarded(visit: &mut Visit, route: Option<Route>, head: &Head) -> Result<Reply
     }
     if let Some(guard) = visit.app.guard.as_ref().filter(|_| !MAY_GO_ON.contains(&route.path)) {
         guard.may_write(visit.at.utc, std::time::Instant::now())?;
+    }
+    if let Ok(actor) = visit.actor() {
+        visit.app.db.permits(actor, route.acts)?;
     }
     match repeated(visit)? {
         Some(reply) => Ok(reply),

@@ -171,6 +171,7 @@ fn is_own_path(next: &str) -> bool {
 }
 
 fn sign_out(visit: &Visit) -> Outcome {
+    visit.knows_form(&[])?;
     if let Some(signed_in) = &visit.signed_in {
         acts::session::sign_out(visit.db(), &signed_in.actor, &signed_in.token_digest)?;
     }

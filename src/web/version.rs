@@ -8,7 +8,7 @@ use crate::acts;
 use crate::acts::signature::{Approval, Authorship};
 use crate::acts::version::ContentCheck;
 use crate::domain::failure::Failure;
-use crate::domain::signature::Meaning;
+use crate::domain::signature::{Meaning, SignatureRefusal};
 use crate::domain::version::{VersionState, Versioned};
 use crate::store;
 use crate::store::version::Version;
@@ -22,20 +22,24 @@ pub fn next_form(
     version: &Version,
     path: &str,
 ) -> Result<Option<Form>, Failure> {
-    let actor = visit.actor()?;
-    let is_author = version.author == actor.account;
-    let (meaning, button) = match version.state {
-        VersionState::Draft if is_author => (Meaning::Authorship, "Sign as author"),
-        VersionState::SignedByAuthor if !is_author && visit.may(of.sign_act()) => {
-            (Meaning::Approval, "Approve this version")
-        }
-        _ => return Ok(None),
+    let is_author = version.author == visit.actor()?.account;
+    let is_offered = match version.state {
+        VersionState::Draft => is_author,
+        VersionState::SignedByAuthor => !is_author && visit.may(of.sign_act()),
+        _ => false,
     };
-    let form = Form::new(visit, &format!("{path}/sign"), button)?
+    if is_offered { Ok(Some(sign_form(visit, version, path)?)) } else { Ok(None) }
+}
+
+fn sign_form(visit: &Visit, version: &Version, path: &str) -> Result<Form, Failure> {
+    let (meaning, button) = match version.state {
+        VersionState::Draft => (Meaning::Authorship, "Sign as author"),
+        _ => (Meaning::Approval, "Approve this version"),
+    };
+    Ok(Form::new(visit, &format!("{path}/sign"), button)?
         .signature(meaning.words())
         .hide("seen", version.digest())
-        .hide("meaning", meaning.code());
-    Ok(Some(form))
+        .hide("meaning", meaning.code()))
 }
 
 /// The signatures under a version.
@@ -54,9 +58,11 @@ pub fn sign(
     page: impl FnOnce(u16, Form) -> Outcome,
 ) -> Outcome {
     let version = visit.read(|reader| store::version::get(reader, of, id))?;
-    let Some(form) = next_form(visit, of, &version, path)? else {
-        return Err(crate::domain::signature::SignatureRefusal::AlreadySigned.into());
-    };
+    if version.state == VersionState::Draft && version.author != visit.actor()?.account {
+        return Err(SignatureRefusal::NotSignedByAuthor.into());
+    }
+    // The author who wants to approve is refused by the act, so that the attempt is noted.
+    let form = sign_form(visit, &version, path)?;
     let (db, secrets) = (visit.db(), &visit.app.secrets);
     form::submit(
         visit,

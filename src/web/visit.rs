@@ -82,6 +82,15 @@ impl Visit {
         self.actor().is_ok_and(|actor| act.role_for(&actor.roles).is_some())
     }
 
+    /// Refuses form fields that a form without boxes does not have (sec_S53).
+    pub fn knows_form(&self, known: &[&str]) -> Result<(), Failure> {
+        let is_own = |name: &str| known.contains(&name) || name == "form_token" || name == "submission";
+        match self.form.iter().find(|(name, _)| !is_own(name)) {
+            Some((name, _)) => Err(Failure::BadRequest(format!("This form has no field “{name}”."))),
+            None => Ok(()),
+        }
+    }
+
     /// Refuses query names the page does not know.
     pub fn knows_query(&self, known: &[&str]) -> Result<(), Failure> {
         match self.query.iter().find(|(name, _)| !known.contains(name)) {

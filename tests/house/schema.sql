@@ -390,6 +390,9 @@ CREATE TABLE photo_mark (
     base_y text not null,
     interface_y text not null,
     fill_line_y text not null,
+    base_x text,                            -- where the clicks were across; empty where heights were typed
+    interface_x text,
+    fill_line_x text,
     ratio text not null,
     account integer not null references account (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred

@@ -9,13 +9,13 @@ use crate::support::{Lab, Person, Seen};
 
 const BOUNDARY: &str = "----------------quiet-mill";
 
-fn photo(width: u32, height: u32) -> Vec<u8> {
+pub fn photo(width: u32, height: u32) -> Vec<u8> {
     let mut bytes = std::io::Cursor::new(Vec::new());
     image::RgbImage::new(width, height).write_to(&mut bytes, image::ImageFormat::Png).unwrap();
     bytes.into_inner()
 }
 
-fn uploads(person: &Person<'_>, page: &str, name: &str, bytes: &[u8]) -> Seen {
+pub fn uploads(person: &Person<'_>, page: &str, name: &str, bytes: &[u8]) -> Seen {
     let mut body = Vec::new();
     for (field, value) in
         person.get(page).form(page).into_iter().chain([("about".into(), "bottle 07".into())])
@@ -154,5 +154,29 @@ fn the_reviewer_measures_the_same_photo_blind() {
     let blind = lab.reviewer().sees(page, "Measured already by someone else");
     assert!(!blind.text().contains("0.5000"), "{}", blind.text());
     let both = lab.reviewer().does(page, action, &marks("0.9000", "0.5100", "0.1000"));
+    assert!(both.text().contains("0.5000") && both.text().contains("0.4875"), "{}", both.text());
+    assert!(both.text().contains("0.5 across, 0.9000 down"), "the clicks are kept: {}", both.text());
+}
+
+/// The review page shows the photos of its sample, and the first marks only after the reviewer's own.
+#[test]
+fn the_review_shows_the_photos_and_both_ratios_once_both_are_in() {
+    let lab = Lab::new();
+    let (sample, _, _) = at_bench(&lab, &[TestKind::AsStoredSediment]);
+    uploads(&lab.analyst(), &format!("/files/sample/{sample}"), "bed.png", &photo(60, 120));
+    let marks = |interface: &'static str| {
+        [("base.y", "0.9000"), ("interface.y", interface), ("fill.y", "0.1000"), ("fill.x", "0.4820")]
+    };
+    let (review, page, action) = (format!("/review/{sample}"), "/attachments/1", "/attachments/1/marks");
+    let bare = lab.reviewer().sees(&review, "bottle 07, by Rafe Tolland");
+    assert!(
+        bare.html().contains("src=\"/attachments/1/preview\"") && !bare.text().contains("Measured already")
+    );
+    lab.analyst().does(page, action, &marks("0.5000"));
+    let blind = lab.reviewer().sees(&review, "Measured already by someone else");
+    assert!(!blind.text().contains("0.5000"), "{}", blind.text());
+    lab.auditor().sees(&review, "0.5000 down");
+    lab.reviewer().does(page, action, &marks("0.5100"));
+    let both = lab.reviewer().sees(&review, "0.4820 across, 0.1000 down");
     assert!(both.text().contains("0.5000") && both.text().contains("0.4875"), "{}", both.text());
 }

@@ -37,13 +37,15 @@ fn the_reader_and_the_unqualified_cannot_check() {
     lab.manager().sees(&page, "Maren Oddy is not qualified for AS-01 version 1");
     let mut pairs = lab.second_analyst().get(&page).form(&page);
     pairs.retain(|(name, _)| name != "form_token" && name != "submission");
-    for person in [lab.analyst(), lab.manager()] {
+    for (person, status) in [(lab.analyst(), 403), (lab.manager(), 409)] {
         let mut own = person.get("/me").form("/sign-out");
         own.extend(pairs.clone());
         own.push(("submission".to_string(), format!("{:064}", person.user_name.len())));
         let refused = person.posts(&page, &own);
-        assert_eq!(refused.status, 409, "{}: {}", person.user_name, refused.text());
+        assert_eq!(refused.status, status, "{}: {}", person.user_name, refused.text());
     }
+    let lot = format!("/review/{sample}");
+    lab.reviewer().sees(&lot, "checked a result — refused: You read or completed Assay yourself");
     lab.reviewer().sees("/review", "1 of 1 test not checked yet");
 }
 

@@ -14,7 +14,7 @@ fn data(name: &str) -> PathBuf {
     PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("tests/numbers/data/suspensions").join(name)
 }
 
-fn zno() -> Vec<u8> {
+pub fn zno() -> Vec<u8> {
     std::fs::read(data("zno_aloe_weloensis_sedimentation.csv")).unwrap()
 }
 
@@ -23,7 +23,7 @@ fn tacrolimus() -> Vec<u8> {
 }
 
 /// Chooses a file on the page and presses its button.
-fn upload(person: &Person<'_>, name: &str, bytes: &[u8]) -> Seen {
+pub fn upload(person: &Person<'_>, name: &str, bytes: &[u8]) -> Seen {
     let mut body = Vec::new();
     for (field, value) in person.get("/imports").form("/imports") {
         let part = format!("--edge\r\ncontent-disposition: form-data; name=\"{field}\"\r\n\r\n{value}\r\n");

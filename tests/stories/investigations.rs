@@ -6,7 +6,7 @@ use supernate::store;
 use crate::benches::{page, records};
 use crate::support::{Lab, PASSWORD, world};
 
-fn opened(lab: &Lab) -> String {
+pub fn opened(lab: &Lab) -> String {
     world::instrument(lab, "PH-03", "pH meter");
     let lot = world::lot_for_market(lab, "TW-640", "GB");
     world::lot_for_market(lab, "TW-641", "GB");

@@ -216,8 +216,11 @@ fn screen_u76_nobody_signs_own_work() {
     let page = format!("/review/{sample}");
     lab.analyst().sees(&page, "You read or checked something of TW-104-0640");
     let refused = lab.analyst().submits(&page, &format!("{page}/agree"), &[]);
-    assert_eq!(refused.status, 409);
-    assert!(refused.text().contains("Another QA reviewer reviews it"), "{}", refused.text());
+    assert_eq!(refused.status, 403);
+    assert!(refused.text().contains("Another QA reviewer takes it"), "{}", refused.text());
+    let who = "With a role for it and no part in the work: Ada Whitlock, Per Lindqvist.";
+    assert!(refused.text().contains(who), "{}", refused.text());
+    lab.reviewer().sees(&page, "decided on a pull — refused: You read or checked something of TW-104-0640");
 }
 
 #[test]

@@ -5,7 +5,7 @@ use supernate::store;
 
 use crate::support::{Lab, PASSWORD, world};
 
-const OWN_CONDITION: [(&str, &str); 8] = [
+pub const OWN_CONDITION: [(&str, &str); 8] = [
     ("code", "21/45"),
     ("temperature_c", "21"),
     ("temperature_tolerance_c", "2"),

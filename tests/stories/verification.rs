@@ -24,13 +24,13 @@ fn database(folder: &Scratch) -> PathBuf {
     folder.0.join("supernate.sqlite")
 }
 
-fn verify(folder: &Path, expected: Option<&str>) -> Report {
+pub fn verify(folder: &Path, expected: Option<&str>) -> Report {
     let quiet = &mut |_: &str, _: u64| ();
     acts::verify::folder(&folder.join("supernate.sqlite"), &folder.join("files"), expected, quiet).unwrap()
 }
 
-/// Drops every trigger, changes the copy by raw SQL, and verifies it.
-fn after(lab: &Lab, sql: &str) -> Report {
+/// A copy of a laboratory's folder that was changed by raw SQL, with every trigger dropped and made again.
+pub fn tampered(lab: &Lab, sql: &str) -> Scratch {
     let folder = copy(lab);
     let other = Connection::open(database(&folder)).unwrap();
     let names: Vec<(String, String)> = other
@@ -44,12 +44,16 @@ fn after(lab: &Lab, sql: &str) -> Report {
         other.execute_batch(&format!("drop trigger {name}")).unwrap();
     }
     other.execute_batch("pragma foreign_keys = off").unwrap();
-    other.execute_batch(sql).unwrap();
+    other.execute_batch(sql).unwrap_or_else(|failure| panic!("{sql}: {failure}"));
     for (_, made) in &names {
         other.execute_batch(made).unwrap();
     }
     drop(other);
-    verify(&folder.0, None)
+    folder
+}
+
+fn after(lab: &Lab, sql: &str) -> Report {
+    verify(&tampered(lab, sql).0, None)
 }
 
 fn lived_in() -> Lab {

@@ -76,7 +76,16 @@ impl SampleFacts {
 
     /// Whether the person took part in the work: read, corrected, completed or checked.
     pub fn is_own_work_of(&self, account: i64) -> bool {
-        self.checkers.contains(&account) || self.tests.iter().any(|test| test.performers.contains(&account))
+        self.took_part().contains(&account)
+    }
+
+    /// The accounts that read, corrected, completed or checked something of it, each once.
+    fn took_part(&self) -> Vec<i64> {
+        let performers = self.tests.iter().flat_map(|test| &test.performers);
+        let mut accounts: Vec<i64> = performers.chain(&self.checkers).copied().collect();
+        accounts.sort_unstable();
+        accounts.dedup();
+        accounts
     }
 
     fn titles(&self, wanted: &[TestState]) -> Option<String> {
@@ -113,8 +122,8 @@ pub enum ReviewRefusal {
     TestsNotIn(String),
     #[error("These tests wait for the check by a second person: {0}.")]
     TestsNotChecked(String),
-    #[error("You read or checked something of {0} yourself. Another QA reviewer reviews it.")]
-    OwnWork(String),
+    #[error("You read or checked something of {} yourself. Another QA reviewer takes it.", .number)]
+    OwnWork { number: String, took_part: Vec<i64> },
     #[error("{0} is signed already, and nothing has changed since.")]
     SignedAlready(String),
     #[error("Answer these first: {0}")]
@@ -147,6 +156,13 @@ impl NamedReason for ReviewRefusal {
             _ => None,
         }
     }
+
+    fn took_part(&self) -> Option<Vec<i64>> {
+        match self {
+            ReviewRefusal::OwnWork { took_part, .. } => Some(took_part.clone()),
+            _ => None,
+        }
+    }
 }
 
 /// Whether the reviewer may agree to the sample. That it was opened, and is unchanged, is asked before.
@@ -166,13 +182,20 @@ pub fn may_agree(facts: &SampleFacts, reviewer: i64) -> Result<(), ReviewRefusal
     if let Some(titles) = facts.titles(&[TestState::WaitingForCheck]) {
         return Err(ReviewRefusal::TestsNotChecked(titles));
     }
-    if facts.is_own_work_of(reviewer) {
-        return Err(ReviewRefusal::OwnWork(number()));
-    }
+    not_own_work(facts, reviewer)?;
     if facts.state() == SampleState::Signed {
         return Err(ReviewRefusal::SignedAlready(number()));
     }
     facts.unanswered().map_or(Ok(()), |open| Err(ReviewRefusal::ExceptionsUnanswered(open)))
+}
+
+/// Whether the person stayed out of the work: only such a person answers, agrees and signs.
+pub fn not_own_work(facts: &SampleFacts, reviewer: i64) -> Result<(), ReviewRefusal> {
+    let took_part = facts.took_part();
+    if took_part.contains(&reviewer) {
+        return Err(ReviewRefusal::OwnWork { number: facts.number.clone(), took_part });
+    }
+    Ok(())
 }
 
 /// Whether the list may be signed as a whole. What changed since the reviewer looked has dropped out before.

@@ -42,13 +42,14 @@ fn agreeing_is_refused_in_the_documented_order() {
     let signed = SampleFacts { is_signed: true, ..ready() };
     let changed = SampleFacts { is_signed: true, is_changed_after_signing: true, ..ready() };
     let open_sentence = "1 correction.".to_string();
+    let own_work = || ReviewRefusal::OwnWork { number: number(), took_part: vec![4, 5] };
     let table = [
         (imported, 4, Err(ReviewRefusal::ImportedNotSigned(number()))),
         (open, 4, Err(ReviewRefusal::TestsNotIn("pH".to_string()))),
         (back, 4, Err(ReviewRefusal::TestsNotIn("pH".to_string()))),
         (unchecked, 4, Err(ReviewRefusal::TestsNotChecked("pH".to_string()))),
-        (ready(), 4, Err(ReviewRefusal::OwnWork(number()))),
-        (ready(), 5, Err(ReviewRefusal::OwnWork(number()))),
+        (ready(), 4, Err(own_work())),
+        (ready(), 5, Err(own_work())),
         (signed, 8, Err(ReviewRefusal::SignedAlready(number()))),
         (with_exception(None), 8, Err(ReviewRefusal::ExceptionsUnanswered(open_sentence))),
         (with_exception(Some("fine")), 8, Ok(())),

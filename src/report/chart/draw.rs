@@ -3,7 +3,7 @@
 use rust_decimal::Decimal;
 
 use super::scale::{self, Axis, TimeUnit};
-use super::{Bound, Chart, Drawn, Mark, Point, Series, Shape, Text, words};
+use super::{Bound, Chart, Drawn, Mark, Point, Series, Shape, Text, fit, words};
 
 /// Dashes of the series, in order.
 const LINES: [&str; 4] = ["line", "line line-2", "line line-3", "line line-4"];
@@ -37,6 +37,7 @@ pub fn drawn(chart: &Chart) -> Drawn {
     canvas.axes(chart, &frame);
     canvas.limits(chart, &frame);
     for (place, series) in chart.series.iter().enumerate() {
+        canvas.fit(chart, series);
         canvas.series(series, place);
     }
     canvas.write_ends(&frame);
@@ -146,6 +147,16 @@ impl Canvas {
             let (_, y) = self.place(point, value);
             self.ends.push((y, series.label.clone()));
         }
+    }
+
+    /// The straight line through the series' own points.
+    fn fit(&mut self, chart: &Chart, series: &Series) {
+        let Some([from, to]) = fit::ends(series).filter(|_| chart.has_fit) else { return };
+        let at = |(age, value): (Decimal, Decimal)| {
+            (plain(self.x.at(self.unit.of_months(age))), plain(self.y.at(value)))
+        };
+        let ((x, y), (to_x, to_y)) = (at(from), at(to));
+        self.shape("fit", format!("M{x} {y}L{to_x} {to_y}"));
     }
 
     /// Runs through neighbours only: a gap, a bound or a value set aside ends the stroke.

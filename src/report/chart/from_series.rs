@@ -19,6 +19,8 @@ pub struct About<'a> {
     pub asked: Option<i64>,
     /// Makes the ids of several lots' charts unique on one page.
     pub id_prefix: &'a str,
+    /// Draws the straight line through the lot's own points.
+    pub has_fit: bool,
     pub is_small: bool,
 }
 
@@ -84,6 +86,7 @@ fn chart(test: &str, component: &str, group: &[&SeriesPoint], about: &About<'_>)
         lower,
         upper,
         life_months: about.life_months,
+        has_fit: about.has_fit,
         is_small: about.is_small,
     }
 }

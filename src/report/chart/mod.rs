@@ -5,6 +5,7 @@
 //! told by its shape. A pull without a result leaves a gap that no line crosses.
 
 pub mod draw;
+pub mod fit;
 pub mod from_series;
 pub mod scale;
 pub mod words;
@@ -30,6 +31,8 @@ pub struct Chart {
     pub upper: Option<Decimal>,
     /// The assigned shelf life, drawn as a dotted upright.
     pub life_months: Option<Decimal>,
+    /// The straight line through each series' own points is drawn, from its first to its last age; never beyond.
+    pub has_fit: bool,
     /// Drawn at 420 × 230 instead of 720 × 320.
     pub is_small: bool,
 }

@@ -3,7 +3,7 @@
 use rust_decimal::Decimal;
 
 use super::scale::TimeUnit;
-use super::{Bound, Chart, Mark, Point, Row, Series};
+use super::{Bound, Chart, Mark, Point, Row, Series, fit};
 
 /// "pH, lot TW-104-0640, 25 °C/60 % RH".
 pub fn title(chart: &Chart) -> String {
@@ -104,7 +104,14 @@ pub fn key(chart: &Chart) -> String {
         (has(&|point| point.mark == Mark::SetAside), "cross: set aside"),
         (has(&|point| point.bound != Bound::Equal), "arrow: beyond the value"),
     ];
-    let parts: Vec<&str> = table.iter().filter(|(holds, _)| *holds).map(|(_, words)| *words).collect();
+    let line = "straight line: least squares through the lot's own points, no shelf life";
+    let fitted = chart.has_fit && chart.series.iter().any(|series| fit::ends(series).is_some());
+    let parts: Vec<&str> = table
+        .iter()
+        .filter(|(holds, _)| *holds)
+        .map(|(_, words)| *words)
+        .chain(fitted.then_some(line))
+        .collect();
     capital(&parts.join(" · "))
 }
 

@@ -44,7 +44,7 @@ pub struct Report {
     pub lines: u64,
     pub rows: u64,
     pub signatures: u64,
-    /// Signatures whose digest was computed again from the record; the others are covered by the chain.
+    /// Signatures whose digest, computed again from the record, is the signed one.
     pub recomputed: u64,
     pub attachments: u64,
     /// The newest entry and its seal.

@@ -5,7 +5,9 @@ use crate::domain::digest::sha256_hex;
 use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
-use crate::store::{Answer, Reader, lot_decision, review, shelf_life, signature, stop, version};
+use crate::store::{
+    Answer, Reader, condition, investigation, lot_decision, review, shelf_life, signature, stop, version,
+};
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     for signed in signature::all(reader)? {
@@ -17,7 +19,10 @@ pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
                 let sentence = format!("what {} signed is not what stands there", signed.signer_name);
                 check.found(Some(signed.act), record, sentence);
             }
-            Ok(None) => {}
+            Ok(None) => {
+                let sentence = format!("the record that {} signed is not there", signed.signer_name);
+                check.found(Some(signed.act), record, sentence);
+            }
             Err(failure) => {
                 let sentence = format!("what {} signed cannot be read: {failure}", signed.signer_name);
                 check.found(Some(signed.act), record, sentence);
@@ -27,8 +32,7 @@ pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
     Ok(())
 }
 
-/// The signed text of a record as of the act of the signature. `None` where the record is covered by the digest of
-/// its row alone.
+/// The signed text of a record as of the act of the signature; `None` where no record stands over the signature.
 fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> {
     let of_version = |of| Ok(Some(version::get(reader, of, signed.subject.id)?.canonical()));
     match signed.subject.kind {
@@ -39,6 +43,8 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::Sample => review::canonical(reader, signed.subject.id, Some(signed.act)).map(Some),
         Kind::Lot => lot_decision::canonical_of_signature(reader, signed.id),
         Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
+        Kind::Condition => condition::canonical_of(reader, signed.subject.id),
+        Kind::Investigation => investigation::canonical_of(reader, signed.subject.id),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }
 }

@@ -99,6 +99,7 @@ impl Loaded {
             life_months: None,
             asked: Some(self.sample.head.sample),
             id_prefix,
+            has_fit: true,
             is_small,
         };
         let mut found = Vec::new();

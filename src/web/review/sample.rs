@@ -13,12 +13,14 @@ use crate::domain::failure::Failure;
 use crate::domain::review::checked::{Rule, rules, summary};
 use crate::domain::review::exception::{AnswerBy, AnswerRefusal, NewAnswer};
 use crate::domain::review::{Part, SampleState, may_agree};
+use crate::domain::subject::{Kind, Subject};
 use crate::report::chart::Drawn;
 use crate::report::cylinder::Strip;
 use crate::web::field::{Entry, Field};
 use crate::web::form::{self, Form, Typed};
 use crate::web::page::Shell;
 use crate::web::part::{Signatures, StatusMark, Trail};
+use crate::web::photo::Photos;
 use crate::web::reply::{Outcome, page_with};
 use crate::web::show;
 use crate::web::visit::Visit;
@@ -35,6 +37,7 @@ struct SamplePage {
     charts: Vec<Drawn>,
     no_charts: &'static str,
     strip: Option<Strip>,
+    photos: Photos,
     corrections: Vec<Correction>,
     tests: Vec<TestBlock>,
     signatures: Signatures,
@@ -109,6 +112,7 @@ fn view(visit: &Visit, loaded: &Loaded) -> Result<SamplePage, Failure> {
         charts: loaded.charts("", true).into_iter().map(|(_, chart)| chart.drawn()).collect(),
         no_charts: no_charts(loaded),
         strip: (!cylinders.is_empty()).then(|| Strip::of(&cylinders)),
+        photos: Photos::of(visit, Subject::new(Kind::Sample, head.sample))?,
         corrections: content::corrections(&loaded.results, &loaded.readings, zone),
         tests,
         signatures: signatures(loaded, visit),

@@ -1,0 +1,181 @@
+//! What no page of ours sends is refused at every POST: another origin, no token, fields of its own, no role.
+
+use axum::body::Body;
+use axum::http::{Request, header};
+use supernate::domain::method::TestKind;
+use supernate::store::trail;
+use supernate::web::route::{self, Access, Route};
+
+use crate::attachments::{photo, uploads};
+use crate::support::{Lab, ORIGIN, PEOPLE, form_body, post_request, world};
+
+/// A laboratory in which the first record of every kind exists.
+fn filled() -> Lab {
+    let lab = Lab::new();
+    crate::investigations::opened(&lab);
+    let study = world::study(&lab, "TW-104-0640", &[TestKind::Ph, TestKind::Redispersibility]);
+    world::take(&lab, &world::pull(&lab, study, 1, "Initial"));
+    uploads(&lab.analyst(), "/files/sample/1", "bed.png", &photo(60, 120));
+    lab
+}
+
+/// The route's path with the numbers of records that exist.
+fn path(route: &Route) -> String {
+    let fill = |part: &str| match part {
+        "{kind}" => "sample".to_string(),
+        "{event}" => "calibration".to_string(),
+        "{digest}" => "0".repeat(64),
+        part if part.starts_with('{') && route.path.starts_with("/people") => "6".to_string(),
+        part if part.starts_with('{') => "1".to_string(),
+        part => part.to_string(),
+    };
+    route.path.split('/').map(fill).collect::<Vec<_>>().join("/")
+}
+
+fn posts() -> Vec<Route> {
+    route::all().into_iter().filter(|route| route.is_post).collect()
+}
+
+/// A person whose roles permit one of the route's acts, or do not.
+fn person_who(lab: &Lab, route: &Route, may: bool) -> Option<&'static str> {
+    let permits = |name: &str| {
+        let roles = lab.actor(name).roles;
+        route.acts.iter().any(|act| act.role_for(&roles).is_some())
+    };
+    PEOPLE.iter().map(|(name, _, _)| *name).find(|name| permits(name) == may)
+}
+
+fn own_fields(lab: &Lab, name: &str) -> Vec<(String, String)> {
+    let mut fields = lab.person(name).get("/me").form("/sign-out");
+    fields.retain(|(name, _)| name == "form_token");
+    fields
+}
+
+fn head(lab: &Lab) -> i64 {
+    lab.app.db.read(trail::head).unwrap().unwrap().0
+}
+
+/// sec_S40: of the ways a browser can say where a form came from, only our own pages pass, at every POST.
+#[test]
+fn sec_s40_only_forms_of_our_own_pages_are_read() {
+    let lab = filled();
+    let foreign = "This form did not come from a page of this program.";
+    let ways: [(&[(&str, &str)], bool); 7] = [
+        (&[("sec-fetch-site", "same-origin")], true),
+        (&[("origin", ORIGIN)], true),
+        (&[("sec-fetch-site", "same-site"), ("origin", ORIGIN)], false),
+        (&[("sec-fetch-site", "cross-site"), ("origin", ORIGIN)], false),
+        (&[("sec-fetch-site", "none")], false),
+        (&[("origin", "null")], false),
+        (&[], false),
+    ];
+    let mut cells = 0;
+    for route in posts() {
+        let name = person_who(&lab, &route, true).unwrap_or("nell.farrow");
+        let token = lab.person(name).token();
+        let before = head(&lab);
+        for (headers, passes) in ways {
+            let mut request = Request::builder()
+                .method("POST")
+                .uri(path(&route))
+                .header(header::CONTENT_TYPE, "application/x-www-form-urlencoded")
+                .header(header::COOKIE, format!("__Host-sid={token}"));
+            for (header, value) in headers {
+                request = request.header(*header, *value);
+            }
+            let seen = lab.send(request.body(Body::from("surplus=1")).unwrap());
+            let is_foreign = seen.status == 400 && seen.text().contains(foreign);
+            assert_eq!(is_foreign, !passes, "{} {headers:?}: {}", route.path, seen.text());
+            assert!(seen.status >= 400, "without its token nothing is done: {}", route.path);
+            cells += 1;
+        }
+        assert_eq!(head(&lab), before, "{} wrote something", route.path);
+    }
+    assert_eq!(cells, posts().len() * 7);
+}
+
+/// A route, an address of it at which its act is possible now, and the fields it is asked for by.
+type Open = (&'static str, String, Vec<(&'static str, String)>);
+
+/// Where a route refuses by its record's state first, a record that is open for it.
+fn where_something_is_open(lab: &Lab) -> Vec<Open> {
+    let mut open = Vec::new();
+    for (person, noun, route) in [
+        (lab.formulator(), "formulations", "/formulation-versions/{id}/edit"),
+        (lab.manager(), "methods", "/method-versions/{id}/edit"),
+        (lab.manager(), "specifications", "/specification-versions/{id}/edit"),
+    ] {
+        let draft = format!("/{noun}/1/draft");
+        let made = person.does(&draft, &draft, &[("reason", "one more version for this story")]);
+        open.push((route, format!("{}/edit", made.location.unwrap()), Vec::new()));
+    }
+    let reason = [("reason", "one more age is needed")];
+    let made = lab.manager().does("/protocols/1", "/protocols/1/draft", &reason).location.unwrap();
+    let page = made.split(['/', '?']).take(3).collect::<Vec<_>>().join("/");
+    open.push(("/protocol-versions/{id}/arms", format!("{page}/arms"), Vec::new()));
+    open.push(("/protocol-versions/{id}/matrix", format!("{page}/matrix"), Vec::new()));
+    open.push(("/methods/new", "/methods/new".to_string(), vec![("kind", "ph".to_string())]));
+    let lot = lab.app.db.read(|reader| supernate::store::study::get(reader, 1)).unwrap().lot.to_string();
+    let study = vec![("lot", lot), ("protocol_version", "1".to_string())];
+    open.push(("/studies/new/check", "/studies/new/check".to_string(), study));
+    let pull = world::pull(lab, 1, 1, "Initial");
+    open.push(("/samples/{id}/stages", format!("/samples/{}/stages", pull.sample), Vec::new()));
+    let about = lab.reviewer().get("/review/1").form("/review/1/answers");
+    let about = about.into_iter().find(|(name, _)| name == "about").unwrap().1;
+    open.push(("/review/{id}/answers", "/review/1/answers".to_string(), vec![("about", about)]));
+    let held = crate::imports::upload(&lab.manager(), "zno.csv", &crate::imports::zno()).location.unwrap();
+    let held = held.split('?').next().unwrap().to_string();
+    open.push(("/imports/held/{digest}", held, Vec::new()));
+    open
+}
+
+/// sec_S53: a field that the form does not have is refused, whoever sends it, and nothing is written.
+#[test]
+fn sec_s53_a_field_of_ones_own_is_refused_at_every_post() {
+    let lab = filled();
+    let known = where_something_is_open(&lab);
+    let mut let_through = Vec::new();
+    for route in posts().into_iter().filter(|route| route.access != Access::Public) {
+        let Some(name) = person_who(&lab, &route, true) else { continue };
+        let mut fields = own_fields(&lab, name);
+        let mut path = path(&route);
+        if let Some((_, open, more)) = known.iter().find(|(known, _, _)| *known == route.path) {
+            path.clone_from(open);
+            fields.extend(more.iter().map(|(name, value)| (name.to_string(), value.clone())));
+        }
+        fields.push(("account".to_string(), "1".to_string()));
+        fields.push(("created_at".to_string(), "2020-01-01".to_string()));
+        let before = head(&lab);
+        let seen = lab.person(name).posts(&path, &fields);
+        if seen.status != 400 || head(&lab) != before {
+            let_through.push(format!("{} as {name}: {} {}", route.path, seen.status, seen.text()));
+        }
+    }
+    assert!(let_through.is_empty(), "{}", let_through.join("\n"));
+}
+
+/// sec_S50, requirement P4: every POST by every person whose roles do not permit it is a 403 page, and the attempt is
+/// a refused act in the trail.
+#[test]
+fn sec_s50_every_post_without_the_role_is_denied_and_noted() {
+    let lab = filled();
+    let mut cells = 0;
+    for route in posts().into_iter().filter(|route| route.access != Access::Public) {
+        for (name, _, roles) in PEOPLE {
+            if route.acts.iter().any(|act| act.role_for(roles).is_some()) {
+                continue;
+            }
+            let body = form_body(&own_fields(&lab, name));
+            let token = lab.person(name).token();
+            let before = head(&lab);
+            let seen = lab.send(post_request(&path(&route), body, Some(&token)));
+            assert_eq!(seen.status, 403, "{} as {name}: {}", route.path, seen.text());
+            assert!(seen.text().contains("needs one of these roles"), "{}", seen.text());
+            let newest = lab.app.db.read(|reader| trail::before(reader, None, 1)).unwrap().remove(0);
+            assert_eq!((newest.act, newest.outcome.as_str()), (before + 1, "denied"), "{}", route.path);
+            assert!(route.acts.iter().any(|act| act.code() == newest.code) && newest.user_name == name);
+            cells += 1;
+        }
+    }
+    assert!(cells > 300, "{cells} cells");
+}
