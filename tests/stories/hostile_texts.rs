@@ -104,7 +104,9 @@ fn filled() -> Lab {
 #[test]
 fn sec_s61_hostile_texts_change_no_page() {
     let lab = filled();
-    let plain = with_text(&lab, " plain words");
+    // As long as the hostile text, since long words are set otherwise than short ones.
+    let as_long: String = " plain words".chars().cycle().take(hostile().chars().count()).collect();
+    let plain = with_text(&lab, &as_long);
     let hostile = with_text(&lab, &hostile());
     let (mut pages, mut shown, mut different) = (0, 0, Vec::new());
     for person in ["maren.oddy", "ada.whitlock", "rafe.tolland", "nell.farrow", "tomas.reyle"] {
