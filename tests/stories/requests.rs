@@ -3,6 +3,7 @@
 use axum::body::Body;
 use axum::http::{Request, header};
 use supernate::domain::method::TestKind;
+use supernate::domain::version::Versioned;
 use supernate::store::trail;
 use supernate::web::route::{self, Access, Route};
 
@@ -110,6 +111,10 @@ fn where_something_is_open(lab: &Lab) -> Vec<Open> {
         open.push((route, format!("{}/edit", made.location.unwrap()), Vec::new()));
     }
     let reason = [("reason", "one more age is needed")];
+    // A second version is approved, so that the study can be amended to it; the third stays a draft.
+    let second = lab.manager().does("/protocols/1", "/protocols/1/draft", &reason).location.unwrap();
+    let second = second.split(['/', '?']).nth(2).unwrap().parse().unwrap();
+    world::approve(lab, Versioned::Protocol, second, "maren.oddy", "ada.whitlock");
     let made = lab.manager().does("/protocols/1", "/protocols/1/draft", &reason).location.unwrap();
     let page = made.split(['/', '?']).take(3).collect::<Vec<_>>().join("/");
     open.push(("/protocol-versions/{id}/arms", format!("{page}/arms"), Vec::new()));
