@@ -91,6 +91,11 @@ fn with_unit(value: Decimal, unit: &str) -> String {
     super::judgement::limit::with_unit(&value.normalize().to_string(), unit)
 }
 
+/// A computed value as a question shows it: one decimal more than is read; the comparison uses the exact one.
+fn shown(value: Decimal, facts: &HintFacts) -> Decimal {
+    value.round_dp(facts.reading_decimals.unwrap_or(2).saturating_add(1))
+}
+
 fn fewer_decimals(facts: &HintFacts) -> Option<Hint> {
     let decimals = facts.reading_decimals.filter(|decimals| facts.typed_decimals < *decimals)?;
     let step = Decimal::new(1, decimals);
@@ -119,7 +124,7 @@ fn out_by_ten(facts: &HintFacts) -> Option<Hint> {
         sentence: format!(
             "Is {} right? About {} was expected: a lost point or an extra zero?",
             facts.value,
-            with_unit(expected, &facts.unit)
+            with_unit(shown(expected, facts), &facts.unit)
         ),
     })
 }
@@ -128,7 +133,7 @@ fn out_by_ten(facts: &HintFacts) -> Option<Hint> {
 fn outside_last_three(facts: &HintFacts) -> Option<Hint> {
     let repeatability = facts.repeatability?;
     let last = facts.last_pulls.get(..3)?;
-    let (least, most) = (*last.iter().min()?, *last.iter().max()?);
+    let (least, most) = (last.iter().min()?, last.iter().max()?);
     let is_outside =
         facts.value > most.checked_add(repeatability)? || facts.value < least.checked_sub(repeatability)?;
     is_outside.then(|| Hint {
@@ -136,8 +141,8 @@ fn outside_last_three(facts: &HintFacts) -> Option<Hint> {
         sentence: format!(
             "Is {} right? The last three pulls were {} to {}.",
             facts.value,
-            least.normalize(),
-            with_unit(most, &facts.unit)
+            shown(*least, facts).normalize(),
+            with_unit(shown(*most, facts), &facts.unit)
         ),
     })
 }

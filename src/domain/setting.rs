@@ -38,18 +38,20 @@ pub const BENCH_IDLE_MINUTES: Setting = Setting {
 const WINDOW_HINT: &str =
     "Whole days. A protocol may state its own; a running study keeps what it has until it is amended.";
 
+const WINDOW_DAYS: &str = "0 to 31 whole days.";
+
 /// A default window: days after the due date; never before it (decision A11, common practice).
-const fn window(name: &'static str, label: &'static str, default: i64) -> Setting {
-    Setting { name, label, hint: WINDOW_HINT, default, least: 0, most: 31 }
+const fn window(name: &'static str, label: &'static str, hint: &'static str, default: i64) -> Setting {
+    Setting { name, label, hint, default, least: 0, most: 31 }
 }
 
 /// The default windows by age, young to old; [`super::window::Defaults`] reads them.
 pub const WINDOWS: [Setting; 5] = [
-    window("window.days-3", "Window of ages up to 3 days in use, days after the due date", 0),
-    window("window.days-28", "Window of 4 to 28 days, days after the due date", 1),
-    window("window.months-2", "Window of 1 and 2 months, days after the due date", 3),
-    window("window.months-12", "Window of 3 to 12 months, days after the due date", 7),
-    window("window.later", "Window of later ages, days after the due date", 14),
+    window("window.days-3", "Window of ages up to 3 days in use, days after the due date", WINDOW_HINT, 0),
+    window("window.days-28", "Window of 4 to 28 days, days after the due date", WINDOW_DAYS, 1),
+    window("window.months-2", "Window of 1 and 2 months, days after the due date", WINDOW_DAYS, 3),
+    window("window.months-12", "Window of 3 to 12 months, days after the due date", WINDOW_DAYS, 7),
+    window("window.later", "Window of later ages, days after the due date", WINDOW_DAYS, 14),
 ];
 
 pub const ALL: [Setting; 7] =
