@@ -11,7 +11,7 @@ use super::show;
 use super::visit::Visit;
 use crate::acts::stage::{columns, tests_of};
 use crate::domain::act::Act;
-use crate::domain::label::labelled;
+use crate::domain::label::{labelled, short_label};
 use crate::domain::moment::{date_from_stored, until_shown};
 use crate::domain::qualification;
 use crate::domain::reading::{PullState, in_slot};
@@ -242,11 +242,14 @@ fn session(visit: &Visit) -> Outcome {
 fn session_row(sample: &BenchSample, test: i64) -> Option<Row> {
     let test = sample.test(test)?;
     let (status, note) = standing(sample, test);
-    let labels: Vec<&str> = sample.containers.iter().map(|one| one.label.as_str()).collect();
+    let labels: Vec<&str> = sample.containers.iter().map(|one| short_label(&one.label)).collect();
     let place = place(sample);
     Some(Row {
         path: format!("/tests/{}", test.id),
-        name: format!("{} {}", sample.number, labels.join(", ")),
+        name: match labels.is_empty() {
+            true => sample.number.clone(),
+            false => format!("{} · {} {}", sample.number, sample.container_word, labels.join(", ")),
+        },
         note: if note.is_empty() { place } else { format!("{place} · {note}") },
         status: StatusMark::of(status),
     })

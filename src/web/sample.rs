@@ -15,7 +15,7 @@ use super::visit::Visit;
 use crate::acts;
 use crate::domain::act::Act;
 use crate::domain::failure::Failure;
-use crate::domain::label::labelled;
+use crate::domain::label::{labelled, short_label};
 use crate::domain::method::Stage;
 use crate::domain::moment::date_shown;
 use crate::domain::reason::Reason;
@@ -206,7 +206,7 @@ fn sample_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Out
     let page = SamplePage {
         place: place(&sample),
         receipt: receipt_facts(&sample, receipt),
-        labels: sample.containers.iter().map(|one| one.label.clone()).collect::<Vec<_>>().join(", "),
+        labels: sample.containers.iter().map(|one| short_label(&one.label)).collect::<Vec<_>>().join(", "),
         asks_label: is_open && !is_right && visit.may(Act::RecordReadings),
         stages: Stage::ALL
             .into_iter()

@@ -46,8 +46,25 @@ struct PullPage {
     containers: Vec<(i64, String, String, String)>,
     tests: Vec<TestLine>,
     is_at_bench: bool,
-    forms: Vec<(String, Form)>,
+    forms: Vec<PullForm>,
     trail: Trail,
+}
+
+/// One thing that can be done with the pull; what is seldom done is folded.
+struct PullForm {
+    heading: &'static str,
+    form: Form,
+    is_folded: bool,
+}
+
+impl PullForm {
+    fn open(heading: &'static str, form: Form) -> PullForm {
+        PullForm { heading, form, is_folded: false }
+    }
+
+    fn folded(heading: &'static str, form: Form) -> PullForm {
+        PullForm { heading, form, is_folded: true }
+    }
 }
 
 fn one(visit: &Visit) -> Outcome {
@@ -90,9 +107,9 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
         .crumb(format!("/studies/{}", pull.study), pull.study_number.clone());
     if let Some(failed) = failed {
         shell = shell.with_errors(&failed);
-        match forms.iter_mut().find(|(_, form)| form.action == failed.action) {
-            Some(place) => place.1 = failed,
-            None => forms.insert(0, ("What could not be recorded".to_string(), failed)),
+        match forms.iter_mut().find(|one| one.form.action == failed.action) {
+            Some(place) => *place = PullForm::open(place.heading, failed),
+            None => forms.insert(0, PullForm::open("What could not be recorded", failed)),
         }
     }
     let page = PullPage {
@@ -112,25 +129,25 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
 }
 
 /// What this person can do with the pull as it stands.
-fn forms(visit: &Visit, pull: &Pull) -> Result<Vec<(String, Form)>, Failure> {
+fn forms(visit: &Visit, pull: &Pull) -> Result<Vec<PullForm>, Failure> {
     let mut forms = Vec::new();
     let is_open = pull::is_open(&pull.facts).is_ok();
     if is_open && visit.may(Act::RecordPull) {
-        forms.push(("Take the pull".to_string(), take::take_form(visit, pull)?));
+        forms.push(PullForm::open("Take the pull", take::take_form(visit, pull)?));
     }
     let may_be_given = pull::may_assign(&pull.facts, true).is_ok();
     if may_be_given && visit.may(Act::AssignPull) {
-        forms.push(("Give it to a person".to_string(), assign_form(visit, pull)?));
+        forms.push(PullForm::open("Give it to a person", assign_form(visit, pull)?));
     }
     let is_taken = pull.facts.event == Some(Event::Pulled) && !pull.facts.is_signed;
     if is_taken && pull.containers_left > 0 && visit.may(Act::RecordPull) {
-        forms.push(("Take more containers".to_string(), take::more_form(visit, pull)?));
+        forms.push(PullForm::folded("Take more containers", take::more_form(visit, pull)?));
     }
     if pull::may_miss(&pull.facts, visit.at.date()).is_ok() && visit.may(Act::MissPull) {
-        forms.push(("Record it as missed".to_string(), miss_form(visit, pull.id)?));
+        forms.push(PullForm::folded("Record it as missed", miss_form(visit, pull.id)?));
     }
     if is_open && visit.may(Act::CancelPull) {
-        forms.push(("Cancel it".to_string(), cancel_form(visit, pull.id)?));
+        forms.push(PullForm::folded("Cancel it", cancel_form(visit, pull.id)?));
     }
     Ok(forms)
 }
