@@ -218,3 +218,42 @@ create trigger open_pull_assigned after insert on pull_assignment
 begin
     update open_pull set account = new.account where pull = new.pull;
 end;
+
+-- Who has what: the few pulls that somebody was given.
+create index open_pull_of_people on open_pull (stage, due_on, account, minutes) where account is not null;
+
+-- How many pulls stand open by their days: the counts of the week without walking its pulls. Derived as open_pull is.
+create table open_day (
+    stage text not null,
+    due_on text not null,
+    latest_on text not null,
+    pulls integer not null,
+    minutes integer not null,
+    primary key (stage, due_on, latest_on)
+) strict, without rowid;
+
+create trigger open_day_more after insert on open_pull
+begin
+    insert or ignore into open_day (stage, due_on, latest_on, pulls, minutes)
+    values (new.stage, new.due_on, new.latest_on, 0, 0);
+    update open_day set pulls = pulls + 1, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on and latest_on = new.latest_on;
+end;
+create trigger open_day_fewer after delete on open_pull
+begin
+    update open_day set pulls = pulls - 1, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on;
+    delete from open_day
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
+end;
+create trigger open_day_moved after update of stage, due_on, latest_on, minutes on open_pull
+begin
+    insert or ignore into open_day (stage, due_on, latest_on, pulls, minutes)
+    values (new.stage, new.due_on, new.latest_on, 0, 0);
+    update open_day set pulls = pulls + 1, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on and latest_on = new.latest_on;
+    update open_day set pulls = pulls - 1, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on;
+    delete from open_day
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
+end;

@@ -61,7 +61,8 @@ impl Pull {
 /// All columns of [`Pull`] over a choice of pulls. What the methods say is read once for all rows; a test counts
 /// as checked when its newest result is, or when its method asks for no check; a pull counts as signed when
 /// nothing was recorded after the reviewer's signature. `cross join` keeps the order of the tables, so that the
-/// few chosen pulls are walked and never all samples.
+/// few chosen pulls are walked and never all samples. Of a pull to which nothing has happened yet nothing can have
+/// been read: its tests are only counted.
 fn select(choice: &str, order: &str) -> String {
     format!("with chosen (pull) as materialized ({choice}), {PROGRESS} {COLUMNS} {order}")
 }
@@ -76,7 +77,8 @@ const PROGRESS: &str = "asked as materialized (
         from chosen
         cross join sample s on s.pull = chosen.pull
         cross join sample_test t on t.sample = s.id
-        cross join asked m on m.id = t.method_version),
+        cross join asked m on m.id = t.method_version
+        where exists (select 1 from pull_event where pull = chosen.pull)),
     known_test as (
         select pull, id, minutes, version, needs_check,
             exists (select 1 from reading where sample_test = asked_test.id) as started,
@@ -103,9 +105,11 @@ const COLUMNS: &str = "select p.id, s.id, s.number, y.id, y.number, a.id, a.posi
         (select count(*) from container k where k.study_arm = a.id
              and not exists (select 1 from container_event where container = k.id)),
         g.account, (select full_name from account where id = g.account),
-        coalesce(w.minutes, 0), p.test_within_days, p.imported is not null, e.kind, e.happened_on,
+        coalesce(w.minutes, (select minutes from open_pull where pull = p.id), 0), p.test_within_days,
+        p.imported is not null, e.kind, e.happened_on,
         y.started_on, p.due_on, p.earliest_on, p.latest_on, p.is_last, p.containers_needed,
-        coalesce(w.tests, 0), coalesce(w.started, 0), coalesce(w.complete, 0), coalesce(w.checked, 0),
+        coalesce(w.tests, (select count(*) from sample_test where sample = s.id)),
+        coalesce(w.started, 0), coalesce(w.complete, 0), coalesce(w.checked, 0),
         max(coalesce(w.sent_back, 0),
             coalesce(v.decision = 'send back' and v.act > coalesce(w.newest, 0), 0)),
         coalesce(w.is_out, 0),
@@ -221,7 +225,9 @@ pub enum Show {
 /// The ranges are written with the site's dates as :today, :tomorrow, :week_end and :coming_end.
 fn range(show: Show) -> &'static str {
     match show {
-        Show::Late => "select pull from open_pull where stage = 'to take' and latest_on < :today",
+        Show::Late => {
+            "select pull from open_pull where stage = 'to take' and latest_on < :today and due_on < :today"
+        }
         Show::Closing => {
             "select pull from open_pull
              where stage = 'to take' and latest_on between :today and :tomorrow and due_on <= :tomorrow"
@@ -298,7 +304,9 @@ pub fn list(
 /// How many rows [`list`] has without a limit.
 pub fn count(reader: &Reader<'_>, show: Show, today: NaiveDate) -> Answer<usize> {
     let [today, tomorrow, week_end, coming_end] = dates(today);
-    let sql = format!("select count(*) from ({} {DATES})", range(show));
+    let days =
+        range(show).replace("select pull from open_pull", "select coalesce(sum(pulls), 0) from open_day");
+    let sql = format!("{days} {DATES}");
     let params = named_params! {
         ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
     };

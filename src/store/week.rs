@@ -25,8 +25,8 @@ fn count(value: i64) -> usize {
 /// window stands under today.
 pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Vec<DaySum>> {
     reader.all(
-        "select max(due_on, :today), count(*), sum(minutes)
-         from open_pull
+        "select max(due_on, :today), sum(pulls), sum(minutes)
+         from open_day
          where stage = 'to take' and due_on <= :last and latest_on >= :today
          group by 1
          order by 1",
@@ -39,8 +39,8 @@ pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Ve
 pub fn between(reader: &Reader<'_>, first: NaiveDate, last: NaiveDate) -> Answer<(usize, u32)> {
     reader.one(
         "sum",
-        "select count(*), coalesce(sum(minutes), 0)
-         from open_pull
+        "select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0)
+         from open_day
          where stage = 'to take' and due_on between :first and :last",
         named_params! { ":first": Day(first), ":last": Day(last) },
         |row| Ok((count(row.get(0)?), row.get(1)?)),
@@ -63,7 +63,7 @@ pub fn people(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<
         "select o.account, p.full_name, max(o.due_on, :today), count(*), sum(o.minutes)
          from open_pull o
          join account p on p.id = o.account
-         where o.stage = 'to take' and o.due_on <= :last
+         where o.stage = 'to take' and o.due_on <= :last and o.account is not null
          group by o.account, 3
          order by p.full_name, 3",
         named_params! { ":today": Day(today), ":last": Day(last) },

@@ -34,6 +34,8 @@ CREATE INDEX open_pull_by_due on open_pull (stage, due_on, latest_on, minutes);
 
 CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);
 
+CREATE INDEX open_pull_of_people on open_pull (stage, due_on, account, minutes) where account is not null;
+
 CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
 
 CREATE INDEX presentation_by_product on presentation (product);
@@ -370,6 +372,15 @@ CREATE TABLE method_version (
 CREATE TABLE open_check (
     sample_test integer primary key references sample_test (id)
 ) strict;
+
+CREATE TABLE open_day (
+    stage text not null,
+    due_on text not null,
+    latest_on text not null,
+    pulls integer not null,
+    minutes integer not null,
+    primary key (stage, due_on, latest_on)
+) strict, without rowid;
 
 CREATE TABLE open_pull (
     pull integer primary key references pull (id),
@@ -855,6 +866,34 @@ when new.imported is null and (select json_extract(v.content, '$.needs_check')
     from sample_test t join method_version v on v.id = t.method_version where t.id = new.sample_test) = 1
 begin
     insert or ignore into open_check (sample_test) values (new.sample_test);
+end;
+
+CREATE TRIGGER open_day_fewer after delete on open_pull
+begin
+    update open_day set pulls = pulls - 1, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on;
+    delete from open_day
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
+end;
+
+CREATE TRIGGER open_day_more after insert on open_pull
+begin
+    insert or ignore into open_day (stage, due_on, latest_on, pulls, minutes)
+    values (new.stage, new.due_on, new.latest_on, 0, 0);
+    update open_day set pulls = pulls + 1, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on and latest_on = new.latest_on;
+end;
+
+CREATE TRIGGER open_day_moved after update of stage, due_on, latest_on, minutes on open_pull
+begin
+    insert or ignore into open_day (stage, due_on, latest_on, pulls, minutes)
+    values (new.stage, new.due_on, new.latest_on, 0, 0);
+    update open_day set pulls = pulls + 1, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on and latest_on = new.latest_on;
+    update open_day set pulls = pulls - 1, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on;
+    delete from open_day
+    where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
 end;
 
 CREATE TRIGGER open_pull_asked after insert on sample_test
