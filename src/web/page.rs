@@ -4,6 +4,7 @@ use super::form::Form;
 use super::static_file;
 use super::visit::Visit;
 use crate::domain::role::Role;
+use crate::store;
 
 /// The signed-in person as the top bar shows them.
 #[derive(Clone, Debug)]
@@ -59,6 +60,7 @@ const SECTIONS: [(&str, &str); 8] = [
 impl Shell {
     pub fn of(visit: &Visit, title: &str) -> Shell {
         let actor = visit.actor().ok();
+        let (print_state, print_digest) = as_of(visit);
         let person = actor.map(|actor| Person {
             full_name: actor.full_name.clone(),
             roles: actor.roles.iter().map(|role| role.code()).collect::<Vec<_>>().join(", "),
@@ -81,8 +83,8 @@ impl Shell {
             crumbs: Vec::new(),
             is_bench: false,
             searched: String::new(),
-            print_state: String::new(),
-            print_digest: String::new(),
+            print_state,
+            print_digest,
         }
     }
 
@@ -111,6 +113,18 @@ impl Shell {
     pub fn print(self, state: &str, digest: &str) -> Shell {
         let print_digest = digest.chars().take(12).collect();
         Shell { print_state: state.to_string(), print_digest, ..self }
+    }
+}
+
+/// What a printed sheet says where the record has no state of its own: the newest entry of the history, and the
+/// start of its digest (screen_U121).
+fn as_of(visit: &Visit) -> (String, String) {
+    if visit.actor().is_err() {
+        return (String::new(), String::new());
+    }
+    match visit.read(store::trail::head) {
+        Ok(Some((act, digest))) => (format!("Records as of entry {act}"), digest.chars().take(12).collect()),
+        _ => (String::new(), String::new()),
     }
 }
 
