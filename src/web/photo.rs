@@ -31,6 +31,7 @@ struct MeasureRow {
     interface: String,
     fill_line: String,
     ratio: String,
+    strokes: [(Decimal, Decimal, Decimal); 3],
 }
 
 impl Measurements {
@@ -40,6 +41,11 @@ impl Measurements {
             return Ok(Measurements { rows: Vec::new(), hidden: measured.len() });
         }
         Ok(Measurements { rows: measured.into_iter().map(|one| row(one, visit)).collect(), hidden: 0 })
+    }
+
+    /// The clicks of all that the visitor sees.
+    fn strokes(&self) -> impl Iterator<Item = &(Decimal, Decimal, Decimal)> {
+        self.rows.iter().flat_map(|row| row.strokes.iter())
     }
 }
 
@@ -52,13 +58,21 @@ fn row(measured: Measured, visit: &Visit) -> MeasureRow {
         interface: click(interface_x, interface_y),
         fill_line: click(fill_line_x, fill_line_y),
         ratio: measured.ratio.to_string(),
+        strokes: [stroke(base_x, base_y), stroke(interface_x, interface_y), stroke(fill_line_x, fill_line_y)],
     }
 }
 
-/// "0.4820 across, 0.9000 down".
+/// "0.4820, 0.9000": from the left, from the top. A typed height alone is "0.9000 down".
 fn click(x: Option<Decimal>, y: Decimal) -> String {
-    let across = x.map(|x| format!("{x} across, ")).unwrap_or_default();
-    format!("{across}{y} down")
+    x.map_or_else(|| format!("{y} down"), |x| format!("{x}, {y}"))
+}
+
+/// A click as a short level stroke on the picture, in thousandths of it: from, to, height.
+fn stroke(x: Option<Decimal>, y: Decimal) -> (Decimal, Decimal, Decimal) {
+    let (thousand, half) = (Decimal::ONE_THOUSAND, Decimal::from(60));
+    let middle = x.unwrap_or(Decimal::new(5, 1)) * thousand;
+    let (from, to) = (middle - half, middle + half);
+    (from.normalize(), to.normalize(), (y * thousand).normalize())
 }
 
 /// The photos of a record, for its review.

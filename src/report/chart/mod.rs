@@ -225,6 +225,18 @@ mod tests {
         );
     }
 
+    /// decision A12: a line through the points is no shelf life, and the chart says so.
+    #[test]
+    fn the_straight_line_is_drawn_where_asked_and_says_what_it_is() {
+        assert_eq!(count(&ph().drawn(), "fit"), 0);
+        let fitted = Chart { has_fit: true, ..ph() }.drawn();
+        assert_eq!(count(&fitted, "fit"), 1);
+        assert!(fitted.key.contains("no shelf life"), "{}", fitted.key);
+        let mut short = Chart { has_fit: true, ..ph() };
+        short.series[0].points.truncate(2);
+        assert_eq!((count(&short.drawn(), "fit"), short.drawn().key.contains("straight")), (0, false));
+    }
+
     #[test]
     fn screen_u111_every_drawn_point_has_its_row() {
         let drawn = ph().drawn();
