@@ -16,11 +16,13 @@ fn every_printed_sheet_says_what_it_is() {
     browser.is("ines.caro");
     browser.open("/history");
     let printed_at = format!("Printed at {}", site.lab.now().shown());
+    let (entry, digest) = site.lab.app.db.read(supernate::store::trail::head).unwrap().unwrap();
+    let as_of = format!("Records as of entry {entry}");
     let sheets = browser.prints();
     assert!(sheets.len() > 1, "more than one sheet: {}", sheets.len());
     for (at, sheet) in sheets.iter().enumerate() {
         let page = format!("Page {} of {}", at + 1, sheets.len());
-        for fact in ["History", "Printed by Ines Caro", &printed_at, &page] {
+        for fact in ["History", "Printed by Ines Caro", &printed_at, &page, &as_of, &digest[..12]] {
             assert!(sheet.contains(fact), "sheet {} lacks “{fact}”:\n{sheet}", at + 1);
         }
         assert!(!sheet.contains("Sign out"), "no navigation on paper");
