@@ -99,7 +99,7 @@ impl Player<'_> {
             let answer = match exception.by {
                 AnswerBy::Investigation => NewAnswer::ReadingVerified,
                 _ => NewAnswer::Acceptable(
-                    "The raw readings agree with the calculation, and the value lies within its limits."
+                    "the raw readings agree with the calculation and the value lies within its limits"
                         .to_string(),
                 ),
             };
