@@ -219,7 +219,7 @@ fn entries(path: &Path) -> Result<(), Failure> {
     };
     let (mut entered, mut written) = (Vec::new(), Vec::new());
     for _ in 0..200 {
-        entered.push(timed(&entry)?);
+        entered.push(timed(entry)?);
         written.push(timed(&mut bare)?);
     }
     let (entered, written) = (median(entered), median(written));
