@@ -87,9 +87,6 @@ create table result (
     unique (sample_test, version, component)
 ) strict;
 
--- Tests completed again: few among many, and what the review queue must not miss.
-create index result_again on result (sample_test) where version > 1;
-
 -- What a judgement found, as a row with its numbers.
 create table flag (
     id integer primary key,
@@ -138,7 +135,6 @@ create table result_check (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 create index result_check_by_test on result_check (sample_test);
-create index result_check_sent_back on result_check (sample_test) where verdict = 'sent back';
 
 -- Nobody checks what they read.
 create trigger guard_checker_is_not_reader before insert on result_check

@@ -287,10 +287,6 @@ impl Typed<'_> {
         self.kept(name, read)
     }
 
-    pub fn maybe_date(&mut self, name: &str) -> Option<Option<NaiveDate>> {
-        if self.raw(name).is_empty() { Some(None) } else { self.date(name).map(Some) }
-    }
-
     pub fn tick(&self, name: &str) -> bool {
         self.raw(name) == "yes"
     }

@@ -52,11 +52,7 @@ CREATE INDEX qualification_by_account on qualification (account, method_version)
 
 CREATE INDEX reading_by_test on reading (sample_test, replicate, field);
 
-CREATE INDEX result_again on result (sample_test) where version > 1;
-
 CREATE INDEX result_check_by_test on result_check (sample_test);
-
-CREATE INDEX result_check_sent_back on result_check (sample_test) where verdict = 'sent back';
 
 CREATE INDEX review_decision_by_sample on review_decision (sample);
 

@@ -6,6 +6,7 @@ use rust_decimal::Decimal;
 use rust_decimal::prelude::ToPrimitive;
 
 use super::Complaint;
+use crate::domain::import::COLUMNS;
 use crate::science::shelf_life::Direction;
 use crate::science::transform::Scale;
 
@@ -68,20 +69,6 @@ const OPTIONAL: [&str; 11] = [
     "upper_limit",
     "direction",
     "scale",
-];
-const IMPORT: [&str; 12] = [
-    "study",
-    "formulation",
-    "condition",
-    "container",
-    "time",
-    "time_unit",
-    "test",
-    "value",
-    "sd",
-    "n",
-    "unit",
-    "flag",
 ];
 
 /// Reads a table; on trouble, every complaint it can find.
@@ -179,7 +166,7 @@ impl Columns {
             let sentence = format!("the import file lacks the column {}", missing.join(", "));
             return Err(Complaint::at(1, sentence));
         }
-        self.check_unknown(&IMPORT)
+        self.check_unknown(&COLUMNS)
     }
 
     fn check_unknown(&self, known: &[&str]) -> Result<(), Complaint> {

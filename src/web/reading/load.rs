@@ -4,7 +4,6 @@ use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::instrument::{self, InstrumentFacts};
 use crate::domain::label::labelled;
-use crate::domain::method::Level;
 use crate::domain::moment::Moment;
 use crate::domain::protocol::LimitsDo;
 use crate::domain::qualification;
@@ -182,9 +181,5 @@ impl Loaded {
     /// The newest row the page shows.
     pub fn seen(&self) -> i64 {
         self.readings.iter().map(|reading| reading.id).max().unwrap_or_default()
-    }
-
-    pub fn is_by_container(&self) -> bool {
-        self.test.content.level == Level::Container
     }
 }
