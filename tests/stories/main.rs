@@ -37,5 +37,6 @@ mod signatures;
 mod specifications;
 mod studies;
 mod trail;
+mod upgrades;
 mod verification;
 mod weeks;
