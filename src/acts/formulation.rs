@@ -7,6 +7,7 @@ use crate::domain::failure::Failure;
 use crate::domain::formulation::{
     FormulationContent, FormulationRefusal, NewFormulation, in_one_line, may_write,
 };
+use crate::domain::master;
 use crate::domain::reason::Reason;
 use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
@@ -66,8 +67,10 @@ fn written(reason: &str, content: &FormulationContent) -> Result<Written, Failur
     Ok(Written { reason: reason.to_string(), content: serde_json::to_string(content)? })
 }
 
-/// What is checked before a signature: the content still keeps its rules.
+/// What is checked before a signature: the content still keeps its rules, and its master record is whole.
 pub fn check(_: &Change<'_>, version: &Version) -> Result<(), Failure> {
-    may_write(&version.read()?)?;
+    let content: FormulationContent = version.read()?;
+    may_write(&content)?;
+    master::rule::may_sign(&content)?;
     Ok(())
 }

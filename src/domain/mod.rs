@@ -26,6 +26,7 @@ pub mod label;
 pub mod lot;
 pub mod lot_decision;
 pub mod lot_file;
+pub mod master;
 pub mod material;
 pub mod method;
 pub mod moment;

@@ -21,6 +21,8 @@ pub enum Entry {
     /// One yes-or-no box.
     Tick,
     File,
+    /// Only shown, such as the name of a grid's row.
+    Fixed,
 }
 
 /// One choice of a select or a group of radios.

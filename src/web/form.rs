@@ -146,7 +146,7 @@ impl Form {
 
     /// Takes over what was typed. A name the form does not have is refused (sec_S53).
     pub fn fill(&mut self, visit: &Visit) -> Result<(), Failure> {
-        for field in self.fields_mut() {
+        for field in self.fields_mut().filter(|field| field.entry != Entry::Fixed) {
             field.value = visit.form.get(&field.name).unwrap_or_default().to_string();
         }
         for (name, _) in visit.form.iter() {

@@ -24,6 +24,7 @@ mod kills;
 mod lot_decisions;
 mod lot_files;
 mod lots;
+mod masters;
 mod methods;
 mod own_work;
 mod people;

@@ -256,6 +256,7 @@ pub fn approved_formulation(lab: &Lab, product: i64) -> i64 {
         quantity_basis: "100 mL".to_string(),
         target_total: Some(Decimal::from(100)),
         physical: Default::default(),
+        master: None,
     };
     let (db, author) = (&lab.app.db, lab.actor("tomas.reyle"));
     let version =

@@ -150,6 +150,7 @@ impl Player<'_> {
                 vehicle_density_g_per_ml: row.vehicle_density,
                 vehicle_low_shear_viscosity_mpa_s: row.vehicle_viscosity,
             },
+            master: None,
         };
         let formulation = self.number(&format!("formulation {}", row.code))?;
         let actor = self.person(FORMULATOR)?;

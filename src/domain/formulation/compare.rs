@@ -3,6 +3,7 @@
 use rust_decimal::{Decimal, RoundingStrategy};
 
 use super::{FormulationContent, Ingredient, PHYSICAL, ingredient_words};
+use crate::domain::master::compare::{Part, parts};
 
 /// One line of a comparison of two versions.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -100,7 +101,31 @@ fn compare_rest(was: &FormulationContent, is: &FormulationContent) -> Vec<Differ
         let shown = |value: Option<Decimal>| value.map(|value| value.to_string());
         lines.push(Difference { what: label.to_string(), was: shown(was), is: shown(is), change });
     }
+    lines.extend(compare_masters(was, is));
     lines
+}
+
+/// The parts of the two master records, in the order of the newer one, then what only the older one has.
+fn compare_masters(was: &FormulationContent, is: &FormulationContent) -> Vec<Difference> {
+    let of = |content: &FormulationContent| content.master.as_ref().map(parts).unwrap_or_default();
+    let (was, is) = (of(was), of(is));
+    let find = |all: &[Part], what: &str| all.iter().find(|part| part.what == what).cloned();
+    let line = |was: Option<&Part>, is: Option<&Part>| {
+        let change = match (was, is) {
+            (Some(was), Some(is)) if was.shown == is.shown => "same".to_string(),
+            (Some(was), Some(is)) => {
+                was.number.zip(is.number).map_or("changed".to_string(), |(was, is)| percent(was, is))
+            }
+            (None, _) => "new".to_string(),
+            (_, None) => "left out".to_string(),
+        };
+        let what = was.or(is).map(|part| part.what.clone()).unwrap_or_default();
+        let shown = |part: Option<&Part>| part.map(|part| part.shown.clone());
+        Difference { what, was: shown(was), is: shown(is), change }
+    };
+    let newer = is.iter().map(|part| line(find(&was, &part.what).as_ref(), Some(part)));
+    let gone = was.iter().filter(|part| find(&is, &part.what).is_none()).map(|part| line(Some(part), None));
+    newer.chain(gone).collect()
 }
 
 #[cfg(test)]
@@ -132,5 +157,35 @@ mod tests {
         assert_eq!(of("material 5"), "new");
         assert_eq!(of("Dosage form"), "same");
         assert!(compare(&was, &was).iter().all(Difference::is_same));
+    }
+
+    #[test]
+    fn two_master_records_differ_part_by_part_in_percent() {
+        use crate::domain::master::{MasterRecord, Phase, Step, StepKind, StepValue};
+        let with = |speed: i64, minutes: Option<u32>| {
+            let value = StepValue {
+                name: "speed".to_string(),
+                unit: "rpm".to_string(),
+                least: Some(Decimal::from(speed)),
+                ..StepValue::default()
+            };
+            let step = Step {
+                kind: StepKind::Disperse,
+                title: "Hydrate the gum".to_string(),
+                instruction: "Strew in slowly.".to_string(),
+                values: vec![value],
+                least_minutes: minutes,
+                ..Step::default()
+            };
+            let phase = Phase { name: "Gum".to_string(), steps: vec![step], ..Phase::default() };
+            let master = MasterRecord { phases: vec![phase], ..MasterRecord::default() };
+            FormulationContent { master: Some(master), ..content("100 g", None, &[(1, "8.00", "g", false)]) }
+        };
+        let lines = compare(&with(1200, None), &with(1500, Some(30)));
+        let of =
+            |what: &str| lines.iter().find(|line| line.what == what).unwrap().change.replace('\u{202f}', " ");
+        assert_eq!(of("Step “Hydrate the gum”: speed, least"), "+25.00 %");
+        assert_eq!(of("Step “Hydrate the gum”: shortest time"), "new");
+        assert_eq!(lines.iter().filter(|line| !line.is_same()).count(), 2, "{lines:#?}");
     }
 }

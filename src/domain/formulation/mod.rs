@@ -5,6 +5,7 @@ pub mod compare;
 use rust_decimal::{Decimal, RoundingStrategy};
 use serde::{Deserialize, Serialize};
 
+use super::master::MasterRecord;
 use super::refusal::NamedReason;
 
 /// The content of a formulation version: one document, signed as a whole, frozen at approval.
@@ -19,6 +20,9 @@ pub struct FormulationContent {
     /// The sum the quantities should reach, in the basis' own unit; `None` where units differ by nature.
     pub target_total: Option<Decimal>,
     pub physical: PhysicalData,
+    /// How it is made; versions from before, and those whose lots are made elsewhere, have none.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub master: Option<MasterRecord>,
 }
 
 /// How the particles are kept (terms of the trade).

@@ -14,6 +14,7 @@ use crate::domain::failure::Failure;
 use crate::domain::formulation::{
     FormulationContent, Ingredient, IntendedState, PHYSICAL, PhysicalData, UNITS, basis_unit,
 };
+use crate::domain::master::MasterRecord;
 use crate::domain::material::FUNCTIONS;
 use crate::domain::product::DOSAGE_FORMS;
 use crate::domain::role::Role;
@@ -168,7 +169,13 @@ struct Draft {
     seen: String,
 }
 
-fn typed_draft(typed: &mut Typed<'_>, count: usize, materials: &[Material]) -> Option<Draft> {
+/// The master record is no part of this form: it stays as it is.
+fn typed_draft(
+    typed: &mut Typed<'_>,
+    count: usize,
+    materials: &[Material],
+    master: Option<MasterRecord>,
+) -> Option<Draft> {
     let reason = typed.reason("reason").and_then(|reason| reason.text().map(str::to_string));
     let dosage_form = typed.choice("dosage_form");
     let state = typed.choice("intended_state");
@@ -199,6 +206,7 @@ fn typed_draft(typed: &mut Typed<'_>, count: usize, materials: &[Material]) -> O
         quantity_basis: basis?,
         target_total: target?.map(|number| number.value),
         physical: PhysicalData::from_values(values),
+        master,
     };
     Some(Draft { reason: reason?, content, rows: at, seen: typed.raw("seen") })
 }
@@ -265,11 +273,14 @@ pub fn write(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
     let materials = visit.read(store::material::all)?;
     let (title, form) = new_form(visit, &materials)?;
+    let newest = visit.read(|reader| store::version::of_parent(reader, OF, id))?.into_iter().next();
+    let master = newest.map(|newest| newest.read::<FormulationContent>()).transpose()?;
+    let master = master.and_then(|content| content.master);
     let count = row_count(visit, 0);
     form::submit(
         visit,
         form,
-        |typed| typed_draft(typed, count, &materials),
+        |typed| typed_draft(typed, count, &materials, master),
         |actor, draft| {
             let written = acts::formulation::draft(visit.db(), actor, id, &draft.reason, &draft.content);
             at_its_row(written, &draft.rows)
@@ -320,11 +331,12 @@ fn after_stale(visit: &Visit, version: &Version, mut form: Form) -> Form {
 pub fn rewrite(visit: &Visit) -> Outcome {
     let materials = visit.read(store::material::all)?;
     let (version, title, form) = edit_form(visit, &materials)?;
+    let master = version.read::<FormulationContent>()?.master;
     let count = row_count(visit, 0);
     form::submit(
         visit,
         form,
-        |typed| typed_draft(typed, count, &materials),
+        |typed| typed_draft(typed, count, &materials, master),
         |actor, draft| {
             let (db, reason) = (visit.db(), &draft.reason);
             let answer =

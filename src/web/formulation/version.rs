@@ -145,8 +145,8 @@ fn version_page(status: u16, visit: &Visit, version: &Version, form: Option<Form
         .fact("Dosage form", &content.dosage_form)
         .fact("Intended state", content.intended_state.words());
     let note = signing_note(visit, version)?;
-    with_links(record, visit, version, &owner, &all)
-        .table("Ingredients", ingredients(&content))
+    let record = with_links(record, visit, version, &owner, &all).table("Ingredients", ingredients(&content));
+    super::super::master::sections(record, visit, version, &content)
         .more_facts("Physical data", physical_facts(&content))
         .form("Next step", note, form)
         .signatures(versions::signatures(visit, OF, version)?)
