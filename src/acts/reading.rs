@@ -57,7 +57,7 @@ pub fn record(
                 AlreadyThere::Same => continue,
                 AlreadyThere::No => {}
             }
-            may_record_entry(change, &sample, test, &readings, entry, how)?;
+            may_record_entry(change, &sample, &readings, entry, how)?;
             let due_at = due_at(&readings, entry, change.actor().at);
             let questions = super::question::of(change, &sample, test, &readings, entry)?;
             let inspected_every = inspected_every(test, entry);
@@ -275,14 +275,13 @@ fn stale(actor: &Actor, there: &Reading, entry: &Entry) -> Stale {
 fn may_record_entry(
     change: &Change<'_>,
     sample: &BenchSample,
-    test: &BenchTest,
     readings: &[Reading],
     entry: &Entry,
     how: &How,
 ) -> Result<(), Failure> {
     readers_differ(change.actor(), readings, &entry.slot.key)?;
     let tests = super::stage::tests_of(sample);
-    stage::may_read(&tests, &sample.losses, test.content.stage, entry.slot.key.container)?;
+    stage::may_read(&tests, &sample.losses, entry.slot.stage, entry.slot.key.container)?;
     if let Some(minute) = entry.slot.due_minute {
         let at = how.read_at.unwrap_or(change.actor().at);
         may_read_cylinder(readings, entry, minute, at)?;

@@ -13,7 +13,7 @@ use crate::domain::result::{
     CompleteFacts, bench_flags, clock_due_on, clock_runs, for_judgement, may_complete, reader_key,
 };
 use crate::domain::specification::LimitSet;
-use crate::domain::stage::loss_of;
+use crate::domain::stage::{StageLoss, loss_of};
 use crate::domain::subject::Kind;
 use crate::store;
 use crate::store::bench::{BenchSample, BenchTest};
@@ -50,11 +50,11 @@ pub fn facts_of(sample: &BenchSample, test: &BenchTest) -> CompleteFacts {
     let readings = sample.readings_of(test.id);
     let mut facts = CompleteFacts {
         recorded: standing(&readings).len(),
-        lost: sample.losses.iter().filter(|loss| loss.stage == test.content.stage).count(),
+        lost: losses(sample, test).count(),
         ..CompleteFacts::default()
     };
     for slot in sample.slots(test) {
-        let is_lost = loss_of(&sample.losses, test.content.stage, slot.key.container).is_some();
+        let is_lost = loss_of(&sample.losses, slot.stage, slot.key.container).is_some();
         let there = in_slot(&readings, &slot.key);
         if slot.is_required && there.is_none() && !is_lost {
             facts.missing.push(slot.label());
@@ -77,6 +77,12 @@ pub fn facts_of(sample: &BenchSample, test: &BenchTest) -> CompleteFacts {
     facts.questions =
         open.flat_map(|reading| reading.questions.iter().map(|one| one.sentence.clone())).collect();
     facts
+}
+
+/// What was lost of the stages at which a test is read.
+fn losses<'a>(sample: &'a BenchSample, test: &BenchTest) -> impl Iterator<Item = &'a StageLoss> {
+    let stages = test.content.stages();
+    sample.losses.iter().filter(move |loss| stages.contains(&loss.stage))
 }
 
 fn differ(first: &Reading, second: &Reading, tolerance: rust_decimal::Decimal) -> bool {
@@ -132,12 +138,7 @@ fn judged(sample: &BenchSample, test: &BenchTest, readings: &[Reading]) -> Vec<J
 
 /// A test whose every reading was lost with its stage: said so, and not judged.
 fn nothing_read(sample: &BenchSample, test: &BenchTest) -> Judged {
-    let why: Vec<&str> = sample
-        .losses
-        .iter()
-        .filter(|loss| loss.stage == test.content.stage)
-        .map(|loss| loss.why.as_str())
-        .collect();
+    let why: Vec<&str> = losses(sample, test).map(|loss| loss.why.as_str()).collect();
     Judged {
         component: String::new(),
         value: None,

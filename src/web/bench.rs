@@ -12,9 +12,11 @@ use super::visit::Visit;
 use crate::acts::stage::{columns, tests_of};
 use crate::domain::act::Act;
 use crate::domain::label::{labelled, short_label};
+use crate::domain::method::Stage;
 use crate::domain::moment::{date_from_stored, until_shown};
 use crate::domain::qualification;
 use crate::domain::reading::{PullState, in_slot};
+use crate::domain::slot::Slot;
 use crate::domain::stage::{StageRefusal, may_read};
 use crate::domain::status::Status;
 use crate::store;
@@ -45,18 +47,37 @@ pub fn standing(sample: &BenchSample, test: &BenchTest) -> (Status, String) {
             (Status::WaitingForCheck, String::new())
         }
         Some(_) => (Status::WaitingForReview, String::new()),
-        None => open_standing(sample, test),
+        None => open_standing(sample, test, &test.content.stages()),
     }
 }
 
-fn open_standing(sample: &BenchSample, test: &BenchTest) -> (Status, String) {
-    let readings = sample.readings_of(test.id);
-    let required: Vec<_> = sample.slots(test).into_iter().filter(|slot| slot.is_required).collect();
-    let done = required.iter().filter(|slot| in_slot(&readings, &slot.key).is_some()).count();
-    if !readings.is_empty() {
-        return (Status::InProgress, format!("{done} of {} readings", required.len()));
+/// Where one part of a test stands: an appearance as stored and after the label shake are two tasks of one test.
+pub fn part_standing(sample: &BenchSample, test: &BenchTest, stage: Stage) -> (Status, String) {
+    match standing(sample, test) {
+        (Status::NotStarted | Status::InProgress | Status::CannotStartYet, _)
+            if test.content.stages().len() > 1 && sample.pull_state() != PullState::Planned =>
+        {
+            open_standing(sample, test, &[stage])
+        }
+        whole => whole,
     }
-    match refusal(sample, test) {
+}
+
+fn open_standing(sample: &BenchSample, test: &BenchTest, stages: &[Stage]) -> (Status, String) {
+    let readings = sample.readings_of(test.id);
+    let slots = sample.slots(test).into_iter().filter(|slot| stages.contains(&slot.stage));
+    let slots: Vec<_> = slots.collect();
+    let done = |slot: &&Slot| in_slot(&readings, &slot.key).is_some();
+    if slots.iter().any(|slot| done(&slot)) {
+        let required = slots.iter().filter(|slot| slot.is_required);
+        let of = required.clone().count();
+        return (Status::InProgress, format!("{} of {of} readings", required.filter(done).count()));
+    }
+    let refused = match stages {
+        [stage] => part_refusal(sample, test, *stage),
+        _ => refusal(sample, test),
+    };
+    match refused {
         None => (Status::NotStarted, String::new()),
         Some(StageRefusal::StageNotOpen { title, .. }) => {
             (Status::CannotStartYet, format!("opens when {title} is finished"))
@@ -67,10 +88,18 @@ fn open_standing(sample: &BenchSample, test: &BenchTest) -> (Status, String) {
 
 /// Why no container of the test can be read now; `None` where at least one can.
 pub fn refusal(sample: &BenchSample, test: &BenchTest) -> Option<StageRefusal> {
+    let mut refusals = Vec::new();
+    for stage in test.content.stages() {
+        refusals.push(part_refusal(sample, test, stage)?);
+    }
+    refusals.into_iter().next()
+}
+
+/// Why no container of a part of the test can be read now.
+pub fn part_refusal(sample: &BenchSample, test: &BenchTest, stage: Stage) -> Option<StageRefusal> {
     let tests = tests_of(sample);
-    let mut refusals = columns(sample, test)
-        .into_iter()
-        .map(|column| may_read(&tests, &sample.losses, test.content.stage, column.container));
+    let columns = columns(sample, test, stage);
+    let mut refusals = columns.iter().map(|column| may_read(&tests, &sample.losses, stage, column.container));
     if refusals.clone().any(|said| said.is_ok()) { None } else { refusals.next()?.err() }
 }
 

@@ -2,7 +2,7 @@
 
 use askama::Template;
 
-use super::bench::{place, standing};
+use super::bench::{part_standing, place};
 use super::field::{Entry, Field};
 use super::form::{self, Form, Typed};
 use super::page::Shell;
@@ -235,15 +235,15 @@ fn receipt_facts(sample: &BenchSample, receipt: store::sample::Receipt) -> Vec<(
 }
 
 fn stage_block(sample: &BenchSample, stage: Stage, label: &str, is_right: bool) -> Option<StageBlock> {
-    let of_stage = sample.tests.iter().filter(|test| test.content.stage == stage);
+    let of_stage = sample.tests.iter().filter(|test| test.content.stages().contains(&stage));
     let tasks: Vec<Task> = of_stage
         .map(|test| {
-            let (status, note) = standing(sample, test);
+            let (status, note) = part_standing(sample, test, stage);
             let query = if is_right { format!("?label={}", encoded(label)) } else { String::new() };
             Task {
                 path: format!("/tests/{}{query}", test.id),
                 is_link: status != Status::CannotStartYet,
-                name: test.title.clone(),
+                name: acts::stage::part_title(test, stage),
                 note,
                 status: StatusMark::of(status),
             }

@@ -6,6 +6,7 @@
 mod support;
 
 mod amendments;
+mod appearances;
 mod attachments;
 mod backups;
 mod benches;

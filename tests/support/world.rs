@@ -71,6 +71,9 @@ pub fn method_with(lab: &Lab, code: &str, name: &str, content: MethodContent) ->
 /// The preset of the kind; the numeric test is an assay by weight and dilution.
 pub fn method_content(kind: TestKind) -> MethodContent {
     let mut content = preset::of(kind);
+    if let Settings::Appearance { attributes } = &mut content.settings {
+        attributes.iter_mut().for_each(|attribute| attribute.is_after_shake = false);
+    }
     if kind == TestKind::Numeric {
         content.unit = "%".to_string();
         content.rounding.to = supernate::domain::method::RoundTo::Decimals(1);

@@ -36,14 +36,44 @@ impl Player<'_> {
         self.daily_checks(analyst)?;
         let bench = self.db.read(|reader| store::bench::sample(reader, sample))?;
         let place = Place::of(self, &bench, made_on);
-        for test in bench.tests.iter().take(twist.stop_after.unwrap_or(usize::MAX)) {
+        let planned = twist.stop_after.unwrap_or(usize::MAX);
+        for test in bench.tests.iter().take(planned) {
             let level = match &twist.level {
                 Some((code, level)) if *code == test.test => *level,
                 _ => reading::value(self, &place, &test.test),
             };
             self.read_test(&bench, test, &place, level, analyst, twist)?;
         }
+        if planned >= bench.tests.len() { self.read_second_parts(&bench, &place, analyst) } else { Ok(()) }
+    }
+
+    /// What is looked at after the label shake, once the containers are redispersed.
+    fn read_second_parts(
+        &mut self,
+        bench: &BenchSample,
+        place: &Place,
+        analyst: &str,
+    ) -> Result<(), Failure> {
+        for test in bench.tests.iter().filter(|test| test.content.stages().len() > 1) {
+            let first = test.content.stages()[0];
+            let mut entries = self.entries(bench, test, place, Decimal::ZERO)?;
+            entries.retain(|entry| entry.slot.stage != first);
+            self.record_part(bench, test, entries, analyst)?;
+            self.complete(test.id, analyst)?;
+        }
         Ok(())
+    }
+
+    fn record_part(
+        &mut self,
+        bench: &BenchSample,
+        test: &BenchTest,
+        entries: Vec<Entry>,
+        analyst: &str,
+    ) -> Result<(), Failure> {
+        let how = self.how(bench, test)?;
+        let actor = self.person(analyst)?;
+        acts::reading::record(self.db, &actor, &how, &entries, &Reason::none()).map(|_| ())
     }
 
     fn read_test(
@@ -58,6 +88,11 @@ impl Player<'_> {
         let entries = self.entries(bench, test, place, level)?;
         if test.kind == TestKind::Sedimentation {
             return self.start_cylinder(bench, test, entries, analyst);
+        }
+        let stages = test.content.stages();
+        if stages.len() > 1 {
+            let of_first = entries.into_iter().filter(|entry| entry.slot.stage == stages[0]);
+            return self.record_part(bench, test, of_first.collect(), analyst);
         }
         let mut first = entries.clone();
         if let Some((_, text)) = twist.mistyped.as_ref().filter(|(code, _)| *code == test.test) {

@@ -10,7 +10,7 @@ use crate::domain::method::{
 /// Code, name and content of every method of the demo.
 pub fn all() -> Vec<(&'static str, &'static str, MethodContent)> {
     vec![
-        ("APP-01", "Appearance as stored", appearance()),
+        ("APP-01", "Appearance as stored and after the label shake", appearance()),
         ("SED-00", "As-stored sediment", as_stored()),
         ("RED-02", "Inversions to uniform", redispersibility()),
         ("PH-03", "pH of the suspension", ph()),
@@ -62,19 +62,20 @@ fn grades(words: &[(&str, &str)]) -> Vec<Grade> {
 }
 
 fn attribute(code: &str, title: &str, words: &[(&str, &str)]) -> Attribute {
-    Attribute { code: code.to_string(), title: title.to_string(), grades: grades(words) }
+    Attribute {
+        code: code.to_string(),
+        title: title.to_string(),
+        is_after_shake: false,
+        grades: grades(words),
+    }
+}
+
+fn after_shake(code: &str, title: &str, words: &[(&str, &str)]) -> Attribute {
+    Attribute { is_after_shake: true, ..attribute(code, title, words) }
 }
 
 fn appearance() -> MethodContent {
     let attributes = vec![
-        attribute(
-            "colour",
-            "Colour",
-            &[
-                ("matches", "no difference from the reference bottle"),
-                ("differs", "a difference is seen in daylight"),
-            ],
-        ),
         attribute(
             "clarity",
             "Supernatant clarity",
@@ -86,6 +87,19 @@ fn appearance() -> MethodContent {
             ],
         ),
         attribute(
+            "foreign_matter",
+            "Foreign matter",
+            &[("none", "nothing is seen against black and white"), ("seen", "say what, in the remarks")],
+        ),
+        after_shake(
+            "colour",
+            "Colour",
+            &[
+                ("matches", "no difference from the reference bottle"),
+                ("differs", "a difference is seen in daylight"),
+            ],
+        ),
+        after_shake(
             "caking",
             "Caking",
             &[
@@ -94,11 +108,6 @@ fn appearance() -> MethodContent {
                 ("firm bed", "pieces break off the bed"),
                 ("cake", "the bed stays after ten inversions"),
             ],
-        ),
-        attribute(
-            "foreign_matter",
-            "Foreign matter",
-            &[("none", "nothing is seen against black and white"), ("seen", "say what, in the remarks")],
         ),
     ];
     MethodContent {

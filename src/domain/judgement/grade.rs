@@ -4,8 +4,10 @@ use serde_json::json;
 
 use super::limit::{Yardstick, limit_words};
 use super::{FlagLevel, Judged, NewFlag, Qualifier, ReadingValue, ResultQualifier, Verdict, flag_kind};
-use crate::domain::method::Attribute;
+use crate::domain::method::{Attribute, Settings, Stage};
+use crate::domain::slot::field::REMARKS_AFTER_SHAKE;
 use crate::domain::specification::Limit;
+use crate::domain::stage::part_words;
 
 /// One attribute as it was graded.
 struct Graded {
@@ -18,15 +20,40 @@ struct Graded {
     allowed: String,
 }
 
-pub(super) fn judge(
+/// One entry per part: as stored and after the label shake are judged apart (decision A4). A method of one part
+/// has the component "".
+pub(super) fn judge(yardstick: &Yardstick<'_>, readings: &[ReadingValue]) -> Vec<Judged> {
+    let Settings::Appearance { attributes } = &yardstick.method.settings else { return Vec::new() };
+    let stages = yardstick.method.stages();
+    let part = |(at, stage): (usize, &Stage)| {
+        let of_part: Vec<Attribute> =
+            attributes.iter().filter(|one| yardstick.method.stage_of(one) == *stage).cloned().collect();
+        let (component, remarks) = match (stages.len(), at) {
+            (1, _) => ("", "remarks"),
+            (_, 0) => (part_words(*stage), "remarks"),
+            _ => (part_words(*stage), REMARKS_AFTER_SHAKE),
+        };
+        judge_part(yardstick, component, remarks, &of_part, readings)
+    };
+    stages.iter().enumerate().map(part).collect()
+}
+
+fn judge_part(
     yardstick: &Yardstick<'_>,
+    component: &str,
+    remarks: &str,
     attributes: &[Attribute],
     readings: &[ReadingValue],
 ) -> Judged {
-    let limited: &[(String, Vec<String>)] = match yardstick.limit {
-        Some(Limit::Grades(limited)) => limited,
-        _ => &[],
+    let limited: Vec<(String, Vec<String>)> = match yardstick.limit {
+        Some(Limit::Grades(limited)) => limited
+            .iter()
+            .filter(|(code, _)| attributes.iter().any(|attribute| attribute.code == *code))
+            .cloned()
+            .collect(),
+        _ => Vec::new(),
     };
+    let limited = limited.as_slice();
     let graded: Vec<Graded> = attributes.iter().flat_map(|one| of(one, limited, readings)).collect();
     let missing: Vec<&Attribute> = attributes.iter().filter(|one| !has_grade(one, readings)).collect();
     let mut flags = Vec::new();
@@ -47,13 +74,13 @@ pub(super) fn judge(
     }
     let verdict = verdict(yardstick, limited.is_empty(), is_missing_limited, &graded);
     Judged {
-        component: String::new(),
+        component: component.to_string(),
         value: None,
         qualifier: if graded.is_empty() { ResultQualifier::None } else { ResultQualifier::Words },
         shown: shown(verdict, &graded),
         unit: String::new(),
         verdict,
-        detail: detail(yardstick, &graded, &missing, readings),
+        detail: detail(yardstick, &graded, &missing, limited, remarks, readings),
         flags,
     }
 }
@@ -148,6 +175,8 @@ fn detail(
     yardstick: &Yardstick<'_>,
     graded: &[Graded],
     missing: &[&Attribute],
+    limited: &[(String, Vec<String>)],
+    remarks: &str,
     readings: &[ReadingValue],
 ) -> serde_json::Value {
     let grades: Vec<_> = graded
@@ -158,7 +187,7 @@ fn detail(
         missing.iter().map(|one| json!({ "of": one.title, "why": "not graded" })).collect();
     let remarks: Vec<&str> = readings
         .iter()
-        .filter(|reading| reading.field == "remarks")
+        .filter(|reading| reading.field == remarks)
         .map(|reading| reading.typed.as_str())
         .collect();
     json!({
@@ -167,6 +196,7 @@ fn detail(
         "values": grades,
         "not_read": not_read,
         "remarks": remarks,
-        "limit": yardstick.limit.map(|limit| limit_words(limit, Some(yardstick.method))),
+        "limit": (!limited.is_empty())
+            .then(|| limit_words(&Limit::Grades(limited.to_vec()), Some(yardstick.method))),
     })
 }

@@ -206,7 +206,7 @@ pub fn judge(
 ) -> Vec<Judged> {
     let yardstick = limit::Yardstick::new(method, limits, set, limits_do);
     match &method.settings {
-        Settings::Appearance { attributes } => vec![grade::judge(&yardstick, attributes, readings)],
+        Settings::Appearance { .. } => grade::judge(&yardstick, readings),
         Settings::Numeric { components, has_total, .. } if !components.is_empty() => {
             component::judge(&yardstick, components, *has_total, readings)
         }

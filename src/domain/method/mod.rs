@@ -166,6 +166,22 @@ pub struct MethodContent {
     pub settings: Settings,
 }
 
+impl MethodContent {
+    /// The stage at which a field is read: a part of an appearance may come after the label shake.
+    pub fn stage_of(&self, attribute: &Attribute) -> Stage {
+        if attribute.is_after_shake { Stage::AfterRedispersion } else { self.stage }
+    }
+
+    /// The stages at which the test is read, in order: two for an appearance as stored and after the label shake.
+    pub fn stages(&self) -> Vec<Stage> {
+        let Settings::Appearance { attributes } = &self.settings else { return vec![self.stage] };
+        let mut stages: Vec<Stage> = attributes.iter().map(|attribute| self.stage_of(attribute)).collect();
+        stages.sort_unstable();
+        stages.dedup();
+        if stages.is_empty() { vec![self.stage] } else { stages }
+    }
+}
+
 /// What is special to a kind of test.
 #[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "kebab-case")]
@@ -238,7 +254,15 @@ pub struct Attribute {
     /// Short name used as the reading's field: `clarity`, `caking`, `colour`.
     pub code: String,
     pub title: String,
+    /// Graded after the label shake; the others are graded at the method's own stage (decision A4).
+    #[serde(default, skip_serializing_if = "is_false")]
+    pub is_after_shake: bool,
     pub grades: Vec<Grade>,
+}
+
+/// Left out of the document, so that versions from before the field stay the same text.
+fn is_false(value: &bool) -> bool {
+    !*value
 }
 
 /// A grade with the sentence that anchors it.

@@ -64,6 +64,7 @@ fn appearance(start: MethodContent) -> MethodContent {
     let attribute = |code: &str, title: &str, grades: &[(&str, &str, &str)]| Attribute {
         code: code.to_string(),
         title: title.to_string(),
+        is_after_shake: code == "colour" || code == "caking",
         grades: grades
             .iter()
             .map(|(code, word, anchor)| Grade {

@@ -8,6 +8,7 @@ use crate::domain::method::{
     Attribute, Component, Formula, Input, Level, MethodContent, Reportable, Settings,
 };
 use crate::domain::rounding;
+use crate::domain::stage::part_words;
 use crate::domain::version::VersionState;
 use crate::store::version::Version;
 
@@ -32,7 +33,7 @@ pub fn show(page: Record, content: &MethodContent) -> Record {
     let page = page.more_facts("How it is done", done(content));
     let page = page.more_facts("What is reported", reported(content));
     match &content.settings {
-        Settings::Appearance { attributes } => page.table("Grades", grade_table(attributes)),
+        Settings::Appearance { attributes } => page.table("Grades", grade_table(content, attributes)),
         Settings::Numeric { inputs, formula, components, has_total } => {
             let page = match formula {
                 Some(formula) => page
@@ -196,18 +197,19 @@ fn join(minutes: &[u32]) -> String {
     minutes.iter().map(u32::to_string).collect::<Vec<_>>().join(", ")
 }
 
-fn grade_table(attributes: &[Attribute]) -> Table {
+fn grade_table(content: &MethodContent, attributes: &[Attribute]) -> Table {
     let rows = attributes.iter().flat_map(|attribute| {
         attribute.grades.iter().map(|grade| {
             vec![
                 Cell::noted(&attribute.title, &attribute.code),
+                Cell::text(part_words(content.stage_of(attribute))),
                 Cell::text(&grade.code),
                 Cell::text(&grade.word),
                 Cell::text(&grade.anchor),
             ]
         })
     });
-    Table::new("Attributes and their grades", &["Attribute", "Grade", "Word", "Anchor sentence"], "")
+    Table::new("Attributes and their grades", &["Attribute", "Part", "Grade", "Word", "Anchor sentence"], "")
         .rows(rows)
 }
 

@@ -7,6 +7,7 @@ use super::super::visit::Visit;
 use crate::domain::method::{Attribute, Component, Formula, Grade, Input, Settings};
 
 const GRADE_FIELDS: [&str; 5] = ["attribute", "title", "code", "word", "anchor"];
+const AFTER_SHAKE: &str = "Graded after the label shake";
 const INPUT_FIELDS: [&str; 5] = ["code", "label", "unit", "decimals", "example"];
 const COMPONENT_FIELDS: [&str; 3] = ["code", "title", "threshold"];
 
@@ -16,21 +17,24 @@ fn cell(prefix: &str, row: usize, field: &str, label: &str, value: &str) -> Fiel
 
 /// One row per grade; a row without an attribute belongs to the one above.
 pub fn grades(visit: &Visit, form: Form, attributes: &[Attribute]) -> Form {
-    let mut lines: Vec<[String; 5]> = Vec::new();
+    let mut lines: Vec<[String; 6]> = Vec::new();
     for attribute in attributes {
         for (index, grade) in attribute.grades.iter().enumerate() {
             let (code, title) =
                 if index == 0 { (attribute.code.as_str(), attribute.title.as_str()) } else { ("", "") };
-            lines.push([code, title, &grade.code, &grade.word, &grade.anchor].map(str::to_string));
+            let shaken = if index == 0 && attribute.is_after_shake { "yes" } else { "" };
+            lines.push([code, title, &grade.code, &grade.word, &grade.anchor, shaken].map(str::to_string));
         }
     }
     let count = rows::count(visit, "grade", lines.len(), 6);
     let row = |row: usize| {
         let line = lines.get(row - 1);
-        let value = |index: usize| line.map_or("", |line: &[String; 5]| line[index].as_str());
+        let value = |index: usize| line.map_or("", |line: &[String; 6]| line[index].as_str());
+        let shaken = Field { entry: Entry::Tick, ..cell("grade", row, "shaken", AFTER_SHAKE, value(5)) };
         vec![
             cell("grade", row, "attribute", "Attribute code", value(0)).width(12),
             cell("grade", row, "title", "Attribute", value(1)).width(20),
+            shaken,
             cell("grade", row, "code", "Grade code", value(2)).width(8),
             cell("grade", row, "word", "Grade word", value(3)).width(20),
             cell("grade", row, "anchor", "Anchor sentence", value(4)),
@@ -38,11 +42,13 @@ pub fn grades(visit: &Visit, form: Form, attributes: &[Attribute]) -> Form {
     };
     form.heading(
         "Attributes and grades",
-        "One row per grade, in order. Where the attribute is left empty the grade belongs to the row above.",
+        "One row per grade, in order. Where the attribute is left empty the grade belongs to the row above. An \
+         attribute ticked as graded after the label shake belongs to the second part of the test, which opens once \
+         the container is redispersed and is judged by itself.",
     )
     .grid(
         "Grades",
-        &["Attribute code", "Attribute", "Grade", "Word", "Sentence that anchors it"],
+        &["Attribute code", "Attribute", "After the shake", "Grade", "Word", "Sentence that anchors it"],
         (1..=count).map(row).collect(),
     )
 }
@@ -59,6 +65,7 @@ pub fn read_grades(typed: &mut Typed<'_>) -> Option<Settings> {
             attributes.push(Attribute {
                 code: code.unwrap_or_default(),
                 title: title.unwrap_or_default(),
+                is_after_shake: typed.tick(&at("shaken")),
                 grades: Vec::new(),
             });
         }

@@ -5,10 +5,12 @@ use askama::Template;
 use super::load::Loaded;
 use crate::domain::judgement::limit::limit_words;
 use crate::domain::judgement::spread::Spread;
-use crate::domain::method::{Level, Settings};
+use crate::domain::method::{Attribute, Level, Settings, Stage};
 use crate::domain::reading::{Reading, in_slot, interval_words, shown};
 use crate::domain::rounding::to_decimals;
 use crate::domain::slot::{Accepts, Slot, SlotKey};
+use crate::domain::stage::part_words;
+use crate::web::failure::capital;
 use crate::web::field::Choice;
 use crate::web::pairs::Pairs;
 
@@ -148,8 +150,21 @@ pub struct Grid {
     pub caption: String,
     pub heads: Vec<String>,
     pub rows: Vec<GridRow>,
-    /// Grades with anchors are large: one under the other, by container.
-    pub is_list: bool,
+    /// Grades with anchors are large: one under the other, by part and container.
+    pub parts: Vec<GridPart>,
+}
+
+/// A part of an appearance, with its containers.
+pub struct GridPart {
+    pub title: String,
+    pub columns: Vec<GridColumn>,
+}
+
+pub struct GridColumn {
+    pub head: String,
+    /// Why nothing of it can be read now; said once in place of each box.
+    pub closed: Option<String>,
+    pub rows: Vec<(String, Cell)>,
 }
 
 pub struct GridRow {
@@ -168,6 +183,12 @@ pub enum Cell {
 
 /// The grid of a test whose columns are containers or replicates.
 pub fn grid(loaded: &Loaded, slots: &[Slot], said: &Said) -> Grid {
+    if let Settings::Appearance { attributes } = &loaded.test.content.settings {
+        let parts = loaded.test.content.stages().into_iter();
+        let parts = parts.map(|stage| grid_part(loaded, slots, stage, attributes, said)).collect();
+        let caption = loaded.test.title.clone();
+        return Grid { caption, heads: Vec::new(), rows: Vec::new(), parts };
+    }
     let mut heads: Vec<String> = Vec::new();
     let mut titles: Vec<String> = Vec::new();
     for slot in slots {
@@ -180,11 +201,36 @@ pub fn grid(loaded: &Loaded, slots: &[Slot], said: &Said) -> Grid {
     }
     let has_mean = loaded.test.content.level != Level::Container && heads.len() > 1;
     let rows = titles.iter().map(|title| grid_row(loaded, slots, title, &heads, has_mean, said)).collect();
-    let is_list = matches!(loaded.test.content.settings, Settings::Appearance { .. });
     if has_mean {
         heads.push("Mean".to_string());
     }
-    Grid { caption: loaded.test.title.clone(), heads, rows, is_list }
+    Grid { caption: loaded.test.title.clone(), heads, rows, parts: Vec::new() }
+}
+
+fn grid_part(
+    loaded: &Loaded,
+    slots: &[Slot],
+    stage: Stage,
+    attributes: &[Attribute],
+    said: &Said,
+) -> GridPart {
+    let of_part: Vec<&Slot> = slots.iter().filter(|slot| slot.stage == stage).collect();
+    let mut heads: Vec<&str> = of_part.iter().map(|slot| slot.column.as_str()).collect();
+    heads.dedup();
+    // The heading says the part, so the row says the attribute alone.
+    let title = |slot: &Slot| {
+        let known = attributes.iter().find(|attribute| attribute.code == slot.key.field);
+        known.map_or("Remarks".to_string(), |attribute| attribute.title.clone())
+    };
+    let column = |head: &str| {
+        let here: Vec<&Slot> = of_part.iter().filter(|slot| slot.column == head).copied().collect();
+        let closed: Vec<Option<String>> = here.iter().map(|slot| loaded.closed(slot)).collect();
+        let closed =
+            if closed.windows(2).all(|two| two[0] == two[1]) { closed.first().cloned() } else { None };
+        let rows = here.iter().map(|slot| (title(slot), cell(loaded, slot, said))).collect();
+        GridColumn { head: head.to_string(), closed: closed.flatten(), rows }
+    };
+    GridPart { title: capital(part_words(stage)), columns: heads.into_iter().map(column).collect() }
 }
 
 fn grid_row(

@@ -174,8 +174,7 @@ impl Loaded {
             return Some("not recorded".to_string());
         }
         let tests = crate::acts::stage::tests_of(&self.sample);
-        let stage = self.test.content.stage;
-        may_read(&tests, &self.sample.losses, stage, slot.key.container).err().map(|why| why.to_string())
+        may_read(&tests, &self.sample.losses, slot.stage, slot.key.container).err().map(|why| why.to_string())
     }
 
     /// The newest row the page shows.

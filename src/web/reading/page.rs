@@ -72,7 +72,7 @@ struct TestPage<'a> {
     shell: Shell,
     loaded: &'a Loaded,
     place: String,
-    part: &'static str,
+    part: String,
     status: StatusMark,
     submission: String,
     session: String,
@@ -196,10 +196,13 @@ fn wrong_label(loaded: &Loaded) -> String {
     )
 }
 
-fn part(loaded: &Loaded) -> &'static str {
-    match loaded.test.content.settings {
-        Settings::Appearance { .. } => part_words(loaded.test.content.stage),
-        _ => loaded.test.content.stage.words(),
+fn part(loaded: &Loaded) -> String {
+    let content = &loaded.test.content;
+    match content.settings {
+        Settings::Appearance { .. } => {
+            content.stages().into_iter().map(part_words).collect::<Vec<_>>().join(", then ")
+        }
+        _ => content.stage.words().to_string(),
     }
 }
 

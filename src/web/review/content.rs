@@ -174,12 +174,21 @@ fn result_row(result: &ResultLine, limit: &dyn Fn(&str, &str) -> String) -> Resu
     ResultRow {
         component: result.component.clone(),
         shown: show::with_unit(&result.shown, if result.value.is_some() { &result.unit } else { "" }),
-        limit: limit(&result.test, &result.component),
+        limit: graded_limit(result).unwrap_or_else(|| limit(&result.test, &result.component)),
         arrow: arrow(result, &limit(&result.test, &result.component)),
         verdict: result.verdict.clone(),
         is_out: result.verdict == "out of specification" || result.verdict == "outside in-use limit",
         calculation: calculation(&result.detail),
     }
+}
+
+/// The grades that conform in words and of this part alone, as the judgement wrote them down.
+fn graded_limit(result: &ResultLine) -> Option<String> {
+    if result.qualifier != "words" {
+        return None;
+    }
+    let detail: serde_json::Value = serde_json::from_str(&result.detail).ok()?;
+    Some(detail.get("limit")?.as_str()?.to_string())
 }
 
 /// Down where the value lies below the lower end that the limit's words begin with.

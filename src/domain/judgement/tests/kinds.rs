@@ -9,6 +9,7 @@ fn caking() -> Attribute {
         anchor: format!("anchor of {word}"),
     };
     Attribute {
+        is_after_shake: false,
         code: "caking".to_string(),
         title: "Caking".to_string(),
         grades: vec![grade("0", "none"), grade("1", "slight"), grade("3", "hard cake")],
