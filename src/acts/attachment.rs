@@ -33,27 +33,36 @@ pub struct NewFile<'a> {
 ///
 /// Refuses in the order of [`recognise`], then too many pixels, a damaged photo, too many files.
 pub fn attach(db: &Db, folder: &Path, actor: &Actor, new: &NewFile<'_>) -> Result<i64, Failure> {
-    let media_type = recognise(new.file_name, new.bytes)?;
-    check_pixels(media_type, new.bytes)?;
     db.change(actor, Act::AttachFile, &Reason::none(), |change| {
-        if store::attachment::of_subject(change, new.subject)?.len() >= MOST_FILES {
-            return Err(AttachmentRefusal::TooManyFiles.into());
-        }
-        let sha256 = sha256_hex(new.bytes);
-        keep(folder, &sha256, new.bytes)?;
-        let row = NewAttachment {
-            subject: new.subject,
-            file_name: plain_name(new.file_name),
-            media_type: media_type.code(),
-            size_bytes: new.bytes.len() as i64,
-            sha256,
-            about: new.about.clone(),
-        };
-        let id = store::attachment::insert(change, &row)?;
+        let (id, row) = attach_inside(change, folder, new)?;
         concerns(change, new.subject)?;
         change.tell(format!("{}: {}, sha256 {}", row.file_name, row.about, &row.sha256[..12]));
         Ok(id)
     })
+}
+
+/// The same inside another act; the caller says which records it concerns.
+pub(in crate::acts) fn attach_inside(
+    change: &Change<'_>,
+    folder: &Path,
+    new: &NewFile<'_>,
+) -> Result<(i64, NewAttachment), Failure> {
+    let media_type = recognise(new.file_name, new.bytes)?;
+    check_pixels(media_type, new.bytes)?;
+    if store::attachment::of_subject(change, new.subject)?.len() >= MOST_FILES {
+        return Err(AttachmentRefusal::TooManyFiles.into());
+    }
+    let sha256 = sha256_hex(new.bytes);
+    keep(folder, &sha256, new.bytes)?;
+    let row = NewAttachment {
+        subject: new.subject,
+        file_name: plain_name(new.file_name),
+        media_type: media_type.code(),
+        size_bytes: new.bytes.len() as i64,
+        sha256,
+        about: new.about.clone(),
+    };
+    Ok((store::attachment::insert(change, &row)?, row))
 }
 
 /// The act stands in the history of the record, and of a sample's lot.

@@ -1,14 +1,18 @@
 //! Methods: adding one with its first version, writing, signing and approving versions.
 
+use std::path::Path;
+
+use super::attachment::{NewFile, attach_inside};
 use super::version::{self, Written};
 use crate::domain::act::Act;
 use crate::domain::actor::Actor;
+use crate::domain::attachment::{AttachmentRefusal, MediaType};
 use crate::domain::failure::Failure;
 use crate::domain::method::rule::{MethodRefusal, may_be_signed, may_be_written};
 use crate::domain::method::{MethodContent, TestKind};
 use crate::domain::reason::Reason;
-use crate::domain::subject::Kind;
-use crate::domain::version::Versioned;
+use crate::domain::subject::{Kind, Subject};
+use crate::domain::version::{VersionRefusal, VersionState, Versioned};
 use crate::store;
 use crate::store::door::{Change, Db};
 use crate::store::version::Version;
@@ -70,6 +74,45 @@ pub fn rewrite(
     may_be_written(kind, content)?;
     version::rewrite(db, actor, Versioned::Method, id, &written(reason, content)?, seen)
         .map_err(version::with_differences)
+}
+
+/// Which grade of which draft gets a reference photograph.
+#[derive(Clone, Debug)]
+pub struct GradePhoto<'a> {
+    pub version: i64,
+    pub attribute: String,
+    pub grade: String,
+    pub file_name: &'a str,
+    pub bytes: &'a [u8],
+}
+
+/// Puts a reference photograph beside the anchor sentence of a grade (decision A15). The picture is kept with the
+/// method; its digest becomes part of the draft, so the signatures cover it. Another one replaces it.
+///
+/// Refuses in this order: the version is no draft, no such grade, then as [`super::attachment::attach`], no photo.
+pub fn put_photo(db: &Db, folder: &Path, actor: &Actor, new: &GradePhoto<'_>) -> Result<(), Failure> {
+    let of = Versioned::Method;
+    db.change(actor, of.draft_act(), &Reason::none(), |change| {
+        let version = store::version::get(change, of, new.version)?;
+        if version.state != VersionState::Draft {
+            return Err(VersionRefusal::VersionFrozen.into());
+        }
+        let mut content: MethodContent = version.read()?;
+        let grade = content.grade_mut(&new.attribute, &new.grade).ok_or(MethodRefusal::GradeUnknown)?;
+        let about = format!("{}: {}", new.attribute, grade.word);
+        let subject = Subject::new(Kind::Method, version.parent);
+        let file = NewFile { subject, file_name: new.file_name, bytes: new.bytes, about };
+        let (_, row) = attach_inside(change, folder, &file)?;
+        if !MediaType::from_code(row.media_type).is_some_and(MediaType::is_photo) {
+            return Err(AttachmentRefusal::NotAPhoto.into());
+        }
+        grade.photo = Some(row.sha256.clone());
+        store::version::update(change, of, new.version, &version.reason, &serde_json::to_string(&content)?)?;
+        change.concerns(of.kind(), new.version)?;
+        change.concerns(Kind::Method, version.parent)?;
+        change.tell(format!("reference photograph of {}, sha256 {}", row.about, &row.sha256[..12]));
+        Ok(())
+    })
 }
 
 fn kind_of(db: &Db, method: i64) -> Result<TestKind, Failure> {

@@ -60,14 +60,14 @@ pub enum AttachmentRefusal {
     PhotoDamaged,
     #[error("The record has {MOST_FILES} files already. No more fit; put the rest in one PDF.")]
     TooManyFiles,
-    #[error("Only photos can be measured.")]
+    #[error("This needs a photo, PNG or JPEG. Choose a photo.")]
     NotAPhoto,
 }
 
 impl NamedReason for AttachmentRefusal {
     fn field(&self) -> Option<String> {
         match self {
-            AttachmentRefusal::TooManyFiles | AttachmentRefusal::NotAPhoto => None,
+            AttachmentRefusal::TooManyFiles => None,
             _ => Some("file".to_string()),
         }
     }

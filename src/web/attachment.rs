@@ -173,8 +173,9 @@ fn attachment_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) ->
     })?;
     let is_photo = MediaType::from_code(&found.media_type).is_some_and(MediaType::is_photo);
     let mut shell = Shell::of(visit, &found.file_name);
-    if let Some((_, path)) = OF.iter().find(|(kind, _)| kind.code() == found.kind) {
-        shell = shell.crumb(format!("{path}/{}", found.subject), found.kind.clone());
+    let mut pages = OF.iter().chain(&[(Kind::Method, "/methods")]);
+    if let Some((kind, path)) = pages.find(|(kind, _)| kind.code() == found.kind) {
+        shell = shell.crumb(format!("{path}/{}", found.subject), kind.words());
     }
     let measures = match failed {
         Some(failed) => {

@@ -32,6 +32,8 @@ pub struct Choice {
     pub label: String,
     /// The sentence that anchors a grade.
     pub anchor: String,
+    /// The file that shows the grade, where there is a reference photograph.
+    pub photo: Option<i64>,
 }
 
 /// A bound field.
@@ -87,7 +89,12 @@ impl Field {
     ) -> Field {
         let choices = choices
             .into_iter()
-            .map(|(value, label)| Choice { value: value.into(), label: label.into(), anchor: String::new() })
+            .map(|(value, label)| Choice {
+                value: value.into(),
+                label: label.into(),
+                anchor: String::new(),
+                photo: None,
+            })
             .collect();
         Field { choices, ..self }
     }

@@ -89,6 +89,7 @@ fn form(visit: &Visit, theme: &str) -> Result<Form, Failure> {
         value: value.to_string(),
         label: label.to_string(),
         anchor: anchor.to_string(),
+        photo: None,
     };
     let ingredient = |row: usize, name: &str, quantity: &str| {
         vec![

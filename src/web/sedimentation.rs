@@ -147,7 +147,7 @@ fn grid(visit: &Visit, loaded: &Loaded, total: &Slot, minutes: &[u32], zero: Mom
         title: "Total volume, mL".to_string(),
         limit: String::new(),
         cells: vec![
-            Cell::Box(Box::new(ReadingBox::of(total, volume, said))),
+            Cell::Box(Box::new(ReadingBox::of(total, volume, said, &[]))),
             Cell::Words("shaken".to_string()),
             Cell::Words("F = sediment ÷ total".to_string()),
             Cell::Words(zero.shown()),
@@ -177,7 +177,7 @@ fn planned_cell(
     }
     match loaded.closed(slot) {
         Some(why) => Cell::Words(why),
-        None => Cell::Box(Box::new(ReadingBox::of(slot, there, said))),
+        None => Cell::Box(Box::new(ReadingBox::of(slot, there, said, &[]))),
     }
 }
 

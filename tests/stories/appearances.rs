@@ -1,8 +1,12 @@
 //! Appearance is one test with two parts: as stored, and after the label shake; each grade may show a photograph.
 
+use supernate::acts;
+use supernate::acts::method::NewMethod;
 use supernate::domain::method::{MethodContent, TestKind, preset};
+use supernate::domain::version::Versioned;
 use supernate::store;
 
+use crate::attachments::{photo, uploads_with};
 use crate::benches::{at_bench, page, records};
 use crate::support::{Lab, world};
 
@@ -93,4 +97,55 @@ fn a_method_of_one_part_keeps_its_document() {
     assert!(!written.contains("is_after_shake") && !written.contains("photo"), "{written}");
     assert_eq!(serde_json::from_str::<MethodContent>(&written).unwrap(), content);
     assert_eq!(content.stages().len(), 1);
+}
+
+/// Decision A15: the picture stands beside the sentence that anchors the grade, and the signature covers it.
+#[test]
+fn a_grade_shows_its_reference_photograph_at_the_bench() {
+    let lab = Lab::new();
+    let manager = lab.manager();
+    let new = NewMethod {
+        code: "M-APPEARANCE".to_string(),
+        name: "appearance by grades".to_string(),
+        content: preset::of(TestKind::Appearance),
+    };
+    let version = acts::method::add(&lab.app.db, &manager.actor(), &new).unwrap();
+    let path = format!("/method-versions/{version}");
+    let photos = format!("{path}/photos");
+    manager.sees(&path, "Add a reference photograph");
+    let none = manager.submits(&photos, &photos, &[("grade", "8")]);
+    assert_eq!(none.status, 422, "{}", none.text());
+    let pdf = uploads_with(&manager, &photos, "a.pdf", b"%PDF-1.7 ... %%EOF", ("grade", "8"));
+    assert_eq!(pdf.status, 409, "{}", pdf.text());
+    assert!(pdf.text().contains("Choose a photo"), "{}", pdf.text());
+    let seen = uploads_with(&manager, &photos, "cake.png", &photo(40, 60), ("grade", "8"));
+    assert_eq!((seen.status, seen.location.as_deref()), (303, Some(path.as_str())), "{}", seen.text());
+    let replaced = uploads_with(&manager, &photos, "cake2.png", &photo(60, 60), ("grade", "8"));
+    assert_eq!(replaced.status, 303, "{}", replaced.text());
+    let shown = manager.sees(&path, "reference photograph of caking: hard cake");
+    assert_eq!(shown.html().matches(">Photograph<").count(), 1, "{}", shown.text());
+
+    // A form of words keeps the picture.
+    let edit = format!("{path}/edit");
+    manager.does(&edit, &edit, &[("reason", "clearer words for the film")]);
+    assert_eq!(manager.get(&path).html().matches(">Photograph<").count(), 1);
+    world::approve(&lab, Versioned::Method, version, "maren.oddy", "otis.vane");
+    assert_eq!(manager.get(&photos).status, 409, "what is signed keeps its pictures");
+    assert_eq!(lab.analyst().get(&photos).status, 403);
+
+    let (_, tests, label) = at_bench(&lab, &KINDS);
+    turned_over(&lab, &tests, &label);
+    let bench = lab.analyst().sees(&page(tests[0], &label), "The bed stays on the base whatever is done.");
+    let html = bench.html();
+    assert!(html.contains("src=\"/attachments/2/preview\""), "{html}");
+    assert!(html.contains("Reference photograph of hard cake"));
+    assert!(!bench.text().contains("Caking: none"), "the limit stays hidden: {}", bench.text());
+    assert_eq!(lab.analyst().get("/attachments/2/preview").status, 200);
+    lab.analyst().sees("/attachments/2", "method");
+}
+
+/// As stored is recorded and every container is redispersed.
+fn turned_over(lab: &Lab, tests: &[i64], label: &str) {
+    assert_eq!(records(&lab.analyst(), &page(tests[0], label), &AS_STORED).status, 303);
+    turns_all(lab, tests[1], label);
 }

@@ -16,13 +16,17 @@ pub fn photo(width: u32, height: u32) -> Vec<u8> {
 }
 
 pub fn uploads(person: &Person<'_>, page: &str, name: &str, bytes: &[u8]) -> Seen {
+    uploads_with(person, page, name, bytes, ("about", "bottle 07"))
+}
+
+/// A file and one more field of the form.
+pub fn uploads_with(person: &Person<'_>, page: &str, name: &str, bytes: &[u8], with: (&str, &str)) -> Seen {
     let mut body = Vec::new();
-    for (field, value) in
-        person.get(page).form(page).into_iter().chain([("about".into(), "bottle 07".into())])
-    {
-        if field == "about" && value.is_empty() {
-            continue;
-        }
+    let (field, value) = with;
+    let mut pairs = person.get(page).form(page);
+    pairs.retain(|(known, _)| known != field);
+    pairs.push((field.to_string(), value.to_string()));
+    for (field, value) in pairs {
         let part =
             format!("--{BOUNDARY}\r\nContent-Disposition: form-data; name=\"{field}\"\r\n\r\n{value}\r\n");
         body.extend_from_slice(part.as_bytes());

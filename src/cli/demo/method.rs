@@ -57,6 +57,7 @@ fn grades(words: &[(&str, &str)]) -> Vec<Grade> {
             code: at.to_string(),
             word: word.to_string(),
             anchor: anchor.to_string(),
+            photo: None,
         })
         .collect()
 }

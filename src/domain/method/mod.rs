@@ -182,6 +182,29 @@ impl MethodContent {
     }
 }
 
+impl MethodContent {
+    /// A grade by the codes of its attribute and its own.
+    pub fn grade_mut(&mut self, attribute: &str, grade: &str) -> Option<&mut Grade> {
+        let Settings::Appearance { attributes } = &mut self.settings else { return None };
+        let found = attributes.iter_mut().find(|one| one.code == attribute)?;
+        found.grades.iter_mut().find(|one| one.code == grade)
+    }
+
+    /// This content with the reference photographs of another one, where both have the grade: a form of words has
+    /// no place for them.
+    pub fn with_photos_of(mut self, before: &MethodContent) -> MethodContent {
+        let Settings::Appearance { attributes } = &before.settings else { return self };
+        for attribute in attributes {
+            for grade in &attribute.grades {
+                if let Some(same) = self.grade_mut(&attribute.code, &grade.code) {
+                    same.photo.clone_from(&grade.photo);
+                }
+            }
+        }
+        self
+    }
+}
+
 /// What is special to a kind of test.
 #[derive(Clone, Debug, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "kebab-case")]
@@ -271,6 +294,9 @@ pub struct Grade {
     pub code: String,
     pub word: String,
     pub anchor: String,
+    /// SHA-256 of its reference photograph, so that the version's signature covers the picture (decision A15).
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub photo: Option<String>,
 }
 
 /// A typed input of a numeric test, such as the sample weight.

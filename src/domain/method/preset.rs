@@ -71,6 +71,7 @@ fn appearance(start: MethodContent) -> MethodContent {
                 code: code.to_string(),
                 word: word.to_string(),
                 anchor: anchor.to_string(),
+                photo: None,
             })
             .collect(),
     };

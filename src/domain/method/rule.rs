@@ -19,6 +19,8 @@ pub enum MethodRefusal {
     WindowEmpty(&'static str),
     #[error("An appearance grades at least one attribute. Add one with its grades.")]
     AttributesMissing,
+    #[error("This version has no such grade. Choose one of the listed grades.")]
+    GradeUnknown,
     #[error("“{0}” has fewer than two grades. Add the grades it is chosen from.")]
     GradesMissing(String),
     #[error("“{0}” stands twice. Each code is used once.")]

@@ -155,6 +155,7 @@ fn cylinder_fields(planned_minutes: &[u32], vessel_ml: Decimal, decimals: u32) -
             code: code.to_string(),
             word: word.to_string(),
             anchor: anchor.to_string(),
+            photo: None,
         })
         .collect();
     let millilitres = |code: &str, title: &str| {

@@ -5,11 +5,12 @@ use super::super::show;
 use super::super::table::{Cell, Table};
 use crate::domain::formula::example_reproduces;
 use crate::domain::method::{
-    Attribute, Component, Formula, Input, Level, MethodContent, Reportable, Settings,
+    Attribute, Component, Formula, Grade, Input, Level, MethodContent, Reportable, Settings,
 };
 use crate::domain::rounding;
 use crate::domain::stage::part_words;
 use crate::domain::version::VersionState;
+use crate::store::attachment::Attachment;
 use crate::store::version::Version;
 
 /// The state of a version as a sentence without its full stop.
@@ -29,11 +30,12 @@ pub fn sign_note(version: &Version) -> &'static str {
     }
 }
 
-pub fn show(page: Record, content: &MethodContent) -> Record {
+/// `photos`: the files of the method, among them the reference photographs of its grades.
+pub fn show(page: Record, content: &MethodContent, photos: &[Attachment]) -> Record {
     let page = page.more_facts("How it is done", done(content));
     let page = page.more_facts("What is reported", reported(content));
     match &content.settings {
-        Settings::Appearance { attributes } => page.table("Grades", grade_table(content, attributes)),
+        Settings::Appearance { attributes } => page.table("Grades", grade_table(content, attributes, photos)),
         Settings::Numeric { inputs, formula, components, has_total } => {
             let page = match formula {
                 Some(formula) => page
@@ -197,7 +199,19 @@ fn join(minutes: &[u32]) -> String {
     minutes.iter().map(u32::to_string).collect::<Vec<_>>().join(", ")
 }
 
-fn grade_table(content: &MethodContent, attributes: &[Attribute]) -> Table {
+fn photo_cell(grade: &Grade, photos: &[Attachment]) -> Cell {
+    let found = photos.iter().find(|file| Some(&file.sha256) == grade.photo.as_ref());
+    match found {
+        Some(file) => Cell::Link {
+            path: format!("/attachments/{}", file.id),
+            words: "Photograph".to_string(),
+            note: format!("sha256 {}", &file.sha256[..12]),
+        },
+        None => Cell::Missing("none".to_string()),
+    }
+}
+
+fn grade_table(content: &MethodContent, attributes: &[Attribute], photos: &[Attachment]) -> Table {
     let rows = attributes.iter().flat_map(|attribute| {
         attribute.grades.iter().map(|grade| {
             vec![
@@ -206,11 +220,16 @@ fn grade_table(content: &MethodContent, attributes: &[Attribute]) -> Table {
                 Cell::text(&grade.code),
                 Cell::text(&grade.word),
                 Cell::text(&grade.anchor),
+                photo_cell(grade, photos),
             ]
         })
     });
-    Table::new("Attributes and their grades", &["Attribute", "Part", "Grade", "Word", "Anchor sentence"], "")
-        .rows(rows)
+    Table::new(
+        "Attributes and their grades",
+        &["Attribute", "Part", "Grade", "Word", "Anchor sentence", "Reference"],
+        "",
+    )
+    .rows(rows)
 }
 
 fn input_table(inputs: &[Input], formula: &Formula) -> Table {

@@ -73,7 +73,7 @@ pub fn read_grades(typed: &mut Typed<'_>) -> Option<Settings> {
         let anchor = typed.text(&at("anchor"), 200);
         match (code, word, anchor, attributes.last_mut()) {
             (Some(code), Some(word), Some(anchor), Some(attribute)) => {
-                attribute.grades.push(Grade { code, word, anchor });
+                attribute.grades.push(Grade { code, word, anchor, photo: None });
             }
             _ => is_whole = false,
         }

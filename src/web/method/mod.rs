@@ -4,6 +4,7 @@ mod compare;
 pub(super) mod facts;
 mod form;
 mod grid;
+mod photo;
 mod settings;
 
 use super::form::{self as forms, Form};
@@ -38,6 +39,8 @@ pub const ROUTES: &[Route] = &[
     get("/method-versions/{id}", version),
     get("/method-versions/{id}/edit", edit_page),
     post("/method-versions/{id}/edit", &[Act::DraftMethodVersion], edit),
+    get("/method-versions/{id}/photos", photo::page),
+    post("/method-versions/{id}/photos", &[Act::DraftMethodVersion], photo::put),
     post("/method-versions/{id}/sign", &[Act::DraftMethodVersion, Act::ApproveMethodVersion], sign),
 ];
 
@@ -190,7 +193,7 @@ pub(super) fn version_table(visit: &Visit, found: &[Version], path: &str) -> Tab
     )
 }
 
-fn draft_form(visit: &Visit, id: i64) -> Result<(Method, Form), Failure> {
+fn draft_form(visit: &Visit, id: i64) -> Result<(Method, MethodContent, Form), Failure> {
     visit.needs_role(&[crate::domain::role::Role::LabManager], Act::DraftMethodVersion)?;
     let (method, found) = visit.read(|reader| {
         Ok((store::method::get(reader, id)?, store::version::of_parent(reader, Versioned::Method, id)?))
@@ -200,19 +203,20 @@ fn draft_form(visit: &Visit, id: i64) -> Result<(Method, Form), Failure> {
         None => preset::of(method.kind),
     };
     let form = Form::new(visit, &format!("/methods/{id}/draft"), "Write the draft")?;
-    Ok((method, form::content(visit, form::reason(form, ""), &start)))
+    let form = form::content(visit, form::reason(form, ""), &start);
+    Ok((method, start, form))
 }
 
 const DRAFT_LEAD: &str = "Filled from the newest version. Results done by earlier versions keep their rules.";
 
 fn draft_page(visit: &Visit) -> Outcome {
-    let (method, form) = draft_form(visit, visit.id("id")?)?;
+    let (method, _, form) = draft_form(visit, visit.id("id")?)?;
     forms::show(visit, &format!("{}: new version", method.code), DRAFT_LEAD, form)
 }
 
 fn draft(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
-    let (method, form) = draft_form(visit, id)?;
+    let (method, start, form) = draft_form(visit, id)?;
     forms::submit_page(
         visit,
         &format!("{}: new version", method.code),
@@ -220,8 +224,8 @@ fn draft(visit: &Visit) -> Outcome {
         form,
         |typed| {
             let reason = typed.text("reason", 400);
-            Some((form::read(typed, method.kind), reason))
-                .and_then(|(content, reason)| Some((reason?, content?)))
+            let content = form::read(typed, method.kind);
+            Some((reason?, content?.with_photos_of(&start)))
         },
         |actor, (reason, content)| acts::method::draft(visit.db(), actor, id, &reason, &content),
         |id| format!("/method-versions/{id}"),
@@ -267,7 +271,7 @@ fn edit(visit: &Visit) -> Outcome {
         |typed| {
             let reason = typed.text("reason", 400);
             let content = form::read(typed, method.kind);
-            Some((reason?, content?, typed.raw("seen")))
+            Some((reason?, content?.with_photos_of(&method.content), typed.raw("seen")))
         },
         |actor, (reason, content, seen)| {
             acts::method::rewrite(visit.db(), actor, id, &reason, &content, &seen)
@@ -282,9 +286,10 @@ fn version(visit: &Visit) -> Outcome {
 
 fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
     let (method, version) = loaded(visit, id)?;
-    let (lines, all) = visit.read(|reader| {
+    let (lines, all, photos) = visit.read(|reader| {
         let lines = store::trail::of_subject(reader, Subject::new(Kind::MethodVersion, id))?;
-        Ok((lines, store::version::of_parent(reader, Versioned::Method, version.parent)?))
+        let photos = store::attachment::of_subject(reader, Subject::new(Kind::Method, version.parent))?;
+        Ok((lines, store::version::of_parent(reader, Versioned::Method, version.parent)?, photos))
     })?;
     let before = all.iter().find(|other| other.number < version.number);
     let title = format!("{}, version {}", method.code, method.number);
@@ -310,8 +315,13 @@ fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Ou
             before.map_or(String::new(), |before| compare::path(method.method, before, &version)),
             "Compare with the version before",
         )
-        .quiet_link_if(may_edit, format!("{path}/edit"), "Rewrite the draft");
-    facts::show(page, &method.content)
+        .quiet_link_if(may_edit, format!("{path}/edit"), "Rewrite the draft")
+        .quiet_link_if(
+            may_edit && method.kind == TestKind::Appearance,
+            format!("{path}/photos"),
+            "Add a reference photograph",
+        );
+    facts::show(page, &method.content, &photos)
         .signatures(versions::signatures(visit, Versioned::Method, &version)?)
         .form("Sign", facts::sign_note(&version), next)
         .trail(Trail::of(&lines, visit.at.zone))

@@ -62,7 +62,7 @@ pub fn recorded_text(reading: &Reading) -> String {
 }
 
 impl ReadingBox {
-    pub fn of(slot: &Slot, reading: Option<&Reading>, said: &Said) -> ReadingBox {
+    pub fn of(slot: &Slot, reading: Option<&Reading>, said: &Said, photos: &[(String, i64)]) -> ReadingBox {
         let name = slot.key.name();
         let recorded = reading.map(recorded_text).unwrap_or_default();
         let typed = said.form.get(&name).map(str::to_string);
@@ -87,7 +87,7 @@ impl ReadingBox {
             value: typed.unwrap_or_else(|| recorded.clone()),
             low,
             high,
-            choices: choices(&slot.accepts),
+            choices: choices(&slot.accepts, photos),
             note: reading.and_then(interval).unwrap_or_else(|| note(slot)),
             is_refused: refused.is_some(),
             hint: refused.or(question).unwrap_or_default(),
@@ -120,12 +120,17 @@ fn mode(accepts: &Accepts) -> &'static str {
     }
 }
 
-fn choices(accepts: &Accepts) -> Vec<Choice> {
+fn choices(accepts: &Accepts, photos: &[(String, i64)]) -> Vec<Choice> {
     let Accepts::Grade(grades) = accepts else { return Vec::new() };
     let choice = |grade: &crate::domain::method::Grade| Choice {
         value: grade.code.clone(),
         label: grade.word.clone(),
         anchor: grade.anchor.clone(),
+        photo: grade
+            .photo
+            .as_ref()
+            .and_then(|sha256| photos.iter().find(|(known, _)| known == sha256))
+            .map(|(_, id)| *id),
     };
     grades.iter().map(choice).collect()
 }
@@ -269,7 +274,7 @@ fn cell(loaded: &Loaded, slot: &Slot, said: &Said) -> Cell {
         let shown = there.map(|one| slot.shown(&one.qualifier, &one.typed));
         return Cell::Words(shown.unwrap_or(why));
     }
-    Cell::Box(Box::new(ReadingBox::of(slot, in_slot(&loaded.readings, &slot.key), said)))
+    Cell::Box(Box::new(ReadingBox::of(slot, in_slot(&loaded.readings, &slot.key), said, &loaded.photos)))
 }
 
 /// The mean of a row's numbers to one place more than is read.

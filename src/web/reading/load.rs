@@ -4,6 +4,7 @@ use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::instrument::{self, InstrumentFacts};
 use crate::domain::label::labelled;
+use crate::domain::method::Settings;
 use crate::domain::moment::Moment;
 use crate::domain::protocol::LimitsDo;
 use crate::domain::qualification;
@@ -12,8 +13,10 @@ use crate::domain::result::reader_key;
 use crate::domain::slot::{Slot, SlotKey};
 use crate::domain::specification::{Limit, LimitSet};
 use crate::domain::stage::may_read;
+use crate::domain::subject::{Kind, Subject};
 use crate::domain::typed;
 use crate::store;
+use crate::store::Reader;
 use crate::store::bench::{BenchSample, BenchTest};
 use crate::store::flag::Flag;
 use crate::store::investigation::Investigation;
@@ -31,6 +34,8 @@ pub struct Loaded {
     pub flags: Vec<Flag>,
     pub investigations: Vec<Investigation>,
     pub instruments: Vec<InstrumentFacts>,
+    /// Reference photographs of the method's grades: digest and file.
+    pub photos: Vec<(String, i64)>,
     /// The label from the address or the form, and whether it is of this sample.
     pub label: String,
     pub is_label_right: bool,
@@ -86,6 +91,7 @@ pub fn load(visit: &Visit, id: i64) -> Result<Loaded, Failure> {
         let label = asked("label");
         let slots = sample.slots(&test).into_iter().map(|slot| own_slot(&test, slot, &readings, account));
         Ok(Loaded {
+            photos: photos(reader, &test)?,
             slots: slots.collect(),
             results: store::result::of_test(reader, id)?,
             flags: store::flag::of_test(reader, id)?,
@@ -104,6 +110,12 @@ pub fn load(visit: &Visit, id: i64) -> Result<Loaded, Failure> {
             account,
         })
     })
+}
+
+fn photos(reader: &Reader<'_>, test: &BenchTest) -> Result<Vec<(String, i64)>, Failure> {
+    let Settings::Appearance { .. } = &test.content.settings else { return Ok(Vec::new()) };
+    let found = store::attachment::of_subject(reader, Subject::new(Kind::Method, test.method))?;
+    Ok(found.into_iter().map(|file| (file.sha256, file.id)).collect())
 }
 
 /// The instrument from the address, else the one of the last reading, else the only one that may be used.

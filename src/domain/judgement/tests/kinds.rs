@@ -7,6 +7,7 @@ fn caking() -> Attribute {
         code: code.to_string(),
         word: word.to_string(),
         anchor: format!("anchor of {word}"),
+        photo: None,
     };
     Attribute {
         is_after_shake: false,
