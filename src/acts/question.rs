@@ -3,10 +3,12 @@
 use rust_decimal::Decimal;
 
 use crate::domain::failure::Failure;
-use crate::domain::hint::{Hint, HintFacts, RatioFacts, expected, hints, may_be_identical, ratio_hints};
+use crate::domain::hint::{
+    Hint, HintFacts, OUTSIDE_WINDOW, RatioFacts, expected, hints, may_be_identical, ratio_hints,
+};
 use crate::domain::method::{Reportable, Settings};
 use crate::domain::reading::{Entry, Question, Reading, Said, in_slot, standing};
-use crate::domain::result::minute_of;
+use crate::domain::result::{minute_of, outside_window};
 use crate::domain::slot::SlotKey;
 use crate::domain::specification::{Limit, LimitSet, Range};
 use crate::store;
@@ -38,6 +40,11 @@ pub(in crate::acts) fn of(
     if let Settings::Sedimentation { reads, .. } = &test.content.settings {
         found.extend(ratio(readings, entry, number.value, *reads));
     }
+    let outside = outside_window(&test.content.settings, &entry.slot.key, number.value);
+    found.extend(outside.map(|words| Hint {
+        rule: OUTSIDE_WINDOW,
+        sentence: format!("{words}. Mend it and read again, or say that it is right: the reviewer sees it."),
+    }));
     let asked =
         found.into_iter().map(|Hint { rule, sentence }| Question { rule: rule.to_string(), sentence });
     Ok(asked.collect())

@@ -22,6 +22,7 @@ pub const OUTSIDE_LAST_THREE: &str = "outside the last three";
 pub const SPREAD: &str = "replicates spread";
 pub const IDENTICAL: &str = "identical replicates";
 pub const COPIED: &str = "equal to the previous pull";
+pub const OUTSIDE_WINDOW: &str = "outside the method's window";
 pub const RATIO_ABOVE_ONE: &str = "sedimentation ratio above 1";
 pub const RATIO_HIGH: &str = "sedimentation ratio above 1.10";
 pub const BOUNDARY_ROSE: &str = "the boundary rose";

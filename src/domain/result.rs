@@ -4,6 +4,7 @@ use chrono::{Datelike, NaiveDate, Weekday};
 use rust_decimal::Decimal;
 use serde_json::json;
 
+use super::hint::OUTSIDE_WINDOW;
 use super::judgement::spread::median;
 use super::judgement::{FlagLevel, NewFlag, Qualifier, ReadingValue};
 use super::method::{Level, MethodContent, Settings};
@@ -116,7 +117,8 @@ pub fn bench_flags(content: &MethodContent, readings: &[Reading], now: Moment) -
         flags.extend(late_flag(reading, now));
         flags.extend(setting_flag(&content.settings, reading));
         if reading.answer.as_deref() == Some("kept") {
-            for question in &reading.questions {
+            // A setting outside its window has its own exception.
+            for question in reading.questions.iter().filter(|one| one.rule != OUTSIDE_WINDOW) {
                 flags.push(flag(
                     "soft stop",
                     FlagLevel::Mark,
@@ -162,9 +164,12 @@ fn late_flag(reading: &Reading, now: Moment) -> Option<NewFlag> {
     Some(flag("late reading", FlagLevel::Mark, sentence, numbers))
 }
 
-fn setting_flag(settings: &Settings, reading: &Reading) -> Option<NewFlag> {
-    let value = reading.value?;
-    let (what, least, most, unit) = match (settings, reading.key.field.as_str()) {
+/// The window of the method that a value of this field keeps: what it is, least, most, unit.
+pub fn setting_window(
+    settings: &Settings,
+    field: &str,
+) -> Option<(&'static str, Decimal, Decimal, &'static str)> {
+    Some(match (settings, field) {
         (Settings::Viscosity { torque_least_percent, torque_most_percent, .. }, "torque_percent") => {
             ("Torque", *torque_least_percent, *torque_most_percent, "%")
         }
@@ -179,15 +184,25 @@ fn setting_flag(settings: &Settings, reading: &Reading) -> Option<NewFlag> {
             ("Temperature", *temperature_least_c, *temperature_most_c, "°C")
         }
         _ => return None,
-    };
+    })
+}
+
+/// `Torque 94.5 % in reading 1 lies above the method’s 90 %`; nothing for a value inside its window.
+pub fn outside_window(settings: &Settings, key: &SlotKey, value: Decimal) -> Option<String> {
+    let (what, least, most, unit) = setting_window(settings, &key.field)?;
     if (least..=most).contains(&value) {
         return None;
     }
     let (side, bound) = if value > most { ("above", most) } else { ("below", least) };
-    let sentence = format!(
-        "{what} {value} {unit} in reading {} lies {side} the method’s {bound} {unit}: not comparable as it stands.",
-        reading.key.replicate
-    );
+    let replicate = key.replicate;
+    Some(format!("{what} {value} {unit} in reading {replicate} lies {side} the method’s {bound} {unit}"))
+}
+
+fn setting_flag(settings: &Settings, reading: &Reading) -> Option<NewFlag> {
+    let value = reading.value?;
+    let outside = outside_window(settings, &reading.key, value)?;
+    let (_, least, most, _) = setting_window(settings, &reading.key.field)?;
+    let sentence = format!("{outside}: not comparable as it stands.");
     let numbers = json!({ "value": value, "least": least, "most": most });
     Some(flag("setting outside method", FlagLevel::Exception, sentence, numbers))
 }

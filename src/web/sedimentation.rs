@@ -156,7 +156,7 @@ fn grid(visit: &Visit, loaded: &Loaded, total: &Slot, minutes: &[u32], zero: Mom
     rows.insert(0, first);
     let heads = ["Sediment volume, mL", "Supernatant", "Ratio F", "Read"].map(str::to_string).to_vec();
     let caption = format!("{}: {}", loaded.test.title, total.column);
-    Grid { caption, heads, rows, parts: Vec::new() }
+    Grid { caption, heads, rows, parts: Vec::new(), settings: Vec::new() }
 }
 
 fn planned_cell(

@@ -3,6 +3,7 @@
 use askama::Template;
 
 use super::load::Loaded;
+use super::take::setting_name;
 use crate::domain::judgement::limit::limit_words;
 use crate::domain::judgement::spread::Spread;
 use crate::domain::method::{Attribute, Level, Settings, Stage};
@@ -102,6 +103,21 @@ impl ReadingBox {
         }
     }
 
+    /// The box of a setting, for all readings of the test.
+    fn of_setting(slot: &Slot, said: &Said) -> ReadingBox {
+        let name = setting_name(slot).unwrap_or_default();
+        let wanted = if let Accepts::Setting(wanted) = &slot.accepts { wanted.as_str() } else { "" };
+        let hint = said.errors.iter().find(|(at, _)| *at == name).map(|(_, words)| words.clone());
+        ReadingBox {
+            label: format!("{}, every reading", slot.title),
+            value: said.form.get(&name).unwrap_or(wanted).to_string(),
+            is_refused: hint.is_some(),
+            hint: hint.unwrap_or_default(),
+            name,
+            ..ReadingBox::of(slot, None, &Said::default(), &[])
+        }
+    }
+
     fn is_chosen(&self, value: &str) -> bool {
         self.value == value
     }
@@ -157,6 +173,15 @@ pub struct Grid {
     pub rows: Vec<GridRow>,
     /// Grades with anchors are large: one under the other, by part and container.
     pub parts: Vec<GridPart>,
+    /// What is set once for all readings: spindle, speed.
+    pub settings: Vec<SettingBox>,
+}
+
+/// A setting of the test: its box, or what is recorded.
+pub struct SettingBox {
+    pub title: String,
+    pub recorded: String,
+    pub one: Option<ReadingBox>,
 }
 
 /// A part of an appearance, with its containers.
@@ -192,8 +217,11 @@ pub fn grid(loaded: &Loaded, slots: &[Slot], said: &Said) -> Grid {
         let parts = loaded.test.content.stages().into_iter();
         let parts = parts.map(|stage| grid_part(loaded, slots, stage, attributes, said)).collect();
         let caption = loaded.test.title.clone();
-        return Grid { caption, heads: Vec::new(), rows: Vec::new(), parts };
+        return Grid { caption, heads: Vec::new(), rows: Vec::new(), parts, settings: Vec::new() };
     }
+    let (set, slots): (Vec<Slot>, Vec<Slot>) =
+        slots.iter().cloned().partition(|slot| matches!(slot.accepts, Accepts::Setting(_)));
+    let slots = &slots[..];
     let mut heads: Vec<String> = Vec::new();
     let mut titles: Vec<String> = Vec::new();
     for slot in slots {
@@ -209,7 +237,29 @@ pub fn grid(loaded: &Loaded, slots: &[Slot], said: &Said) -> Grid {
     if has_mean {
         heads.push("Mean".to_string());
     }
-    Grid { caption: loaded.test.title.clone(), heads, rows, parts: Vec::new() }
+    let settings = settings(loaded, &set, said);
+    Grid { caption: loaded.test.title.clone(), heads, rows, parts: Vec::new(), settings }
+}
+
+/// One box for each setting, filled with what the method states; once recorded it stands as words.
+fn settings(loaded: &Loaded, set: &[Slot], said: &Said) -> Vec<SettingBox> {
+    let mut boxes: Vec<SettingBox> = Vec::new();
+    for slot in set {
+        let there = in_slot(&loaded.readings, &slot.key);
+        let known = boxes.iter().position(|one| one.title == slot.title);
+        let at = known.unwrap_or_else(|| {
+            boxes.push(SettingBox { title: slot.title.clone(), recorded: String::new(), one: None });
+            boxes.len() - 1
+        });
+        match there {
+            Some(reading) => boxes[at].recorded = recorded_text(reading),
+            None if boxes[at].one.is_none() && loaded.closed(slot).is_none() => {
+                boxes[at].one = Some(ReadingBox::of_setting(slot, said));
+            }
+            None => {}
+        }
+    }
+    boxes
 }
 
 fn grid_part(

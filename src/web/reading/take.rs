@@ -7,7 +7,7 @@ use crate::domain::failure::Failure;
 use crate::domain::method::Settings;
 use crate::domain::reading::{Entry, ReadingRefusal, Said as Value, in_slot};
 use crate::domain::reason::Reason;
-use crate::domain::slot::{Slot, unspecified};
+use crate::domain::slot::{Accepts, Slot, unspecified};
 use crate::web::pairs::Pairs;
 
 /// Fields of the form that are no readings.
@@ -65,7 +65,10 @@ pub fn how(loaded: &Loaded, form: &Pairs) -> Result<How, String> {
 pub fn take(loaded: &Loaded, form: &Pairs, seen: i64) -> Result<Taken, Failure> {
     let slots = all_slots(loaded, form);
     for (name, _) in form.iter() {
-        if !OWN.contains(&name) && !slots.iter().any(|slot| belongs(name, &slot.key.name())) {
+        let is_of = |slot: &Slot| {
+            belongs(name, &slot.key.name()) || setting_name(slot).is_some_and(|set| belongs(name, &set))
+        };
+        if !OWN.contains(&name) && !slots.iter().any(is_of) {
             return Err(Failure::BadRequest(format!("This form has no field “{name}”.")));
         }
     }
@@ -73,8 +76,30 @@ pub fn take(loaded: &Loaded, form: &Pairs, seen: i64) -> Result<Taken, Failure> 
     for slot in &slots {
         take_slot(loaded, form, seen, slot, &mut taken);
     }
+    take_settings(loaded, form, &slots, &mut taken);
     take_unspecified(loaded, form, &mut taken);
     Ok(taken)
+}
+
+/// The box of a setting, typed once for all readings of the test.
+pub fn setting_name(slot: &Slot) -> Option<String> {
+    matches!(slot.accepts, Accepts::Setting(_)).then(|| format!("setting.{}", slot.key.field))
+}
+
+/// What was set is of every reading: one text becomes a row of each that has none yet.
+fn take_settings(loaded: &Loaded, form: &Pairs, slots: &[Slot], taken: &mut Taken) {
+    for slot in slots {
+        let Some(name) = setting_name(slot) else { continue };
+        let text = form.get(&name).unwrap_or_default().trim();
+        if text.is_empty() || in_slot(&loaded.readings, &slot.key).is_some() {
+            continue;
+        }
+        match slot.read(text) {
+            Ok(said) => taken.entries.push(Entry { slot: slot.clone(), said }),
+            Err(_) if taken.errors.iter().any(|(known, _)| *known == name) => {}
+            Err(sentence) => taken.errors.push((name, sentence)),
+        }
+    }
 }
 
 /// The slots of the page, and those of unspecified components that are recorded.
