@@ -28,7 +28,9 @@ macro_rules! meanings {
         )*
     };
 }
-meanings! { Authorship Approval Review Release Rejection Override Conclusion }
+meanings! {
+    Authorship Approval Review Release Rejection Override Conclusion MaterialStatus Continuation Closure Certification
+}
 
 /// Proof that the actor typed user name and password for this meaning, in this request.
 pub struct Signed<M: Means> {

@@ -80,6 +80,16 @@ acts! {
     QualifyPerson, "qualified a person for a method", Roles(&[LabManager]);
     OverrideStop, "overrode a stop", Roles(&[QaReviewer]);
 
+    ReceiveMaterialLot, "received a material lot", Roles(&[ProductionOperator, LabManager]);
+    RecordMaterialAssay, "recorded the assay of a material lot", Roles(&[Analyst, LabManager, QaReviewer]);
+    SignMaterialStatus, "signed the status of a material lot", Roles(&[QaReviewer]);
+    MoveStock, "moved stock of a material lot", Roles(&[ProductionOperator, LabManager]);
+    AddEquipment, "added a piece of equipment", Roles(&[LabManager]);
+    RecordEquipmentEvent, "recorded an equipment event", Roles(&[ProductionOperator, LabManager]);
+    OpenDeviation, "opened a deviation", Roles(&[ProductionOperator, Analyst, LabManager, QaReviewer]);
+    WriteDeviation, "wrote in a deviation", Roles(&[ProductionOperator, Analyst, LabManager, QaReviewer]);
+    CloseDeviation, "decided on a deviation", Roles(&[QaReviewer]);
+
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
     RecordDistribution, "recorded the distribution of a lot", Roles(&[QaReviewer]);
     DecideLot, "decided on a lot", Roles(&[QaReviewer]);

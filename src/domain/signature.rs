@@ -12,10 +12,14 @@ pub enum Meaning {
     Rejection,
     Override,
     Conclusion,
+    MaterialStatus,
+    Continuation,
+    Closure,
+    Certification,
 }
 
 impl Meaning {
-    pub const ALL: [Meaning; 7] = [
+    pub const ALL: [Meaning; 11] = [
         Meaning::Authorship,
         Meaning::Approval,
         Meaning::Review,
@@ -23,6 +27,10 @@ impl Meaning {
         Meaning::Rejection,
         Meaning::Override,
         Meaning::Conclusion,
+        Meaning::MaterialStatus,
+        Meaning::Continuation,
+        Meaning::Closure,
+        Meaning::Certification,
     ];
 
     pub fn code(self) -> &'static str {
@@ -34,6 +42,10 @@ impl Meaning {
             Meaning::Rejection => "rejection",
             Meaning::Override => "override",
             Meaning::Conclusion => "conclusion",
+            Meaning::MaterialStatus => "material status",
+            Meaning::Continuation => "continuation",
+            Meaning::Closure => "closure",
+            Meaning::Certification => "certification",
         }
     }
 
@@ -47,6 +59,10 @@ impl Meaning {
             Meaning::Rejection => "Rejected by me as the authorised person",
             Meaning::Override => "Stop lifted by me, for the stated reason",
             Meaning::Conclusion => "Concluded by me from the recorded findings",
+            Meaning::MaterialStatus => "Status of this material lot set by me, for the stated reason",
+            Meaning::Continuation => "Work goes on under this deviation by my decision",
+            Meaning::Closure => "Assessed and closed by me",
+            Meaning::Certification => "Certified by me from the reviewed results",
         }
     }
 

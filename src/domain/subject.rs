@@ -17,6 +17,9 @@ pub enum Kind {
     SpecificationVersion,
     ShelfLife,
     Instrument,
+    MaterialLot,
+    Equipment,
+    Deviation,
     Lot,
     Condition,
     Chamber,
@@ -30,7 +33,7 @@ pub enum Kind {
 }
 
 impl Kind {
-    pub const ALL: [Kind; 24] = [
+    pub const ALL: [Kind; 27] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -45,6 +48,9 @@ impl Kind {
         Kind::SpecificationVersion,
         Kind::ShelfLife,
         Kind::Instrument,
+        Kind::MaterialLot,
+        Kind::Equipment,
+        Kind::Deviation,
         Kind::Lot,
         Kind::Condition,
         Kind::Chamber,
@@ -74,6 +80,9 @@ impl Kind {
             Kind::SpecificationVersion => "specification_version",
             Kind::ShelfLife => "shelf_life_assignment",
             Kind::Instrument => "instrument",
+            Kind::MaterialLot => "material_lot",
+            Kind::Equipment => "equipment",
+            Kind::Deviation => "deviation",
             Kind::Lot => "lot",
             Kind::Condition => "condition",
             Kind::Chamber => "chamber",

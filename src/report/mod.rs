@@ -2,6 +2,7 @@
 
 pub mod calendar;
 pub mod chart;
+pub mod code;
 pub mod cylinder;
 pub mod export;
 pub mod lot_file;

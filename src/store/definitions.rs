@@ -18,6 +18,8 @@ pub struct Counts {
     pub chambers: i64,
     pub protocols: i64,
     pub imports: i64,
+    pub material_lots: i64,
+    pub equipment: i64,
 }
 
 pub fn counts(reader: &Reader<'_>) -> Answer<Counts> {
@@ -35,7 +37,9 @@ pub fn counts(reader: &Reader<'_>) -> Answer<Counts> {
              (select count(*) from condition),
              (select count(*) from chamber),
              (select count(*) from protocol),
-             (select count(*) from import)",
+             (select count(*) from import),
+             (select count(*) from material_lot),
+             (select count(*) from equipment)",
         [],
         |row| {
             let count = |column: usize| row.get(column);
@@ -53,6 +57,8 @@ pub fn counts(reader: &Reader<'_>) -> Answer<Counts> {
                 chambers: count(10)?,
                 protocols: count(11)?,
                 imports: count(12)?,
+                material_lots: count(13)?,
+                equipment: count(14)?,
             })
         },
     )

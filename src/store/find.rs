@@ -21,6 +21,8 @@ pub enum Found {
     Specification,
     Protocol,
     Instrument,
+    MaterialLot,
+    Equipment,
     Chamber,
     Condition,
     Customer,
@@ -51,7 +53,7 @@ const fn named(found: Found, from: &'static str, about: &'static str) -> Place {
     Place { found, from, number: "t.code", about, owner: "null" }
 }
 
-const PLACES: [Place; 15] = [
+const PLACES: [Place; 17] = [
     Place {
         found: Found::Lot,
         from: "lot t join presentation r on r.id = t.presentation join product p on p.id = r.product",
@@ -92,6 +94,14 @@ const PLACES: [Place; 15] = [
     named(Found::Specification, "specification t join presentation p on p.id = t.presentation", "p.code"),
     named(Found::Protocol, "protocol t", "t.title"),
     named(Found::Instrument, "instrument t", "t.name"),
+    Place {
+        found: Found::MaterialLot,
+        from: "material_lot t join material m on m.id = t.material",
+        number: "t.number",
+        about: "m.name || ', ' || t.supplier || ' ' || t.supplier_lot",
+        owner: "null",
+    },
+    named(Found::Equipment, "equipment t", "t.name"),
     named(Found::Chamber, "chamber t", "t.name"),
     named(Found::Condition, "condition t", "t.name"),
     named(Found::Customer, "customer t", "t.name"),

@@ -286,7 +286,7 @@ pub fn of_subject_before(
 pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
     let table = subject.kind.code();
     let column = match subject.kind {
-        Kind::Lot | Kind::Study | Kind::Sample => "number",
+        Kind::Lot | Kind::Study | Kind::Sample | Kind::MaterialLot | Kind::Deviation => "number",
         Kind::Customer
         | Kind::Product
         | Kind::Presentation
@@ -295,6 +295,7 @@ pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
         | Kind::Method
         | Kind::Specification
         | Kind::Instrument
+        | Kind::Equipment
         | Kind::Condition
         | Kind::Chamber
         | Kind::Protocol => "code",
@@ -302,7 +303,7 @@ pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
         _ => return Ok(subject.id.to_string()),
     };
     // Table and column come from the code, never from a person.
-    let sql = format!("select {column} from {table} where id = :id");
+    let sql = format!("select cast({column} as text) from {table} where id = :id");
     reader.one("record with this number", &sql, named_params! { ":id": subject.id }, |row| row.get(0))
 }
 

@@ -30,6 +30,7 @@ pub(in crate::store) fn register_functions(connection: &Connection, current: &Ar
     connection.create_scalar_function("row_digest", -1, pure, |context| Ok(row_digest(context).to_vec()))?;
     connection.create_scalar_function("changed_fields", -1, pure, |context| Ok(changed_fields(context)))?;
     super::find::register_function(connection)?;
+    super::stock::register_function(connection)?;
     Ok(())
 }
 

@@ -32,10 +32,11 @@ pub const ROUTES: &[Route] = &[
 ];
 
 /// The records that take files, with the address of their pages.
-const OF: [(Kind, &str); 4] = [
+const OF: [(Kind, &str); 5] = [
     (Kind::Sample, "/samples"),
     (Kind::Investigation, "/investigations"),
     (Kind::Lot, "/lots"),
+    (Kind::Deviation, "/deviations"),
     (Kind::Pull, "/pulls"),
 ];
 
@@ -87,6 +88,7 @@ fn subject(visit: &Visit) -> Result<(Subject, &'static str), Failure> {
         Kind::Sample => store::bench::sample(reader, id).map(|_| ()),
         Kind::Investigation => store::investigation::get(reader, id).map(|_| ()),
         Kind::Lot => store::lot::get(reader, id).map(|_| ()),
+        Kind::Deviation => store::deviation::get(reader, id).map(|_| ()),
         _ => store::attachment::has_pull(reader, id),
     });
     is_there.map(|()| (Subject::new(*kind, id), *path))

@@ -29,6 +29,18 @@ fn what_is_made(counts: &Counts) -> Vec<Line> {
             "What a suspension is made of, in approved versions.",
         ),
         ("/materials", "Materials", counts.materials, "What formulations choose from, by function."),
+        (
+            "/material-lots",
+            "Material lots",
+            counts.material_lots,
+            "Deliveries with their status, retest or expiry, and balance.",
+        ),
+        (
+            "/equipment",
+            "Equipment",
+            counts.equipment,
+            "What lots are made in: clean, calibrated, in service.",
+        ),
         ("/customers", "Customers", counts.customers, "For whom a contract maker makes."),
     ]
 }

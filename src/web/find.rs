@@ -31,6 +31,8 @@ fn words(found: Found) -> (&'static str, &'static str, &'static str) {
         Found::Specification => ("Specifications", "code", "/specifications"),
         Found::Protocol => ("Protocols", "code", "/protocols"),
         Found::Instrument => ("Instruments", "code", "/instruments"),
+        Found::MaterialLot => ("Material lots", "number", "/material-lots"),
+        Found::Equipment => ("Equipment", "code", "/equipment"),
         Found::Chamber => ("Chambers", "code", "/chambers"),
         Found::Condition => ("Conditions", "code", "/conditions"),
         Found::Customer => ("Customers", "code", "/customers"),
@@ -74,9 +76,10 @@ fn table(found: Found, hits: &[Hit], typed: &str) -> Table {
     }))
 }
 
-const SEARCHED: &str = "Searched: the numbers of lots, studies and samples, the labels of containers, and the \
-    codes and names of products, presentations, formulations, materials, methods, specifications, protocols, \
-    instruments, chambers, conditions and customers. Capitals and separators do not matter.";
+const SEARCHED: &str = "Searched: the numbers of lots, material lots, studies and samples, the labels of \
+    containers, and the codes and names of products, presentations, formulations, materials, methods, \
+    specifications, protocols, instruments, equipment, chambers, conditions and customers. Capitals and \
+    separators do not matter.";
 
 fn find(visit: &Visit) -> Outcome {
     visit.knows_query(&["q"])?;

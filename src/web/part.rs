@@ -122,6 +122,12 @@ pub struct Signed {
 }
 
 impl Signatures {
+    /// Signatures that went over different contents, each with the digest of its own as it stands now.
+    pub fn each(signed: Vec<(Signature, String)>, zone: Tz) -> Signatures {
+        let one = |(signature, now): (Signature, String)| Signatures::of(&[signature], &now, zone).signed;
+        Signatures { signed: signed.into_iter().flat_map(one).collect() }
+    }
+
     /// `now_digest` is the digest of the record's present canonical text.
     pub fn of(signatures: &[Signature], now_digest: &str, zone: Tz) -> Signatures {
         let signed = signatures

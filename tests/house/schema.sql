@@ -6,9 +6,19 @@ CREATE INDEX arm_trigger_by_arm on arm_trigger (study_arm);
 
 CREATE INDEX attachment_by_subject on attachment (kind, subject);
 
+CREATE INDEX completeness_answer_by_lot on completeness_answer (lot, item);
+
 CREATE INDEX container_event_by_container on container_event (container);
 
 CREATE INDEX container_event_by_pull on container_event (pull) where pull is not null;
+
+CREATE INDEX deviation_by_lot on deviation (lot) where lot is not null;
+
+CREATE INDEX deviation_entry_by_deviation on deviation_entry (deviation);
+
+CREATE INDEX equipment_event_by_equipment on equipment_event (equipment, kind);
+
+CREATE INDEX equipment_event_by_lot on equipment_event (lot) where lot is not null;
 
 CREATE INDEX exception_answer_by_flag on exception_answer (flag) where flag is not null;
 
@@ -30,11 +40,25 @@ CREATE INDEX lot_decision_by_lot on lot_decision (lot);
 
 CREATE INDEX lot_distribution_by_lot on lot_distribution (lot);
 
+CREATE INDEX lot_review_by_lot on lot_review (lot);
+
+CREATE INDEX material_lot_assay_by_lot on material_lot_assay (material_lot);
+
+CREATE INDEX material_lot_by_material on material_lot (material);
+
+CREATE INDEX material_lot_status_by_lot on material_lot_status (material_lot);
+
 CREATE INDEX open_pull_by_due on open_pull (stage, due_on, latest_on, minutes);
 
 CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);
 
 CREATE INDEX open_pull_of_people on open_pull (stage, due_on, account, minutes) where account is not null;
+
+CREATE INDEX packaging_check_by_item on packaging_check (item);
+
+CREATE INDEX packaging_entry_by_item on packaging_entry (item);
+
+CREATE INDEX packaging_item_by_lot on packaging_item (lot);
 
 CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
 
@@ -52,7 +76,13 @@ CREATE INDEX qualification_by_account on qualification (account, method_version)
 
 CREATE INDEX reading_by_test on reading (sample_test, replicate, field);
 
+CREATE INDEX record_elsewhere_by_lot on record_elsewhere (lot);
+
 CREATE INDEX result_check_by_test on result_check (sample_test);
+
+CREATE INDEX retain_by_lot on retain (lot);
+
+CREATE INDEX retain_event_by_retain on retain_event (retain);
 
 CREATE INDEX review_decision_by_sample on review_decision (sample);
 
@@ -71,6 +101,10 @@ CREATE INDEX signature_by_subject on signature (kind, subject, meaning);
 CREATE INDEX specification_by_presentation on specification (presentation);
 
 CREATE INDEX stage_loss_by_sample on stage_loss (sample);
+
+CREATE INDEX stock_entry_by_lot on stock_entry (lot) where lot is not null;
+
+CREATE INDEX stock_entry_by_material_lot on stock_entry (material_lot);
 
 CREATE INDEX stop_override_by_account on stop_override (account, method_version) where account is not null;
 
@@ -135,6 +169,37 @@ CREATE TABLE attachment (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE blank_sheet (
+    id integer primary key,
+    number integer not null unique,
+    purpose text not null,
+    lot integer references lot (id),
+    issued_to integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE blank_sheet_event (
+    id integer primary key,
+    blank_sheet integer not null references blank_sheet (id),
+    kind text not null check (kind in ('returned', 'voided', 'transcribed', 'verified')),
+    text text not null,
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (blank_sheet, kind)
+) strict;
+
+CREATE TABLE certificate (
+    id integer primary key,
+    uuid blob not null unique,
+    lot integer not null references lot (id),
+    version integer not null,
+    why text,                               -- what is new, from the second version on
+    content text not null,
+    signature integer not null references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (lot, version)
+) strict;
+
 CREATE TABLE chamber (
     id integer primary key,
     code text not null collate nocase unique,
@@ -142,6 +207,15 @@ CREATE TABLE chamber (
     condition integer not null references condition (id),
     location text not null,
     qualification_due_on text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE completeness_answer (
+    id integer primary key,
+    lot integer not null references lot (id),
+    item integer not null check (item between 1 and 13),
+    answer text not null check (answer in ('present', 'not applicable', 'withdrawn')),
+    text text not null,                     -- where it stands, or why it does not apply
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -195,6 +269,35 @@ CREATE TABLE customer (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE deviation (
+    id integer primary key,
+    uuid blob not null unique,
+    number integer not null unique,
+    title text not null,
+    described text not null,
+    occurred_on text not null,
+    lot integer references lot (id),
+    step integer,                           -- of the lot's batch record, where it came from one
+    step_words text,
+    material_lot integer references material_lot (id),
+    equipment integer references equipment (id),
+    study integer references study (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE deviation_entry (
+    id integer primary key,
+    deviation integer not null references deviation (id),
+    kind text not null check (kind in ('classified', 'cause', 'action', 'other lot considered', 'other lots assessed',
+        'added to stability', 'not added to stability', 'continued', 'closed')),
+    class text check (class in ('minor', 'major', 'critical')),
+    text text not null,
+    other_lot integer references lot (id),
+    study integer references study (id),
+    signature integer references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
 CREATE TABLE draft (
     account integer not null,
     page text not null,
@@ -203,6 +306,34 @@ CREATE TABLE draft (
     at text not null,
     primary key (account, page)
 ) strict, without rowid;
+
+CREATE TABLE equipment (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    name text not null,
+    class text not null,                    -- as the steps of a master record name it
+    location text not null,
+    clean_hold_days integer not null,       -- how long it stays clean unused
+    campaign_days integer not null,         -- how long lots of one product may follow without cleaning; 0: never
+    needs_clean_check integer not null check (needs_clean_check in (0, 1)),
+    needs_calibration integer not null check (needs_calibration in (0, 1)),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE equipment_event (
+    id integer primary key,
+    equipment integer not null references equipment (id),
+    kind text not null check (kind in ('cleaned', 'checked clean', 'used', 'calibrated', 'out of service',
+        'in service')),
+    happened_on text not null,
+    due_on text,                            -- of a calibration: the last day it holds
+    lot integer references lot (id),        -- it was used in
+    cleaning integer references equipment_event (id),   -- that was checked
+    account integer not null references account (id),
+    note text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
 
 CREATE TABLE exception_answer (
     id integer primary key,
@@ -334,6 +465,16 @@ CREATE TABLE lot_distribution (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE lot_review (
+    id integer primary key,
+    lot integer not null references lot (id),
+    up_to_act integer not null references trail_act (id),
+    corrections integer not null,
+    digest text not null,                   -- of the corrections, the items and the deviations as they were shown
+    signature integer not null references signature (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
 CREATE TABLE material (
     id integer primary key,
     uuid blob not null unique,
@@ -341,6 +482,45 @@ CREATE TABLE material (
     name text not null,
     function text not null,
     density_g_per_ml text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE material_lot (
+    id integer primary key,
+    uuid blob not null unique,
+    material integer not null references material (id),
+    number text not null collate nocase unique,
+    supplier text not null,
+    supplier_lot text not null,
+    received_on text not null,
+    quantity text not null,                 -- as received
+    unit text not null,
+    packages integer,                       -- drums, bags, bottles of the delivery
+    retest_on text,                         -- last day before it is tested again; a release may name a later one
+    expires_on text,                        -- last day of use, never moved
+    location text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE material_lot_assay (
+    id integer primary key,
+    material_lot integer not null references material_lot (id),
+    assay text,
+    assay_unit text,
+    assay_basis text check (assay_basis in ('as is', 'anhydrous', 'dried')),
+    water text,                             -- water or loss on drying
+    water_unit text,
+    reference text not null,                -- certificate or test record
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE material_lot_status (
+    id integer primary key,
+    material_lot integer not null references material_lot (id),
+    status text not null check (status in ('quarantine', 'released', 'rejected', 'used up')),
+    retest_on text,                         -- from now on, where a release follows a retest
+    why text not null,
+    signature integer references signature (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -389,6 +569,39 @@ CREATE TABLE open_pull (
 
 CREATE TABLE open_sample (
     sample integer primary key references sample (id)
+) strict;
+
+CREATE TABLE packaging_check (
+    id integer primary key,
+    item integer not null references packaging_item (id),
+    issued integer not null,
+    accounted integer not null,
+    percent text not null,
+    newest_entry integer not null references packaging_entry (id),      -- later counts ask for a new check
+    deviation integer references deviation (id),                        -- opened where it is outside its limits
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE packaging_entry (
+    id integer primary key,
+    item integer not null references packaging_item (id),
+    kind text not null check (kind in ('issued', 'used', 'sampled', 'destroyed', 'returned')),
+    count integer not null check (count >= 0),
+    supersedes integer unique references packaging_entry (id),
+    why text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE packaging_item (
+    id integer primary key,
+    lot integer not null references lot (id),
+    kind text not null check (kind in ('container', 'closure', 'label', 'carton', 'leaflet', 'other')),
+    name text not null,
+    material_lot integer references material_lot (id),
+    least_percent text not null,            -- accounted for, of what was issued
+    most_percent text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
 CREATE TABLE photo_mark (
@@ -523,6 +736,15 @@ CREATE TABLE reading_log (
     at text not null
 ) strict;
 
+CREATE TABLE record_elsewhere (
+    id integer primary key,
+    lot integer not null references lot (id),
+    reference text not null,
+    place text not null,
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
 CREATE TABLE refinery_schema_history(
              version int4 PRIMARY KEY,
              name VARCHAR(255),
@@ -556,6 +778,32 @@ CREATE TABLE result_check (
     verdict text not null check (verdict in ('checked', 'sent back')),
     why text,
     account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE retain (
+    id integer primary key,
+    uuid blob not null unique,
+    lot integer not null references lot (id),
+    number text not null collate nocase unique,
+    containers integer not null check (containers > 0),
+    quantity text not null,
+    unit text not null,
+    test_quantity text not null,            -- what one set of all tests takes, in the same unit
+    location text not null,
+    stored_on text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE retain_event (
+    id integer primary key,
+    retain integer not null references retain (id),
+    kind text not null check (kind in ('looked at', 'taken', 'discarded')),
+    happened_on text not null,
+    is_changed integer check (is_changed in (0, 1)),
+    containers integer,
+    note text,
+    deviation integer references deviation (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -685,6 +933,18 @@ CREATE TABLE stage_loss (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE stock_entry (
+    id integer primary key,
+    material_lot integer not null references material_lot (id),
+    kind text not null check (kind in ('received', 'dispensed', 'adjusted', 'destroyed', 'returned')),
+    quantity text not null,
+    balance text not null,
+    lot integer references lot (id),        -- dispensed to it, or returned from it
+    why text,
+    witness integer references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
 CREATE TABLE stop_override (
     id integer primary key,
     stop text not null check (stop in ('calibration', 'daily check', 'out of service', 'qualification')),
@@ -795,14 +1055,32 @@ when new.verdict = 'checked' and exists (
     where r.sample_test = new.sample_test and a.account = new.account)
 begin select raise(abort, 'the checker is not a reader'); end;
 
+CREATE TRIGGER guard_cleaner_does_not_check before insert on equipment_event
+when new.kind = 'checked clean'
+    and exists (select 1 from equipment_event where id = new.cleaning and account = new.account)
+begin select raise(abort, 'who cleaned does not check'); end;
+
+CREATE TRIGGER guard_closed_deviation before insert on deviation_entry
+when exists (select 1 from deviation_entry where deviation = new.deviation and kind = 'closed')
+begin select raise(abort, 'the deviation is closed'); end;
+
 CREATE TRIGGER guard_container_leaves_once before insert on container_event
 when exists (select 1 from container_event
     where container = new.container and (new.kind <> 'destroyed' or kind = 'destroyed'))
 begin select raise(abort, 'the container has left already'); end;
 
+CREATE TRIGGER guard_counter_does_not_check before insert on packaging_check
+when exists (select 1 from packaging_entry e join trail_act a on a.id = e.act
+    where e.item = new.item and a.account = new.account)
+begin select raise(abort, 'who counted does not check'); end;
+
 CREATE TRIGGER guard_formulation_version before update on formulation_version
 when exists (select 1 from signature where kind = 'formulation_version' and subject = old.id)
 begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_material_status_is_signed before insert on material_lot_status
+when new.signature is null and exists (select 1 from material_lot_status where material_lot = new.material_lot)
+begin select raise(abort, 'a later status of a material lot is signed'); end;
 
 CREATE TRIGGER guard_method_version before update on method_version
 when exists (select 1 from signature where kind = 'method_version' and subject = old.id)
@@ -828,6 +1106,20 @@ CREATE TRIGGER guard_specification_version before update on specification_versio
 when exists (select 1 from signature where kind = 'specification_version' and subject = old.id)
 begin select raise(abort, 'a signed version is frozen'); end;
 
+CREATE TRIGGER guard_stock_direction before insert on stock_entry
+when (new.kind in ('received', 'returned') and cast(new.quantity as real) <= 0)
+    or (new.kind in ('dispensed', 'destroyed') and cast(new.quantity as real) >= 0)
+begin select raise(abort, 'what comes in is more than zero, what goes out less'); end;
+
+CREATE TRIGGER guard_stock_follows before insert on stock_entry
+when not sums_to(coalesce((select balance from stock_entry where material_lot = new.material_lot
+    order by id desc limit 1), '0'), new.quantity, new.balance)
+begin select raise(abort, 'the balance does not follow from the one before'); end;
+
+CREATE TRIGGER guard_stock_not_below_zero before insert on stock_entry
+when cast(new.balance as real) < 0
+begin select raise(abort, 'a material lot never holds less than nothing'); end;
+
 CREATE TRIGGER guard_trail_act_delete before delete on trail_act
 begin select raise(abort, 'the trail is never changed'); end;
 
@@ -851,6 +1143,11 @@ begin select raise(abort, 'the trail is never changed'); end;
 
 CREATE TRIGGER guard_trail_seal_update before update on trail_seal
 begin select raise(abort, 'the trail is never changed'); end;
+
+CREATE TRIGGER guard_transcriber_does_not_verify before insert on blank_sheet_event
+when new.kind = 'verified' and exists (select 1 from blank_sheet_event
+    where blank_sheet = new.blank_sheet and kind = 'transcribed' and account = new.account)
+begin select raise(abort, 'who transcribed does not verify'); end;
 
 CREATE TRIGGER open_check_answered after insert on result_check
 begin

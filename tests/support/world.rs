@@ -488,3 +488,61 @@ pub fn take(lab: &Lab, pull: &store::pull::Pull) -> i64 {
     acts::pull::take(&lab.app.db, &lab.actor("rafe.tolland"), pull.id, &taking).unwrap();
     pull.sample
 }
+
+/// A delivery of a material in kg, under quarantine, that expires on a day.
+pub fn material_lot(lab: &Lab, material: i64, number: &str, quantity: &str, expires_on: &str) -> i64 {
+    let new = supernate::domain::material_lot::NewMaterialLot {
+        material,
+        number: number.to_string(),
+        supplier: "Fellside Minerals".to_string(),
+        supplier_lot: format!("F-{number}"),
+        received_on: lab.now().date(),
+        quantity: quantity.parse().unwrap(),
+        unit: "kg".to_string(),
+        packages: Some(2),
+        retest_on: None,
+        expires_on: Some(expires_on.parse().unwrap()),
+        location: "cage 2".to_string(),
+    };
+    acts::material_lot::receive(&lab.app.db, &lab.actor("bea.skelton"), &new).unwrap()
+}
+
+/// QA releases a material lot.
+pub fn release_material_lot(lab: &Lab, id: i64) {
+    use supernate::acts::signature::MaterialStatus as Meaning;
+    use supernate::domain::material_lot::{MaterialStatus, NewStatus};
+    let qa = lab.actor("ada.whitlock");
+    let why = "certificate and identity test agree".to_string();
+    let new = NewStatus { status: MaterialStatus::Released, retest_on: None, why };
+    acts::material_lot::set_status(&lab.app.db, &qa, id, &new, &signed::<Meaning>(lab, &qa)).unwrap();
+}
+
+/// A vessel that is cleaned and checked today.
+pub fn clean_equipment(lab: &Lab, code: &str, class: &str) -> i64 {
+    use supernate::domain::equipment::{EquipmentEventKind, NewEquipment, NewEquipmentEvent};
+    let db = &lab.app.db;
+    let new = NewEquipment {
+        code: code.to_string(),
+        name: format!("{class}, 500 L"),
+        class: class.to_string(),
+        location: "room 4".to_string(),
+        clean_hold_days: 7,
+        campaign_days: 0,
+        needs_clean_check: true,
+        needs_calibration: false,
+    };
+    let id = acts::equipment::add(db, &lab.actor("maren.oddy"), &new).unwrap();
+    let events =
+        [("bea.skelton", EquipmentEventKind::Cleaned), ("maren.oddy", EquipmentEventKind::CheckedClean)];
+    for (who, kind) in events {
+        let event = NewEquipmentEvent {
+            kind,
+            happened_on: lab.now().date(),
+            due_on: None,
+            lot: None,
+            note: "hot water and agent 3".to_string(),
+        };
+        acts::equipment::record_event(db, &lab.actor(who), id, &event).unwrap();
+    }
+    id
+}

@@ -6,7 +6,8 @@ use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
 use crate::store::{
-    Answer, Reader, condition, investigation, lot_decision, review, shelf_life, signature, stop, version,
+    Answer, Reader, condition, deviation, investigation, lot_decision, material_lot, review, shelf_life,
+    signature, stop, version,
 };
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
@@ -44,6 +45,8 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::Lot => lot_decision::canonical_of_signature(reader, signed.id),
         Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
         Kind::Condition => condition::canonical_of(reader, signed.subject.id),
+        Kind::MaterialLot => material_lot::canonical_of_signature(reader, signed.id),
+        Kind::Deviation => deviation::canonical_of_signature(reader, signed.subject.id, signed.id),
         Kind::Investigation => investigation::canonical_of(reader, signed.subject.id),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }
