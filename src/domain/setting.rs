@@ -54,8 +54,26 @@ pub const WINDOWS: [Setting; 5] = [
     window("window.later", "Window of later ages, days after the due date", WINDOW_DAYS, 14),
 ];
 
-pub const ALL: [Setting; 7] =
-    [IDLE_MINUTES, BENCH_IDLE_MINUTES, WINDOWS[0], WINDOWS[1], WINDOWS[2], WINDOWS[3], WINDOWS[4]];
+/// The level of the tests that decide whether lots are pooled.
+pub const POOLING_PERCENT: Setting = Setting {
+    name: "evaluation.pooling-percent",
+    label: "Level of the tests for pooling lots, %",
+    hint: "25 (ICH Q1E 2003, appendix B). Each conclusion keeps the level it was made with.",
+    default: 25,
+    least: 1,
+    most: 50,
+};
+
+pub const ALL: [Setting; 8] = [
+    IDLE_MINUTES,
+    BENCH_IDLE_MINUTES,
+    WINDOWS[0],
+    WINDOWS[1],
+    WINDOWS[2],
+    WINDOWS[3],
+    WINDOWS[4],
+    POOLING_PERCENT,
+];
 
 #[derive(Debug, PartialEq, Eq, thiserror::Error)]
 pub enum SettingRefusal {

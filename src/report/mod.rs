@@ -4,6 +4,7 @@ pub mod calendar;
 pub mod chart;
 pub mod code;
 pub mod cylinder;
+pub mod evaluation;
 pub mod export;
 pub mod lot_file;
 pub mod table;

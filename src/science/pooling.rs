@@ -235,6 +235,16 @@ impl Pooling {
         Some(MeanLine { n, mean_x, mean_y, sxx, slope, variance, df })
     }
 
+    /// The sum of squares by which one slope is worse than a slope for each lot.
+    pub fn between_slopes(&self) -> f64 {
+        self.between_slopes
+    }
+
+    /// The sum of squares by which one line is worse than one slope with own intercepts.
+    pub fn between_lots(&self) -> f64 {
+        self.between_lots
+    }
+
     /// The residual sum of squares of each lot about its own line.
     pub fn own_sse(&self) -> &[f64] {
         &self.own_sse

@@ -13,6 +13,7 @@ pub mod definitions;
 pub mod deviation;
 pub mod door;
 pub mod equipment;
+pub mod evaluation;
 pub mod find;
 pub mod flag;
 pub mod formulation;

@@ -20,7 +20,7 @@ pub fn key_of_sample(reader: &Reader<'_>, sample: i64) -> Answer<Option<SeriesKe
     )
 }
 
-const SELECT: &str = "
+pub(in crate::store) const SELECT: &str = "
     select s.id, t.id, t.test, t.title, coalesce(r.component, ''),
         p.age_months, p.age_days,
         (select e.happened_on from pull_event e where e.pull = p.id and e.kind = 'pulled' order by e.id limit 1),
@@ -44,7 +44,7 @@ const SELECT: &str = "
         and r.version = (select max(version) from result newest where newest.sample_test = t.id)";
 
 /// A pull that is still to come is no gap: it has neither a result nor an event.
-const HAPPENED: &str = "(r.id is not null
+pub(in crate::store) const HAPPENED: &str = "(r.id is not null
     or exists (select 1 from pull_event e where e.pull = p.id and e.kind <> 'cancelled'))";
 
 /// Every test's points for a lot × condition × orientation, ordered by test, component and age. One query.
@@ -119,7 +119,7 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<SeriesPoint> {
     from_row_at(row, 0)
 }
 
-fn from_row_at(row: &Row<'_>, at: usize) -> rusqlite::Result<SeriesPoint> {
+pub(in crate::store) fn from_row_at(row: &Row<'_>, at: usize) -> rusqlite::Result<SeriesPoint> {
     let exact = |column: usize| -> rusqlite::Result<Option<Decimal>> {
         Ok(row.get::<_, Option<Exact>>(at + column)?.map(|Exact(value)| value))
     };

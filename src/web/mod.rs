@@ -12,6 +12,7 @@ pub mod container;
 pub mod definitions;
 pub mod deviation;
 pub mod equipment;
+pub mod evaluation;
 pub mod failure;
 pub mod field;
 pub mod find;

@@ -46,12 +46,13 @@ pub struct Shell {
 }
 
 /// The sections of the main navigation, in the order of the work.
-const SECTIONS: [(&str, &str); 8] = [
+const SECTIONS: [(&str, &str); 9] = [
     ("/week", "Week"),
     ("/bench", "Bench"),
     ("/review", "Review"),
     ("/lots", "Lots"),
     ("/studies", "Studies"),
+    ("/evaluations", "Evaluation"),
     ("/formulations", "Formulations"),
     ("/definitions", "Definitions"),
     ("/history", "History"),

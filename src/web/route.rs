@@ -87,6 +87,7 @@ pub fn all() -> Vec<Route> {
         super::protocol::ROUTES,
         super::study::ROUTES,
         super::amendment::ROUTES,
+        super::evaluation::ROUTES,
         super::container::ROUTES,
         super::pull::ROUTES,
         super::week::ROUTES,

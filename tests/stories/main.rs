@@ -17,6 +17,7 @@ mod definitions;
 mod demos;
 mod deviations;
 mod equipments;
+mod evaluations;
 mod formulations;
 mod hostile_texts;
 mod imports;

@@ -3,6 +3,7 @@
 
 #![allow(dead_code)]
 
+pub mod aged;
 pub mod samples;
 pub mod world;
 

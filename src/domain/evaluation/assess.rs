@@ -41,11 +41,19 @@ pub struct Assessment {
 
 /// Computes one series. Complains where a value or a limit is off the scale.
 pub fn assess(series: &Series, choices: &Choices) -> Result<Assessment, Vec<Complaint>> {
+    let found = assess_life(series, choices)?;
+    let on_scale = OnScale::of(series)?;
+    let (means, bounds) = (on_scale.points(Replicates::Mean), Bounds::of(series));
+    let trend = trend::judge_all(&means, found.origin, series.scale, &found.specification, &bounds, choices);
+    Ok(Assessment { trend, ..found })
+}
+
+/// Lines, pooling and shelf life alone: the trend of each result is left empty. The same numbers as [`assess`].
+pub fn assess_life(series: &Series, choices: &Choices) -> Result<Assessment, Vec<Complaint>> {
     let on_scale = OnScale::of(series)?;
     let bounds = Bounds::of(series);
     let mut said = notes::first(series, choices);
     let points = on_scale.points(choices.replicates);
-    let means = on_scale.points(Replicates::Mean);
     let specification = on_scale.specification()?;
     let lines: Vec<Option<Line>> = points.iter().map(|lot| Line::fit(lot).ok()).collect();
     let drawn = !bounds.forbid_a_line();
@@ -60,8 +68,6 @@ pub fn assess(series: &Series, choices: &Choices) -> Result<Assessment, Vec<Comp
         notes::of_model(series, pooling, &life, &mut said);
         notes::of_data(series, &slices, pooling, &mut said);
     }
-    let trend =
-        trend::judge_all(&means, on_scale.origin_value(), series.scale, &specification, &bounds, choices);
     Ok(Assessment {
         origin: on_scale.origin_value(),
         series: series.clone(),
@@ -70,7 +76,7 @@ pub fn assess(series: &Series, choices: &Choices) -> Result<Assessment, Vec<Comp
         pooling,
         specification,
         life,
-        trend,
+        trend: Vec::new(),
         notes: said,
     })
 }

@@ -5,7 +5,10 @@
 
 pub mod assess;
 mod bounds;
+pub mod container;
+pub mod group;
 mod notes;
+pub mod record;
 pub mod series;
 pub mod table;
 pub mod trend;

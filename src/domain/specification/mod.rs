@@ -31,6 +31,19 @@ impl SpecificationContent {
     pub fn of(&self, test: &str) -> Option<&TestLimits> {
         self.tests.iter().find(|limits| limits.test == test)
     }
+
+    /// Lower and upper limit of a test and component in a set; none for words, grades and unlimited tests.
+    pub fn range_of(&self, test: &str, component: &str, set: LimitSet) -> (Option<Decimal>, Option<Decimal>) {
+        match self.of(test).map(|limits| limits.limit(set)) {
+            Some(Limit::Between { lower, upper }) => (*lower, *upper),
+            Some(Limit::Components(ranges)) => {
+                let key = if component.starts_with("unspecified") { "unspecified" } else { component };
+                let range = ranges.iter().find(|(code, _)| code == key).map(|(_, range)| range);
+                range.map(|range| (range.lower, range.upper)).unwrap_or_default()
+            }
+            Some(Limit::None | Limit::Grades(_)) | None => (None, None),
+        }
+    }
 }
 
 /// How a value is compared with a limit (ASTM E29 names both ways; decision A6).

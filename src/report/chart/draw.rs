@@ -3,7 +3,7 @@
 use rust_decimal::Decimal;
 
 use super::scale::{self, Axis, TimeUnit};
-use super::{Bound, Chart, Drawn, Mark, Point, Series, Shape, Text, fit, words};
+use super::{Bound, Chart, Curve, CurveKind, Drawn, Mark, Point, Series, Shape, Text, fit, words};
 
 /// Dashes of the series, in order.
 const LINES: [&str; 4] = ["line", "line line-2", "line line-3", "line line-4"];
@@ -34,11 +34,14 @@ pub fn drawn(chart: &Chart) -> Drawn {
     let y = scale::values(chart, frame.bottom, frame.top);
     let (x, unit) = scale::time(chart, frame.left, frame.right);
     let mut canvas = Canvas { x, y, unit, shapes: Vec::new(), texts: Vec::new(), ends: Vec::new() };
+    canvas.curves(chart, CurveKind::Band);
     canvas.axes(chart, &frame);
     canvas.limits(chart, &frame);
+    canvas.curves(chart, CurveKind::Fit);
+    canvas.curves(chart, CurveKind::Bound);
     for (place, series) in chart.series.iter().enumerate() {
         canvas.fit(chart, series);
-        canvas.series(series, place);
+        canvas.series(chart, series, place);
     }
     canvas.write_ends(&frame);
     Drawn {
@@ -116,16 +119,22 @@ impl Canvas {
         if let Some(months) = chart.life_months {
             let x = self.x.at(self.unit.of_months(months));
             self.shape("life", format!("M{} {}V{}", plain(x), frame.top, frame.bottom));
-            let words = "shelf life".to_string();
-            self.text("soft", x - Decimal::from(4), Decimal::from(frame.top + 12), "end", words);
+            let words = if chart.life_words.is_empty() { "shelf life" } else { chart.life_words.as_str() };
+            let is_left = x < Decimal::from((frame.left + frame.right) / 2);
+            let (shift, anchor) = if is_left { (4, "start") } else { (-4, "end") };
+            let at = x + Decimal::from(shift);
+            self.text("soft", at, Decimal::from(frame.top + 12), anchor, words.to_string());
         }
     }
 
-    fn series(&mut self, series: &Series, place: usize) {
-        self.line(series, place);
+    fn series(&mut self, chart: &Chart, series: &Series, place: usize) {
+        if !chart.is_group {
+            self.line(series, place);
+        }
         for point in &series.points {
             let Some(value) = point.value else { continue };
-            for reading in point.replicates.iter().filter(|_| point.replicates.len() > 1) {
+            let are_drawn = point.replicates.len() > 1 && !chart.is_group;
+            for reading in point.replicates.iter().filter(|_| are_drawn) {
                 let (x, y) = self.place(point, *reading);
                 self.shape("point-open", circle(x, y, "2.5"));
             }
@@ -143,10 +152,45 @@ impl Canvas {
             }
         }
         let last = series.points.iter().rev().find_map(|point| Some((point, point.value?)));
-        if let (false, Some((point, value))) = (series.label.is_empty(), last) {
+        let is_named = !chart.is_group || chart.series.len() <= LINES.len() || chart.named == series.label;
+        if let (true, Some((point, value))) = (is_named && !series.label.is_empty(), last) {
             let (_, y) = self.place(point, value);
             self.ends.push((y, series.label.clone()));
         }
+    }
+
+    /// The computed curves of one kind; a stroke ends where it leaves the picture.
+    fn curves(&mut self, chart: &Chart, kind: CurveKind) {
+        for curve in chart.curves.iter().filter(|curve| curve.kind == kind) {
+            let path = self.curve(curve);
+            let class = match kind {
+                CurveKind::Band => "band",
+                CurveKind::Fit => "fit",
+                CurveKind::Bound => "bound",
+            };
+            if path.contains('L') {
+                self.shape(class, path);
+            }
+        }
+    }
+
+    fn curve(&self, curve: &Curve) -> String {
+        let mut path = String::new();
+        let mut is_down = false;
+        for (age, value) in &curve.points {
+            let is_inside = *value >= self.y.least && *value <= self.y.most;
+            if !is_inside && curve.kind != CurveKind::Band {
+                is_down = false;
+                continue;
+            }
+            let (x, y) = (plain(self.x.at(self.unit.of_months(*age))), plain(self.y.at(*value)));
+            path.push_str(&format!("{}{x} {y}", if is_down { 'L' } else { 'M' }));
+            is_down = true;
+        }
+        if curve.kind == CurveKind::Band && is_down {
+            path.push('z');
+        }
+        path
     }
 
     /// The straight line through the series' own points.

@@ -4,7 +4,7 @@ use rust_decimal::Decimal;
 
 use super::{Bound, Chart, Drawn, Mark, Point, Series};
 use crate::domain::series::{ArmWords, SeriesPoint};
-use crate::domain::specification::{Limit, LimitSet, SpecificationContent};
+use crate::domain::specification::{LimitSet, SpecificationContent};
 
 /// What the charts of one lot and condition have in common.
 #[derive(Clone, Debug, Default)]
@@ -88,29 +88,21 @@ fn chart(test: &str, component: &str, group: &[&SeriesPoint], about: &About<'_>)
         life_months: about.life_months,
         has_fit: about.has_fit,
         is_small: about.is_small,
+        ..Chart::default()
     }
 }
 
 /// An id holds letters, digits and hyphens only.
-fn id(text: &str) -> String {
+pub(in crate::report) fn id(text: &str) -> String {
     text.chars().map(|letter| if letter.is_ascii_alphanumeric() { letter } else { '-' }).collect()
 }
 
 fn limits(test: &str, component: &str, about: &About<'_>) -> (Option<Decimal>, Option<Decimal>) {
-    let found = about.specification.and_then(|content| content.of(test));
-    let Some((limits, set)) = found.zip(about.set) else { return (None, None) };
-    match limits.limit(set) {
-        Limit::Between { lower, upper } => (*lower, *upper),
-        Limit::Components(ranges) => {
-            let key = if component.starts_with("unspecified") { "unspecified" } else { component };
-            let range = ranges.iter().find(|(code, _)| code == key).map(|(_, range)| range);
-            range.map(|range| (range.lower, range.upper)).unwrap_or_default()
-        }
-        Limit::None | Limit::Grades(_) => (None, None),
-    }
+    let found = about.specification.zip(about.set);
+    found.map(|(content, set)| content.range_of(test, component, set)).unwrap_or_default()
 }
 
-fn drawn_point(point: &SeriesPoint, about: &About<'_>) -> Point {
+pub(in crate::report) fn drawn_point(point: &SeriesPoint, about: &About<'_>) -> Point {
     let mark = if point.verdict == "out of specification" {
         Mark::OutOfSpecification
     } else if point.has_trend_flag {
@@ -141,7 +133,7 @@ fn drawn_point(point: &SeriesPoint, about: &About<'_>) -> Point {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::domain::specification::{TestLimits, Way};
+    use crate::domain::specification::{Limit, TestLimits, Way};
 
     fn point(test: &str, component: &str, value: Option<i64>, qualifier: &str) -> SeriesPoint {
         SeriesPoint {

@@ -35,6 +35,37 @@ pub struct Chart {
     pub has_fit: bool,
     /// Drawn at 420 × 230 instead of 720 × 320.
     pub is_small: bool,
+    /// Several lots on one picture: points are not joined and single readings stand in the table only.
+    pub is_group: bool,
+    /// Computed curves: fitted lines, confidence limits, prediction bands.
+    pub curves: Vec<Curve>,
+    /// What the dotted upright says instead of "shelf life".
+    pub life_words: String,
+    /// The time axis reaches at least so far.
+    pub end_months: Option<Decimal>,
+    /// With many lots only this one is named at its line.
+    pub named: String,
+    /// What stands in the key beside the shapes, for the curves.
+    pub curve_key: String,
+}
+
+/// A computed curve over age: months and value.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub struct Curve {
+    pub kind: CurveKind,
+    pub points: Vec<(Decimal, Decimal)>,
+}
+
+/// What a curve is; bands are drawn first.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum CurveKind {
+    /// The polygon of an interval: along its upper side, back along the lower.
+    Band,
+    /// A fitted mean.
+    #[default]
+    Fit,
+    /// A confidence limit.
+    Bound,
 }
 
 /// A line of points in order of age.

@@ -160,7 +160,7 @@ impl TimeUnit {
 /// The time axis from zero to the last age or the shelf life, whichever is later. Real time, never ranks.
 pub fn time(chart: &Chart, from: i64, to: i64) -> (Axis, TimeUnit) {
     let ages = chart.series.iter().flat_map(|series| &series.points).map(|point| point.age_months);
-    let last = ages.chain(chart.life_months).max().unwrap_or(Decimal::ONE);
+    let last = ages.chain(chart.life_months).chain(chart.end_months).max().unwrap_or(Decimal::ONE);
     let unit = TimeUnit::for_months(last);
     let most = unit.of_months(last).max(Decimal::ONE);
     let fits = |step: &&i64| most / Decimal::from(**step) <= Decimal::from(6);

@@ -21,7 +21,7 @@ pub fn title(chart: &Chart) -> String {
 /// 1 out of specification: 7.62 at 9 months."
 pub fn finding(chart: &Chart) -> String {
     let count = chart.valued().count();
-    let mut text = format!("{}: {}", title(chart), counted(count));
+    let mut text = format!("{}: {}", title(chart), counted(chart, count));
     if let Some(span) = ages(chart) {
         text.push_str(&format!(", {span}"));
     }
@@ -50,8 +50,12 @@ pub fn finding(chart: &Chart) -> String {
     text
 }
 
-fn counted(count: usize) -> String {
-    if count == 1 { "1 pull".to_string() } else { format!("{count} pulls") }
+fn counted(chart: &Chart, count: usize) -> String {
+    let pulls = if count == 1 { "1 pull".to_string() } else { format!("{count} pulls") };
+    match chart.series.len() {
+        lots if chart.is_group && lots > 1 => format!("{pulls} of {lots} lots"),
+        _ => pulls,
+    }
 }
 
 fn ages(chart: &Chart) -> Option<String> {
@@ -71,7 +75,10 @@ fn marked(chart: &Chart, mark: Mark) -> Option<String> {
     let found: Vec<String> = chart
         .valued()
         .filter(|(_, point)| point.mark == mark)
-        .map(|(_, point)| format!("{} at {}", point.shown, point.age))
+        .map(|(series, point)| match chart.is_group {
+            true => format!("{} at {} ({})", point.shown, point.age, series.label),
+            false => format!("{} at {}", point.shown, point.age),
+        })
         .collect();
     (!found.is_empty()).then(|| format!("{} {}: {}.", found.len(), mark.words(), found.join(", ")))
 }
@@ -97,7 +104,7 @@ pub fn key(chart: &Chart) -> String {
     let table: [(bool, &str); 8] = [
         (has(&|point| point.mark == Mark::None && point.is_signed), "filled: signed"),
         (has(&|point| point.mark == Mark::None && !point.is_signed), "open ring: not signed yet"),
-        (has(&|point| !point.replicates.is_empty()), "small open: single readings"),
+        (!chart.is_group && has(&|point| !point.replicates.is_empty()), "small open: single readings"),
         (has(&|point| point.mark == Mark::OutOfSpecification), "triangle: out of specification"),
         (has(&|point| point.mark == Mark::OutOfTrend), "diamond: out of trend"),
         (has(&|point| point.mark == Mark::Imported), "ring with a dot: imported"),
@@ -111,6 +118,7 @@ pub fn key(chart: &Chart) -> String {
         .filter(|(holds, _)| *holds)
         .map(|(_, words)| *words)
         .chain(fitted.then_some(line))
+        .chain((!chart.curve_key.is_empty()).then_some(chart.curve_key.as_str()))
         .collect();
     capital(&parts.join(" · "))
 }
