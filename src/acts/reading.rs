@@ -121,6 +121,19 @@ pub fn correct(db: &Db, actor: &Actor, how: &How, entry: &Entry, reason: &Reason
     })
 }
 
+/// The check of identity before any number: the label in the hand is of this sample. A right one leaves no entry, for
+/// every record names it again; a wrong one is refused and noted in the history of the sample (screen_U68).
+pub fn check_label(db: &Db, actor: &Actor, sample: i64, label: &str) -> Result<(), Failure> {
+    let found = db.read(|reader| store::bench::sample(reader, sample))?;
+    if label.is_empty() || labelled(label, &found.number, &found.containers).is_some() {
+        return Ok(());
+    }
+    db.change(actor, Act::RecordReadings, &Reason::none(), |change| {
+        concerns(change, &found)?;
+        Err(ReadingRefusal::WrongLabel(label.to_string()).into())
+    })
+}
+
 /// A count that the method looks at only after each so many is known to that interval (decision A15).
 fn inspected_every(test: &BenchTest, entry: &Entry) -> Option<u32> {
     let Settings::Redispersibility { inspect_every, .. } = test.content.settings else { return None };

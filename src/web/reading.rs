@@ -21,6 +21,7 @@ use boxes::Said;
 pub const ROUTES: &[Route] = &[
     get("/tests/{id}", test).at_bench(),
     post("/tests/{id}", &[Act::RecordReadings, Act::CorrectReading, Act::CompleteTest], record).at_bench(),
+    post("/tests/{id}/label", &[Act::RecordReadings], label).at_bench(),
     post("/tests/{id}/questions", &[Act::RecordReadings], answer).at_bench(),
     post("/tests/{id}/inversions", &[Act::RecordReadings], counter::record).at_bench(),
 ];
@@ -39,6 +40,25 @@ fn test(visit: &Visit) -> Outcome {
     let loaded = load::load(visit, visit.id("id")?)?;
     let is_wrong = !loaded.label.is_empty() && !loaded.is_label_right;
     test_page(if is_wrong { 409 } else { 200 }, visit, &loaded, &Said::default(), None)
+}
+
+/// "This is the one": a right label opens the boxes; a wrong one is noted, and nothing opens.
+fn label(visit: &Visit) -> Outcome {
+    let loaded = load::load(visit, visit.id("id")?)?;
+    knows(visit, &["form_token", "submission", "label", "session"])?;
+    match acts::reading::check_label(visit.db(), visit.actor()?, loaded.sample.id, &loaded.label) {
+        Ok(()) => see(format!("/tests/{}{}", loaded.test.id, query(visit, &loaded))),
+        Err(Failure::Refused(_)) => test_page(409, visit, &loaded, &Said::default(), None),
+        Err(other) => Err(other),
+    }
+}
+
+/// A field that the form does not have is refused (sec_S53).
+pub(super) fn knows(visit: &Visit, names: &[&str]) -> Result<(), Failure> {
+    match visit.form.iter().find(|(name, _)| !names.contains(name)) {
+        Some((name, _)) => Err(Failure::BadRequest(format!("This form has no field “{name}”."))),
+        None => Ok(()),
+    }
 }
 
 /// Records what the form says: corrections first, each with its own reason, then the new values in one act.
@@ -179,10 +199,7 @@ fn conflict(visit: &Visit, loaded: &Loaded, taken: &Taken, stale: Stale) -> Outc
 fn answer(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
     let loaded = load::load(visit, id)?;
-    const KNOWN: [&str; 5] = ["form_token", "submission", "label", "session", "answer"];
-    if let Some((name, _)) = visit.form.iter().find(|(name, _)| !KNOWN.contains(name)) {
-        return Err(Failure::BadRequest(format!("This form has no field “{name}”.")));
-    }
+    knows(visit, &["form_token", "submission", "label", "session", "answer"])?;
     let reading = visit.form.get("answer").and_then(|text| text.parse().ok());
     let Some(reading) = reading else { return Err(Failure::missing("question with this number")) };
     match acts::reading::keep(visit.db(), visit.actor()?, id, reading) {

@@ -8,7 +8,7 @@ use super::form::{self, Form, Typed};
 use super::page::Shell;
 use super::pairs::encoded;
 use super::part::{StatusMark, Trail};
-use super::reply::{Outcome, page_with};
+use super::reply::{Outcome, page_with, see};
 use super::route::{Route, get, post};
 use super::show;
 use super::visit::Visit;
@@ -31,6 +31,7 @@ pub const ROUTES: &[Route] = &[
     get("/samples/new", new_page),
     post("/samples/new", &[Act::ReceiveSample], receive),
     get("/samples/{id}", sample).at_bench(),
+    post("/samples/{id}/label", &[Act::RecordReadings], check_label).at_bench(),
     post("/samples/{id}/stages", &[Act::CloseStage], close_stage).at_bench(),
 ];
 
@@ -165,6 +166,7 @@ struct SamplePage {
     labels: String,
     label: String,
     wrong_label: String,
+    submission: String,
     asks_label: bool,
     stages: Vec<StageBlock>,
     close: Option<Form>,
@@ -185,7 +187,8 @@ fn sample_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Out
             store::trail::of_subject(reader, Subject::new(Kind::Sample, id))?,
         ))
     })?;
-    let label = visit.query.get("label").unwrap_or_default().trim().to_string();
+    let asked = visit.form.get("label").or_else(|| visit.query.get("label"));
+    let label = asked.unwrap_or_default().trim().to_string();
     let is_right = labelled(&label, &sample.number, &sample.containers).is_some();
     let wrong_label = match label.is_empty() || is_right {
         true => String::new(),
@@ -204,6 +207,7 @@ fn sample_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Out
     let is_open = sample.tests.iter().any(|test| !test.is_complete());
     let status = if wrong_label.is_empty() { status } else { 409 };
     let page = SamplePage {
+        submission: acts::secret::token()?,
         place: place(&sample),
         receipt: receipt_facts(&sample, receipt),
         labels: sample.containers.iter().map(|one| short_label(&one.label)).collect::<Vec<_>>().join(", "),
@@ -221,6 +225,19 @@ fn sample_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Out
         close,
     };
     page_with(status, &page)
+}
+
+/// A right label leads to the tasks; a wrong one is noted in the sample's history.
+fn check_label(visit: &Visit) -> Outcome {
+    let id = visit.id("id")?;
+    visit.read(|reader| store::bench::sample(reader, id))?;
+    super::reading::knows(visit, &["form_token", "submission", "label"])?;
+    let label = visit.form.get("label").unwrap_or_default().trim();
+    match acts::reading::check_label(visit.db(), visit.actor()?, id, label) {
+        Ok(()) => see(format!("/samples/{id}?label={}", encoded(label))),
+        Err(Failure::Refused(_)) => sample_page(409, visit, id, None),
+        Err(other) => Err(other),
+    }
 }
 
 fn receipt_facts(sample: &BenchSample, receipt: store::sample::Receipt) -> Vec<(&'static str, String)> {

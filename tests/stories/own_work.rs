@@ -125,3 +125,37 @@ fn a_wrong_label_at_the_bench_is_noted() {
     is_noted(&lab, "RecordPull", "TW-999-0001");
     lab.manager().sees(&page, "took a pull — refused");
 }
+
+/// The identity check before any number is a form of its own: opening a page writes nothing, a wrong label typed
+/// there stands in the sample's history (screen_U68).
+#[test]
+fn a_wrong_label_before_any_number_is_noted_and_a_right_one_opens_the_test() {
+    let lab = Lab::new();
+    let (sample, tests, label) =
+        crate::benches::at_bench(&lab, &[supernate::domain::method::TestKind::Appearance]);
+    let (test, of_sample) = (format!("/tests/{}", tests[0]), format!("/samples/{sample}"));
+    let analyst = lab.analyst();
+    for page in [&test, &of_sample] {
+        let check = format!("{page}/label");
+        analyst.get(page);
+        let before = lab.app.db.read(supernate::store::trail::head).unwrap();
+        analyst.get(&format!("{page}?label=TW-999-R1"));
+        analyst.submits(page, &check, &[("label", "")]);
+        assert_eq!(lab.app.db.read(supernate::store::trail::head).unwrap(), before);
+        let wrong = analyst.submits(page, &check, &[("label", "TW-999-R1")]);
+        assert_eq!(wrong.status, 409, "{}", wrong.text());
+        assert!(wrong.text().contains("“TW-999-R1” is not a label of"), "{}", wrong.text());
+        assert!(!wrong.html().contains("data-record-each"));
+        is_noted(&lab, "RecordReadings", "TW-999-R1");
+        let right = analyst.submits(page, &check, &[("label", &label)]);
+        let wanted = format!("{page}?label={}", label.replace('-', "%2D"));
+        assert_eq!(
+            (right.status, right.location.as_deref()),
+            (303, Some(wanted.as_str())),
+            "{}",
+            right.text()
+        );
+    }
+    lab.manager().sees(&of_sample, "recorded readings — refused");
+    assert!(analyst.get(&format!("{test}?label={label}")).html().contains("data-record-each"));
+}

@@ -119,6 +119,9 @@ fn where_something_is_open(lab: &Lab) -> Vec<Open> {
     let page = made.split(['/', '?']).take(3).collect::<Vec<_>>().join("/");
     open.push(("/protocol-versions/{id}/arms", format!("{page}/arms"), Vec::new()));
     open.push(("/protocol-versions/{id}/matrix", format!("{page}/matrix"), Vec::new()));
+    let named = [("code", "M-LOOK"), ("name", "Look of the bottle")];
+    let made = lab.manager().does("/methods/new?kind=appearance", "/methods/new", &named).location.unwrap();
+    open.push(("/method-versions/{id}/photos", format!("{made}/photos"), Vec::new()));
     open.push(("/methods/new", "/methods/new".to_string(), vec![("kind", "ph".to_string())]));
     let lot = lab.app.db.read(|reader| supernate::store::study::get(reader, 1)).unwrap().lot.to_string();
     let study = vec![("lot", lot), ("protocol_version", "1".to_string())];
