@@ -23,7 +23,7 @@ use supernate::domain::failure::Failure;
 use supernate::domain::moment::Moment;
 use supernate::domain::reason::Reason;
 use supernate::store::door::{Db, Durability};
-use supernate::store::pull::Show;
+use supernate::store::open_pull::Counts;
 use supernate::store::{self, Answer, Reader, bulk};
 use supernate::web::app::App;
 use supernate::web::serve::router;
@@ -173,9 +173,8 @@ fn page_ms(path: &Path, page: &str) -> Result<f64, Failure> {
 }
 
 /// The counts of the week page.
-fn counted(reader: &Reader<'_>, today: NaiveDate) -> Answer<usize> {
-    let shows = [Show::Late, Show::Closing, Show::Week, Show::InTest, Show::Urgent, Show::Coming];
-    shows.into_iter().map(|show| store::pull::count(reader, show, today)).sum()
+fn counted(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
+    store::open_pull::counts(reader, today)
 }
 
 fn count_us(path: &Path) -> Result<f64, Failure> {

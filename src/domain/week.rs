@@ -42,6 +42,11 @@ pub fn coming_weeks(today: NaiveDate) -> Vec<(NaiveDate, NaiveDate)> {
     (1..=COMING_WEEKS).map(week).collect()
 }
 
+/// The last day of the coming weeks.
+pub fn coming_end(today: NaiveDate) -> NaiveDate {
+    plus_days(today, DAYS * (COMING_WEEKS + 1) - 1)
+}
+
 /// A cylinder that was filled and shaken, with the minutes at which it is read and those read already.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Cylinder {

@@ -27,6 +27,7 @@ pub mod material;
 pub mod material_lot;
 pub mod method;
 pub mod migrate;
+pub mod open_pull;
 pub mod product;
 pub mod protocol;
 pub mod pull;

@@ -5,7 +5,6 @@ use rusqlite::{Row, named_params};
 
 use super::door::Change;
 use super::{Answer, Day, Reader};
-use crate::domain::moment::{date_stored, plus_days};
 use crate::domain::pull::{Event, Progress, PullFacts};
 use crate::domain::window::Window;
 
@@ -42,16 +41,6 @@ pub struct Pull {
 }
 
 impl Pull {
-    /// Its place in a list of pulls that ask for work.
-    pub fn after(&self) -> After {
-        let facts = &self.facts;
-        let last = match (facts.happened_on, self.test_within_days) {
-            (Some(on), Some(days)) => Some(plus_days(on, days)),
-            _ => facts.latest_on.or(facts.due_on),
-        };
-        After { latest_on: last.map(date_stored).unwrap_or_default(), pull: self.id }
-    }
-
     pub fn window(&self) -> Option<Window> {
         let (earliest_on, latest_on) = (self.facts.earliest_on?, self.facts.latest_on?);
         Some(Window { earliest_on, latest_on })
@@ -201,117 +190,6 @@ pub fn of_study(reader: &Reader<'_>, study: i64) -> Answer<Vec<Pull>> {
     let choice = "select p.id from study_arm a join pull p on p.study_arm = a.id where a.study = :study";
     let order = "order by a.position, coalesce(p.due_on, ''), p.age_months, p.age_days, p.id";
     reader.all(&select(choice, order), named_params! { ":study": study }, from_row)
-}
-
-/// Which pulls a list of work shows; each is one range of an index.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Show {
-    /// To take, and the window has closed.
-    Late,
-    /// To take, and the window closes today or tomorrow.
-    Closing,
-    /// To take, due within seven days from today or with an open window, and not late.
-    Week,
-    /// Taken, and not all tests have their result.
-    InTest,
-    /// To take or in testing, and the last day for it is tomorrow or before.
-    Urgent,
-    /// To take, due in the 28 days after the week.
-    Coming,
-    /// Everything that is to be taken.
-    ToTake,
-}
-
-/// The ranges are written with the site's dates as :today, :tomorrow, :week_end and :coming_end.
-fn range(show: Show) -> &'static str {
-    match show {
-        Show::Late => {
-            "select pull from open_pull where stage = 'to take' and latest_on < :today and due_on < :today"
-        }
-        Show::Closing => {
-            "select pull from open_pull
-             where stage = 'to take' and latest_on between :today and :tomorrow and due_on <= :tomorrow"
-        }
-        Show::Week => {
-            "select pull from open_pull
-             where stage = 'to take' and due_on <= :week_end and latest_on >= :today"
-        }
-        Show::InTest => "select pull from open_pull where stage = 'in test'",
-        Show::Urgent => {
-            "select pull from open_pull
-             where stage in ('to take', 'in test') and latest_on <= :tomorrow and due_on <= :tomorrow"
-        }
-        Show::Coming => {
-            "select pull from open_pull
-             where stage = 'to take' and due_on > :week_end and due_on <= :coming_end"
-        }
-        Show::ToTake => "select pull from open_pull where stage = 'to take'",
-    }
-}
-
-/// Keeps the names of all dates used, so that every range takes the same parameters.
-const DATES: &str = "and :today || :tomorrow || :week_end || :coming_end is not null";
-
-fn dates(today: NaiveDate) -> [Day; 4] {
-    [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
-}
-
-/// The place in a list after which it goes on: paging by key.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct After {
-    pub latest_on: String,
-    pub pull: i64,
-}
-
-impl After {
-    /// `2026-12-08.17`, for an address.
-    pub fn text(&self) -> String {
-        format!("{}.{}", self.latest_on, self.pull)
-    }
-
-    pub fn from_text(text: &str) -> Option<After> {
-        let (latest_on, pull) = text.split_once('.')?;
-        Some(After { latest_on: latest_on.to_string(), pull: pull.parse().ok()? })
-    }
-}
-
-/// The pulls of a list from a place on, the one whose last day comes first first.
-pub fn list(
-    reader: &Reader<'_>,
-    show: Show,
-    today: NaiveDate,
-    after: Option<&After>,
-    limit: i64,
-) -> Answer<Vec<Pull>> {
-    let [today, tomorrow, week_end, coming_end] = dates(today);
-    let choice = format!(
-        "{} {DATES} and (latest_on, pull) > (:after_on, :after_pull) order by latest_on, pull limit :limit",
-        range(show)
-    );
-    let order = "order by (select latest_on from open_pull where pull = p.id), p.id";
-    let params = named_params! {
-        ":today": today,
-        ":tomorrow": tomorrow,
-        ":week_end": week_end,
-        ":coming_end": coming_end,
-        ":after_on": after.map(|after| after.latest_on.as_str()).unwrap_or_default(),
-        ":after_pull": after.map_or(0, |after| after.pull),
-        ":limit": limit,
-    };
-    reader.all(&select(&choice, order), params, from_row)
-}
-
-/// How many rows [`list`] has without a limit.
-pub fn count(reader: &Reader<'_>, show: Show, today: NaiveDate) -> Answer<usize> {
-    let [today, tomorrow, week_end, coming_end] = dates(today);
-    let days =
-        range(show).replace("select pull from open_pull", "select coalesce(sum(pulls), 0) from open_day");
-    let sql = format!("{days} {DATES}");
-    let params = named_params! {
-        ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
-    };
-    let count: i64 = reader.one("count", &sql, params, |row| row.get(0))?;
-    Ok(usize::try_from(count).unwrap_or_default())
 }
 
 pub fn insert_event(

@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 15] = [
+pub const TECHNICAL_TABLES: [&str; 17] = [
     "trail_act",
     "trail_change",
     "trail_seal",
@@ -25,6 +25,8 @@ pub const TECHNICAL_TABLES: [&str; 15] = [
     "refinery_schema_history",
     "open_pull",
     "open_day",
+    "open_line",
+    "arm_stock",
     "open_sample",
     "open_check",
 ];

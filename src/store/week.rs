@@ -35,15 +35,15 @@ pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Ve
     )
 }
 
-/// Pulls due between two days and their minutes.
-pub fn between(reader: &Reader<'_>, first: NaiveDate, last: NaiveDate) -> Answer<(usize, u32)> {
-    reader.one(
-        "sum",
-        "select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0)
+/// The days between two on which something is due, with the sums of all that is.
+pub fn due_days(reader: &Reader<'_>, first: NaiveDate, last: NaiveDate) -> Answer<Vec<DaySum>> {
+    reader.all(
+        "select due_on, sum(pulls), sum(minutes)
          from open_day
-         where stage = 'to take' and due_on between :first and :last",
+         where stage = 'to take' and due_on between :first and :last
+         group by due_on",
         named_params! { ":first": Day(first), ":last": Day(last) },
-        |row| Ok((count(row.get(0)?), row.get(1)?)),
+        |row| Ok(DaySum { on: row.get::<_, Day>(0)?.0, pulls: count(row.get(1)?), minutes: row.get(2)? }),
     )
 }
 

@@ -24,7 +24,7 @@ static SEEN: Mutex<BTreeSet<String>> = Mutex::new(BTreeSet::new());
 static WRITTEN: Mutex<BTreeMap<String, i32>> = Mutex::new(BTreeMap::new());
 
 /// Tables with a row per lot, pull, test, reading, act or visit.
-const GROWING: [&str; 35] = [
+const GROWING: [&str; 36] = [
     "attachment",
     "container",
     "container_event",
@@ -36,6 +36,7 @@ const GROWING: [&str; 35] = [
     "lot",
     "lot_decision",
     "lot_distribution",
+    "open_line",
     "open_pull",
     "photo_mark",
     "pull",

@@ -129,8 +129,7 @@ fn folder_with_boxes() -> (Scratch, Vec<Place>) {
         }
     }
     lab.app.db.settle().unwrap();
-    let Lab { folder, .. } = lab;
-    (folder, places)
+    (lab.into_folder(), places)
 }
 
 /// Fault test F1 in small: kill -9 while 100 readings are posted, restart, post them all again.

@@ -317,8 +317,8 @@ fn a_pull_asks_for_work_until_every_test_has_its_result() {
         let other = world::pull(&lab, study, 3, "Initial");
         assert_eq!(other.facts.progress.started, 0);
         let in_test =
-            lab.app.db.read(|reader| store::pull::count(reader, store::pull::Show::InTest, lab.now().date()));
-        (found.facts.progress.started, found.facts.progress.complete, in_test.unwrap())
+            lab.app.db.read(|reader| store::open_pull::counts(reader, lab.now().date())).unwrap().in_test;
+        (found.facts.progress.started, found.facts.progress.complete, in_test)
     };
     assert_eq!(now(), (0, 0, 1));
     reads(&lab, sample, &label, 0..1);

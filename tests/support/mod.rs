@@ -23,6 +23,7 @@ use supernate::domain::moment::Moment;
 use supernate::domain::role::Role;
 use supernate::store;
 use supernate::store::door::{Db, Durability};
+use supernate::store::open_pull::Show;
 use supernate::store::site::Site;
 use supernate::web::app::App;
 use supernate::web::serve::router;
@@ -119,12 +120,39 @@ pub struct Lab {
     sessions: Mutex<Vec<(String, String)>>,
 }
 
+/// Whatever a story did: the derived rows of the lists say what the records of each open pull say.
+impl Drop for Lab {
+    fn drop(&mut self) {
+        if std::thread::panicking() {
+            return;
+        }
+        let today = self.now().date();
+        let pairs = self.app.db.read(|reader| {
+            let mut pairs = Vec::new();
+            for show in [Show::ToTake, Show::InTest] {
+                for pull in store::open_pull::list(reader, show, today, None, 10_000)? {
+                    pairs.push((store::pull::get(reader, pull.id)?, pull));
+                }
+            }
+            Ok(pairs)
+        });
+        for (record, listed) in pairs.unwrap_or_default() {
+            assert_eq!(record, listed);
+        }
+    }
+}
+
 impl Lab {
     pub fn new() -> Lab {
         let folder = Scratch::new();
         let path = folder.0.join("supernate.sqlite");
         std::fs::write(&path, &*TEMPLATE).unwrap();
         Lab::over(folder)
+    }
+
+    /// The laboratory closes; its folder stays.
+    pub fn into_folder(mut self) -> Scratch {
+        std::mem::replace(&mut self.folder, Scratch(PathBuf::new()))
     }
 
     /// A laboratory over a folder that exists.

@@ -50,8 +50,16 @@ pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     }
     listen::is_free(arguments.listen)?;
     clear(&arguments.data)?;
-    let now = chrono::Utc::now();
-    let mut opened = folder::open(&arguments.data, Durability::Off)?;
+    let (opened, site, people) = make(&arguments.data, chrono::Utc::now())?;
+    serve::serve(opened, site, arguments.listen, None, people.clone(), |address| tell(address, &people))
+}
+
+/// Makes the demo in a fresh folder, as it stands at an instant: its site, its people and the whole scenario.
+pub fn make(
+    path: &std::path::Path,
+    now: chrono::DateTime<chrono::Utc>,
+) -> Result<(folder::Folder, Site, Vec<DemoPerson>), Failure> {
+    let mut opened = folder::open(path, Durability::Off)?;
     let site = Site {
         name: "Tarnwick Suspension Works".to_string(),
         zone: chrono_tz::Europe::London,
@@ -64,7 +72,7 @@ pub fn run(arguments: &Arguments) -> Result<(), Failure> {
     let people = make_people(&opened, &seed, &console)?;
     play(&opened, &seed, Moment::new(now, site.zone))?;
     opened.db.settle()?;
-    serve::serve(opened, site, arguments.listen, None, people.clone(), |address| tell(address, &people))
+    Ok((opened, site, people))
 }
 
 /// Removes an earlier demo folder; refuses one that is not a demo.

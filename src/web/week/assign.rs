@@ -9,7 +9,8 @@ use super::MOST_ROWS;
 use crate::acts;
 use crate::domain::failure::Failure;
 use crate::store;
-use crate::store::pull::{Pull, Show};
+use crate::store::open_pull::Show;
+use crate::store::pull::Pull;
 
 const TITLE: &str = "Give pulls to a person";
 const LEAD: &str = "The late pulls and those of the next seven days, the last day that comes first on top. Who has \
@@ -19,8 +20,8 @@ const LEAD: &str = "The late pulls and those of the next seven days, the last da
 fn offered(visit: &Visit) -> Result<Vec<Pull>, Failure> {
     let today = visit.at.date();
     visit.read(|reader| {
-        let mut found = store::pull::list(reader, Show::Late, today, None, MOST_ROWS)?;
-        found.extend(store::pull::list(reader, Show::Week, today, None, MOST_ROWS)?);
+        let mut found = store::open_pull::list(reader, Show::Late, today, None, MOST_ROWS)?;
+        found.extend(store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS)?);
         Ok(found)
     })
 }

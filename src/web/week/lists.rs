@@ -13,7 +13,8 @@ use crate::domain::failure::Failure;
 use crate::domain::week;
 use crate::report::calendar;
 use crate::store;
-use crate::store::pull::{After, Pull, Show};
+use crate::store::open_pull::{After, Show};
+use crate::store::pull::Pull;
 
 const PAGE: i64 = 50;
 /// Events of the calendar file and lines of the printed list.
@@ -46,18 +47,22 @@ pub(super) fn pulls(visit: &Visit) -> Outcome {
     let today = visit.at.date();
     let after = visit.query.get("after").and_then(After::from_text);
     let (count, mut found) = visit.read(|reader| {
-        let count = store::pull::count(reader, list, today)?;
-        Ok((count, store::pull::list(reader, list, today, after.as_ref(), PAGE + 1)?))
+        let counts = store::open_pull::counts(reader, today)?;
+        Ok((
+            counts.of(list).unwrap_or_default(),
+            store::open_pull::list(reader, list, today, after.as_ref(), PAGE + 1)?,
+        ))
     })?;
     let has_more = found.len() as i64 > PAGE;
     found.truncate(PAGE as usize);
     let last = found.last().filter(|_| has_more);
-    let next = last.map(|pull| format!("/week/pulls?show={word}&after={}", pull.after().text()));
+    let next = last.map(|pull| format!("/week/pulls?show={word}&after={}", After::of(pull, list).text()));
     page(&PullsPage {
         shell: Shell::of(visit, heading).crumb("/week", "Week"),
         lead: format!(
-            "{} in all, the last day that comes first on top.",
-            show::counted(count, "pull", "pulls")
+            "{} in all, {} on top.",
+            show::counted(count, "pull", "pulls"),
+            if list.is_by_due_date() { "the first due" } else { "the last day that comes first" }
         ),
         rows: found.iter().map(|pull| row(pull, today)).collect(),
         next,
@@ -66,7 +71,7 @@ pub(super) fn pulls(visit: &Visit) -> Outcome {
 
 fn due(visit: &Visit, list: Show) -> Result<Vec<Pull>, Failure> {
     let today = visit.at.date();
-    visit.read(|reader| store::pull::list(reader, list, today, None, MOST))
+    visit.read(|reader| store::open_pull::list(reader, list, today, None, MOST))
 }
 
 #[derive(Template)]

@@ -20,8 +20,9 @@ use crate::domain::moment::{date_shown, plus_days};
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::week;
 use crate::store;
-use crate::store::pull::{Pull, Show};
-use crate::store::week::{OpenCylinder, PersonDay};
+use crate::store::open_pull::{Counts, Show};
+use crate::store::pull::Pull;
+use crate::store::week::{DaySum, OpenCylinder, PersonDay};
 
 pub const ROUTES: &[Route] = &[
     get("/week", the_week),
@@ -113,13 +114,13 @@ struct PersonView {
 
 /// Everything the page asks the store, in one snapshot.
 struct Facts {
-    counts: [usize; 4],
+    counts: Counts,
     to_check: usize,
     urgent: Vec<Pull>,
     pulls: Vec<Pull>,
-    sums: Vec<store::week::DaySum>,
+    sums: Vec<DaySum>,
     people: Vec<PersonDay>,
-    coming: Vec<(NaiveDate, NaiveDate, usize, u32)>,
+    coming: Vec<DaySum>,
     cylinders: Vec<OpenCylinder>,
     next: Option<(NaiveDate, i64, String)>,
 }
@@ -127,21 +128,14 @@ struct Facts {
 fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
     let last = plus_days(today, week::DAYS - 1);
     visit.read(|reader| {
-        let count = |show| store::pull::count(reader, show, today);
-        let counts = [count(Show::Week)?, count(Show::Late)?, count(Show::Closing)?, count(Show::InTest)?];
-        let mut coming = Vec::new();
-        for (first, last) in week::coming_weeks(today) {
-            let (pulls, minutes) = store::week::between(reader, first, last)?;
-            coming.push((first, last, pulls, minutes));
-        }
         Ok(Facts {
-            counts,
+            counts: store::open_pull::counts(reader, today)?,
             to_check: store::check::count_waiting(reader)?,
-            urgent: store::pull::list(reader, Show::Urgent, today, None, MOST_ROWS)?,
-            pulls: store::pull::list(reader, Show::Week, today, None, MOST_ROWS)?,
+            urgent: store::open_pull::list(reader, Show::Urgent, today, None, MOST_ROWS)?,
+            pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS)?,
             sums: store::week::days(reader, today, last)?,
             people: store::week::people(reader, today, last)?,
-            coming,
+            coming: store::week::due_days(reader, plus_days(last, 1), week::coming_end(today))?,
             cylinders: store::week::cylinders(reader, visit.at.zone)?,
             next: store::week::next(reader, last)?,
         })
@@ -172,7 +166,7 @@ struct WeekPage {
 fn the_week(visit: &Visit) -> Outcome {
     let today = visit.at.date();
     let facts = facts(visit, today)?;
-    let [in_week, late, closing, in_test] = facts.counts;
+    let Counts { week: in_week, late, closing, in_test, .. } = facts.counts;
     let days = days(&facts, today);
     let pulls = |count: usize| show::counted(count, "pull", "pulls");
     let are = |count: usize, words: &str| match count {
@@ -201,7 +195,7 @@ fn the_week(visit: &Visit) -> Outcome {
         days,
         day_heads: week::days(today).into_iter().map(short_day).collect(),
         people: people(&facts.people, today),
-        coming: facts.coming.iter().map(coming).collect(),
+        coming: coming(&facts.coming, today),
         is_cut: in_week > facts.pulls.len(),
     })
 }
@@ -214,10 +208,14 @@ fn short_day(day: NaiveDate) -> String {
     format!("{} {number}", weekday.chars().take(3).collect::<String>())
 }
 
-fn coming(line: &(NaiveDate, NaiveDate, usize, u32)) -> (String, usize, String) {
-    let (first, last, pulls, minutes) = line;
-    let window = crate::domain::window::Window { earliest_on: *first, latest_on: *last };
-    (window.words(), *pulls, minutes_words(*minutes))
+fn coming(days: &[DaySum], today: NaiveDate) -> Vec<(String, usize, String)> {
+    let week = |(first, last): (NaiveDate, NaiveDate)| {
+        let within: Vec<&DaySum> = days.iter().filter(|day| first <= day.on && day.on <= last).collect();
+        let window = crate::domain::window::Window { earliest_on: first, latest_on: last };
+        let minutes = minutes_words(within.iter().map(|day| day.minutes).sum());
+        (window.words(), within.iter().map(|day| day.pulls).sum(), minutes)
+    };
+    week::coming_weeks(today).into_iter().map(week).collect()
 }
 
 fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView> {

@@ -1,0 +1,287 @@
+//! The pulls that still ask for work: their lists and their counts, from one derived row each.
+
+use chrono::NaiveDate;
+use rusqlite::{Row, named_params};
+
+use super::pull::Pull;
+use super::{Answer, Day, Reader};
+use crate::domain::moment::{date_stored, plus_days};
+use crate::domain::pull::{Event, Progress, PullFacts};
+
+/// Which pulls a list of work shows; each is one range of an index.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Show {
+    /// To take, and the window has closed.
+    Late,
+    /// To take, and the window closes today or tomorrow.
+    Closing,
+    /// To take, due within seven days from today or with an open window, and not late.
+    Week,
+    /// Taken, and not all tests have their result.
+    InTest,
+    /// To take or in testing, and the last day for it is tomorrow or before.
+    Urgent,
+    /// To take, due in the 28 days after the week.
+    Coming,
+    /// Everything that is to be taken.
+    ToTake,
+}
+
+impl Show {
+    /// Whether its list goes by the due date; the others go by the last day.
+    pub fn is_by_due_date(self) -> bool {
+        matches!(self, Show::Week | Show::Coming | Show::ToTake)
+    }
+}
+
+/// The place in a list after which it goes on: paging by key.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct After {
+    pub on: String,
+    pub pull: i64,
+}
+
+impl After {
+    /// The place of a pull in a list.
+    pub fn of(pull: &Pull, show: Show) -> After {
+        let facts = &pull.facts;
+        let on = match (facts.happened_on, pull.test_within_days) {
+            _ if show.is_by_due_date() => facts.due_on,
+            (Some(on), days) => Some(plus_days(on, days.unwrap_or(0))),
+            _ => facts.latest_on.or(facts.due_on),
+        };
+        After { on: on.map(date_stored).unwrap_or_default(), pull: pull.id }
+    }
+
+    /// `2026-12-08.17`, for an address.
+    pub fn text(&self) -> String {
+        format!("{}.{}", self.on, self.pull)
+    }
+
+    pub fn from_text(text: &str) -> Option<After> {
+        let (on, pull) = text.split_once('.')?;
+        Some(After { on: on.to_string(), pull: pull.parse().ok()? })
+    }
+}
+
+/// The chosen pulls with the day a list goes by. The plus signs keep a range on the index of its order: a list of
+/// fifty never sorts what stands behind it.
+fn chosen(show: Show) -> &'static str {
+    match show {
+        Show::Late => {
+            "select pull, latest_on, account from open_pull
+             where stage = 'to take' and latest_on < :today and +due_on < :today
+                 and (latest_on, pull) > (:after_on, :after_pull)
+             order by latest_on, pull limit :limit"
+        }
+        Show::Closing => {
+            "select pull, latest_on, account from open_pull
+             where stage = 'to take' and latest_on between :today and :tomorrow and +due_on <= :tomorrow
+                 and (latest_on, pull) > (:after_on, :after_pull)
+             order by latest_on, pull limit :limit"
+        }
+        Show::InTest => {
+            "select pull, latest_on, account from open_pull
+             where stage = 'in test' and (latest_on, pull) > (:after_on, :after_pull)
+             order by latest_on, pull limit :limit"
+        }
+        Show::Urgent => {
+            "select * from (
+                 select * from (
+                     select pull, latest_on, account from open_pull
+                     where stage = 'to take' and latest_on <= :tomorrow and +due_on <= :tomorrow
+                         and (latest_on, pull) > (:after_on, :after_pull)
+                     order by latest_on, pull limit :limit)
+                 union all
+                 select * from (
+                     select pull, latest_on, account from open_pull
+                     where stage = 'in test' and latest_on <= :tomorrow and +due_on <= :tomorrow
+                         and (latest_on, pull) > (:after_on, :after_pull)
+                     order by latest_on, pull limit :limit))
+             order by latest_on, pull limit :limit"
+        }
+        Show::Week => {
+            "select pull, due_on, account from open_pull
+             where stage = 'to take' and due_on <= :week_end and +latest_on >= :today
+                 and (due_on, pull) > (:after_on, :after_pull)
+             order by due_on, pull limit :limit"
+        }
+        Show::Coming => {
+            "select pull, due_on, account from open_pull
+             where stage = 'to take' and due_on > :week_end and due_on <= :coming_end
+                 and (due_on, pull) > (:after_on, :after_pull)
+             order by due_on, pull limit :limit"
+        }
+        Show::ToTake => {
+            "select pull, due_on, account from open_pull
+             where stage = 'to take' and (due_on, pull) > (:after_on, :after_pull)
+             order by due_on, pull limit :limit"
+        }
+    }
+}
+
+fn dates(today: NaiveDate) -> [Day; 4] {
+    [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
+}
+
+const LINE: &str =
+    "select l.pull, l.sample, l.number, l.study, l.study_number, l.study_arm, l.arm_position, l.lot,
+        l.lot_number, l.product_words, l.container_word, l.condition_name, l.orientation, l.chamber_code,
+        l.chamber_location, l.age_text, l.containers_taken, coalesce(k.containers_left, 0), chosen.account,
+        g.full_name, (select minutes from open_pull where pull = l.pull), l.test_within_days, l.uuid, l.event,
+        l.happened_on, l.started_on, l.due_on, l.earliest_on, l.latest_on, l.is_last, l.containers_needed,
+        l.tests, l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
+    from chosen
+    cross join open_line l on l.pull = chosen.pull
+    left join arm_stock k on k.study_arm = l.study_arm
+    left join account g on g.id = chosen.account";
+
+/// The pulls of a list from a place on: by their last day or, where the list goes by it, their due date.
+pub fn list(
+    reader: &Reader<'_>,
+    show: Show,
+    today: NaiveDate,
+    after: Option<&After>,
+    limit: i64,
+) -> Answer<Vec<Pull>> {
+    let [today, tomorrow, week_end, coming_end] = dates(today);
+    let sql = format!(
+        "with dates as (select :today, :tomorrow, :week_end, :coming_end),
+         chosen (pull, day, account) as materialized ({}) {LINE}",
+        chosen(show)
+    );
+    let params = named_params! {
+        ":today": today,
+        ":tomorrow": tomorrow,
+        ":week_end": week_end,
+        ":coming_end": coming_end,
+        ":after_on": after.map(|after| after.on.as_str()).unwrap_or_default(),
+        ":after_pull": after.map_or(0, |after| after.pull),
+        ":limit": limit,
+    };
+    let mut pulls = reader.all(&sql, params, from_row)?;
+    pulls.sort_by_cached_key(|pull| {
+        let place = After::of(pull, show);
+        (place.on, place.pull)
+    });
+    Ok(pulls)
+}
+
+fn from_row(row: &Row<'_>) -> rusqlite::Result<Pull> {
+    Ok(Pull {
+        id: row.get(0)?,
+        sample: row.get(1)?,
+        number: row.get(2)?,
+        study: row.get(3)?,
+        study_number: row.get(4)?,
+        study_arm: row.get(5)?,
+        arm_position: row.get(6)?,
+        lot: row.get(7)?,
+        lot_number: row.get(8)?,
+        product_words: row.get(9)?,
+        container_word: row.get(10)?,
+        condition_name: row.get(11)?,
+        orientation: row.get(12)?,
+        chamber_code: row.get(13)?,
+        chamber_location: row.get(14)?,
+        age_text: row.get(15)?,
+        containers_taken: row.get(16)?,
+        containers_left: row.get(17)?,
+        assigned: row.get(18)?,
+        assigned_name: row.get(19)?,
+        minutes: row.get(20)?,
+        test_within_days: row.get(21)?,
+        uuid: row.get(22)?,
+        facts: facts_from_row(row)?,
+    })
+}
+
+fn facts_from_row(row: &Row<'_>) -> rusqlite::Result<PullFacts> {
+    let day = |at: usize| Ok::<_, rusqlite::Error>(row.get::<_, Option<Day>>(at)?.map(|day| day.0));
+    let count = |at: usize| Ok::<_, rusqlite::Error>(usize::try_from(row.get::<_, i64>(at)?).unwrap_or(0));
+    let event = row.get_ref(23)?.as_str_or_null().map_err(rusqlite::Error::from)?;
+    Ok(PullFacts {
+        is_imported: false,
+        event: event.and_then(Event::from_words),
+        happened_on: day(24)?,
+        started_on: day(25)?,
+        due_on: day(26)?,
+        earliest_on: day(27)?,
+        latest_on: day(28)?,
+        is_last: row.get(29)?,
+        containers_needed: count(30)?,
+        progress: Progress {
+            tests: count(31)?,
+            started: count(32)?,
+            complete: count(33)?,
+            checked: count(34)?,
+            sent_back: count(35)?,
+            out_of_specification: count(36)?,
+        },
+        is_signed: false,
+    })
+}
+
+/// How many rows the lists have without a limit.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Counts {
+    pub late: usize,
+    pub closing: usize,
+    pub week: usize,
+    pub in_test: usize,
+    pub urgent: usize,
+    pub coming: usize,
+}
+
+impl Counts {
+    /// Of one list; none for [`Show::ToTake`], which no page counts.
+    pub fn of(&self, show: Show) -> Option<usize> {
+        match show {
+            Show::Late => Some(self.late),
+            Show::Closing => Some(self.closing),
+            Show::Week => Some(self.week),
+            Show::InTest => Some(self.in_test),
+            Show::Urgent => Some(self.urgent),
+            Show::Coming => Some(self.coming),
+            Show::ToTake => None,
+        }
+    }
+}
+
+/// All counts in one statement, from the sums by day.
+pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
+    let [today, tomorrow, week_end, coming_end] = dates(today);
+    let count = |row: &Row<'_>, at: usize| -> rusqlite::Result<usize> {
+        Ok(usize::try_from(row.get::<_, Option<i64>>(at)?.unwrap_or_default()).unwrap_or_default())
+    };
+    reader.one(
+        "counts",
+        "select
+            (select sum(pulls) from open_day
+             where stage = 'to take' and due_on < :today and latest_on < :today),
+            (select sum(pulls) from open_day
+             where stage = 'to take' and due_on <= :tomorrow and latest_on between :today and :tomorrow),
+            (select sum(pulls) from open_day
+             where stage = 'to take' and due_on <= :week_end and latest_on >= :today),
+            (select sum(pulls) from open_day where stage = 'in test'),
+            (select sum(pulls) from open_day
+             where stage = 'to take' and due_on <= :tomorrow and latest_on <= :tomorrow),
+            (select sum(pulls) from open_day
+             where stage = 'in test' and due_on <= :tomorrow and latest_on <= :tomorrow),
+            (select sum(pulls) from open_day
+             where stage = 'to take' and due_on > :week_end and due_on <= :coming_end)",
+        named_params! {
+            ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
+        },
+        |row| {
+            Ok(Counts {
+                late: count(row, 0)?,
+                closing: count(row, 1)?,
+                week: count(row, 2)?,
+                in_test: count(row, 3)?,
+                urgent: count(row, 4)? + count(row, 5)?,
+                coming: count(row, 6)?,
+            })
+        },
+    )
+}
