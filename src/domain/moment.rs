@@ -75,18 +75,50 @@ impl Moment {
     }
 }
 
+const MONTHS: [&str; 12] =
+    ["Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec"];
+
+/// `Mar`.
+pub fn month_shown(date: NaiveDate) -> &'static str {
+    MONTHS[date.month0() as usize]
+}
+
 /// `3 Mar 2027`: the one way a date is shown.
 pub fn date_shown(date: NaiveDate) -> String {
-    format!("{} {} {}", date.day(), date.format("%b"), date.year())
+    format!("{} {} {}", date.day(), month_shown(date), date.year())
 }
 
-/// `2027-03-03`, as stored.
+/// `2027-03-03`, as stored. Written digit by digit: lists of work show hundreds of dates.
 pub fn date_stored(date: NaiveDate) -> String {
-    date.format("%Y-%m-%d").to_string()
+    let Some(year) = u32::try_from(date.year()).ok().filter(|year| *year <= 9999) else {
+        return date.format("%Y-%m-%d").to_string();
+    };
+    let mut text = String::with_capacity(10);
+    let mut digits = |number: u32, ten: u32| {
+        let mut place = ten;
+        while place > 0 {
+            text.push(char::from(b'0' + (number / place % 10) as u8));
+            place /= 10;
+        }
+    };
+    digits(year, 1000);
+    digits(100 + date.month(), 10);
+    digits(100 + date.day(), 10);
+    text.insert(4, '-');
+    text.insert(7, '-');
+    text
 }
 
+/// Only what [`date_stored`] writes for the years 0 to 9999.
 pub fn date_from_stored(text: &str) -> Option<NaiveDate> {
-    NaiveDate::parse_from_str(text, "%Y-%m-%d").ok()
+    let [y0, y1, y2, y3, b'-', m0, m1, b'-', d0, d1] = *text.as_bytes() else { return None };
+    let number = |digits: &[u8]| {
+        digits
+            .iter()
+            .try_fold(0, |sum, digit| digit.is_ascii_digit().then(|| sum * 10 + u32::from(digit - b'0')))
+    };
+    let year = i32::try_from(number(&[y0, y1, y2, y3])?).ok()?;
+    NaiveDate::from_ymd_opt(year, number(&[m0, m1])?, number(&[d0, d1])?)
 }
 
 /// Adds calendar months; a day that does not exist becomes the last day of the month
@@ -139,6 +171,20 @@ mod tests {
         ];
         for (start, months, expected) in table {
             assert_eq!(plus_months(day(start), months), day(expected), "{start} + {months}");
+        }
+    }
+
+    #[test]
+    fn dates_are_stored_and_read_back_as_the_calendar_says() {
+        let first = NaiveDate::from_ymd_opt(1999, 12, 25).unwrap();
+        for days in (0..20_000).step_by(17) {
+            let date = plus_days(first, days);
+            assert_eq!(date_stored(date), date.format("%Y-%m-%d").to_string());
+            assert_eq!(date_from_stored(&date_stored(date)), Some(date));
+            assert_eq!(date_shown(date), date.format("%-d %b %Y").to_string());
+        }
+        for wrong in ["", "2027-3-03", "2027-02-29", "2027-13-01", "27-03-03", "2027/03/03", "2027-03-0é"] {
+            assert_eq!(date_from_stored(wrong), None, "{wrong}");
         }
     }
 

@@ -5,7 +5,7 @@
 use chrono::NaiveDate;
 
 use super::age::Age;
-use super::moment::{date_shown, plus_days};
+use super::moment::{date_shown, month_shown, plus_days};
 use super::setting::WINDOWS;
 
 /// First and last calendar date of the site on which a pull is in its window.
@@ -72,17 +72,21 @@ pub fn window(
 impl Window {
     /// `3–10 Mar 2027`, `28 Nov–2 Dec 2026`, `3 Mar 2027`.
     pub fn words(&self) -> String {
+        let (first, last) = self.ends();
+        first + &last
+    }
+
+    /// The words in two parts, so that a page can stress the last day: `3–` and `10 Mar 2027`.
+    pub fn ends(&self) -> (String, String) {
         use chrono::Datelike;
         let (first, last) = (self.earliest_on, self.latest_on);
-        if first == last {
-            return date_shown(last);
-        }
         let first_words = match (first.year() == last.year(), first.month() == last.month()) {
-            (true, true) => first.day().to_string(),
-            (true, false) => format!("{} {}", first.day(), first.format("%b")),
-            _ => date_shown(first),
+            _ if first == last => String::new(),
+            (true, true) => format!("{}–", first.day()),
+            (true, false) => format!("{} {}–", first.day(), month_shown(first)),
+            _ => date_shown(first) + "–",
         };
-        format!("{first_words}–{}", date_shown(last))
+        (first_words, date_shown(last))
     }
 }
 

@@ -6,6 +6,7 @@ use std::path::{Path, PathBuf};
 use std::sync::atomic::{AtomicI64, AtomicU64, Ordering};
 use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 
+use rusqlite::config::DbConfig;
 use rusqlite::{Connection, OpenFlags, Params};
 
 use super::{Answer, Reader, migrate, submission, trail, trigger};
@@ -297,7 +298,14 @@ fn prepare(connection: &Connection, durability: Durability) -> Answer<()> {
     let synchronous = if durability == Durability::Full { "FULL" } else { "OFF" };
     connection.pragma_update(None, "synchronous", synchronous)?;
     connection.set_limit(rusqlite::limits::Limit::SQLITE_LIMIT_ATTACHED, 0)?;
-    connection.set_db_config(rusqlite::config::DbConfig::SQLITE_DBCONFIG_DEFENSIVE, true)?;
+    connection.set_db_config(DbConfig::SQLITE_DBCONFIG_DEFENSIVE, true)?;
+    keep_statements(connection)
+}
+
+/// Statements are kept with their plans. Without the guarantee of stable plans SQLite would prepare a kept statement
+/// anew for other values, which costs more than most of them do.
+fn keep_statements(connection: &Connection) -> Answer<()> {
+    connection.set_db_config(DbConfig::SQLITE_DBCONFIG_ENABLE_QPSG, true)?;
     connection.set_prepared_statement_cache_capacity(256);
     Ok(())
 }
@@ -307,7 +315,7 @@ fn open_reader(path: &Path, current: &Arc<Current>) -> Answer<Connection> {
     let connection = Connection::open_with_flags(path, flags)?;
     connection
         .execute_batch("pragma query_only = on; pragma busy_timeout = 5000; pragma trusted_schema = off;")?;
-    connection.set_prepared_statement_cache_capacity(256);
+    keep_statements(&connection)?;
     trigger::register_functions(&connection, current)?;
     Ok(connection)
 }

@@ -44,13 +44,7 @@ pub struct After {
 impl After {
     /// The place of a pull in a list.
     pub fn of(pull: &Pull, show: Show) -> After {
-        let facts = &pull.facts;
-        let on = match (facts.happened_on, pull.test_within_days) {
-            _ if show.is_by_due_date() => facts.due_on,
-            (Some(on), days) => Some(plus_days(on, days.unwrap_or(0))),
-            _ => facts.latest_on.or(facts.due_on),
-        };
-        After { on: on.map(date_stored).unwrap_or_default(), pull: pull.id }
+        After { on: day_of(pull, show).map(date_stored).unwrap_or_default(), pull: pull.id }
     }
 
     /// `2026-12-08.17`, for an address.
@@ -61,6 +55,16 @@ impl After {
     pub fn from_text(text: &str) -> Option<After> {
         let (on, pull) = text.split_once('.')?;
         Some(After { on: on.to_string(), pull: pull.parse().ok()? })
+    }
+}
+
+/// The day a list goes by.
+fn day_of(pull: &Pull, show: Show) -> Option<NaiveDate> {
+    let facts = &pull.facts;
+    match (facts.happened_on, pull.test_within_days) {
+        _ if show.is_by_due_date() => facts.due_on,
+        (Some(on), days) => Some(plus_days(on, days.unwrap_or(0))),
+        _ => facts.latest_on.or(facts.due_on),
     }
 }
 
@@ -160,10 +164,7 @@ pub fn list(
         ":limit": limit,
     };
     let mut pulls = reader.all(&sql, params, from_row)?;
-    pulls.sort_by_cached_key(|pull| {
-        let place = After::of(pull, show);
-        (place.on, place.pull)
-    });
+    pulls.sort_by_key(|pull| (day_of(pull, show), pull.id));
     Ok(pulls)
 }
 

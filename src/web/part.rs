@@ -1,5 +1,7 @@
 //! Components that many pages show: status marks, signatures, the history of a record.
 
+use std::borrow::Cow;
+
 use askama::Template;
 use chrono_tz::Tz;
 
@@ -14,19 +16,20 @@ use crate::store::trail::{ActLine, Recent};
 #[template(path = "part/status.html")]
 pub struct StatusMark {
     slug: &'static str,
-    words: String,
+    words: Cow<'static, str>,
 }
 
 impl askama::filters::HtmlSafe for StatusMark {}
 
 impl StatusMark {
     pub fn of(status: Status) -> StatusMark {
-        StatusMark { slug: slug(status), words: status.words().to_string() }
+        StatusMark { slug: slug(status), words: Cow::Borrowed(status.words()) }
     }
 
     /// "Out of specification: 1 of 7 tests".
     pub fn counting(status: Status, count: usize, of: usize, things: &str) -> StatusMark {
-        StatusMark { slug: slug(status), words: format!("{}: {count} of {of} {things}", status.words()) }
+        let words = format!("{}: {count} of {of} {things}", status.words());
+        StatusMark { slug: slug(status), words: Cow::Owned(words) }
     }
 }
 

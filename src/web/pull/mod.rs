@@ -77,13 +77,19 @@ pub(in crate::web) fn due_words(pull: &Pull, today: chrono::NaiveDate) -> String
         return "imported, without a due date".to_string();
     };
     let dates = format!("due {}, window {}", date_shown(due_on), window.words());
+    format!("{dates}, {}", left_words(pull, today))
+}
+
+/// What happened to a pull and when, or how long its window is still closed or open.
+pub(in crate::web) fn left_words(pull: &Pull, today: chrono::NaiveDate) -> String {
+    let Some(window) = pull.window() else { return "imported, without a due date".to_string() };
     match (pull.facts.event, pull.facts.happened_on) {
-        (Some(event), Some(on)) => format!("{dates}, {} on {}", event.words(), date_shown(on)),
+        (Some(event), Some(on)) => format!("{} on {}", event.words(), date_shown(on)),
         _ if today < window.earliest_on => {
             let days = (window.earliest_on - today).num_days();
-            format!("{dates}, opens in {}", show::counted(days.unsigned_abs() as usize, "day", "days"))
+            format!("opens in {}", show::counted(days.unsigned_abs() as usize, "day", "days"))
         }
-        _ => format!("{dates}, {}", until_shown(today, window.latest_on)),
+        _ => until_shown(today, window.latest_on),
     }
 }
 

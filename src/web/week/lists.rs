@@ -31,10 +31,10 @@ const LISTS: [(&str, &str, Show); 5] = [
 
 #[derive(Template)]
 #[template(path = "week/pulls.html")]
-struct PullsPage {
+struct PullsPage<'a> {
     shell: Shell,
     lead: String,
-    rows: Vec<Row>,
+    rows: Vec<Row<'a>>,
     next: Option<String>,
 }
 
@@ -76,9 +76,9 @@ fn due(visit: &Visit, list: Show) -> Result<Vec<Pull>, Failure> {
 
 #[derive(Template)]
 #[template(path = "week/list.html")]
-struct ListPage {
+struct ListPage<'a> {
     shell: Shell,
-    days: Vec<(String, Vec<Row>)>,
+    days: Vec<(String, Vec<Row<'a>>)>,
 }
 
 /// One table a day, by chamber: what to take along when going to the chambers.
@@ -88,7 +88,7 @@ pub(super) fn print_list(visit: &Visit) -> Outcome {
     found.extend(due(visit, Show::Week)?);
     let on = |pull: &Pull| pull.facts.due_on.map_or(today, |due_on| week::day_of(due_on, today));
     found.sort_by_key(|pull| (on(pull), pull.chamber_code.clone(), pull.lot_number.clone(), pull.id));
-    let mut days: Vec<(NaiveDate, Vec<Row>)> = Vec::new();
+    let mut days: Vec<(NaiveDate, Vec<Row<'_>>)> = Vec::new();
     for pull in &found {
         match days.last_mut() {
             Some((day, rows)) if *day == on(pull) => rows.push(row(pull, today)),

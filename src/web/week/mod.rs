@@ -8,7 +8,7 @@ use chrono::NaiveDate;
 
 use super::page::Shell;
 use super::part::StatusMark;
-use super::pull::due_words;
+use super::pull::left_words;
 use super::reply::{Outcome, page};
 use super::route::{Route, get, post};
 use super::show;
@@ -16,7 +16,7 @@ use super::study::one::mark;
 use super::visit::Visit;
 use crate::domain::act::Act;
 use crate::domain::failure::Failure;
-use crate::domain::moment::{date_shown, plus_days};
+use crate::domain::moment::{date_shown, plus_days, until_shown};
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::week;
 use crate::store;
@@ -37,72 +37,60 @@ pub const ROUTES: &[Route] = &[
 const MOST_ROWS: i64 = 100;
 
 /// A pull as a row of the week.
-pub(super) struct Row {
-    pub id: i64,
-    pub lot_number: String,
-    pub product: String,
-    pub study: i64,
-    pub study_number: String,
-    pub condition: String,
-    pub age: String,
+pub(super) struct Row<'a> {
+    pub pull: &'a Pull,
     pub window_first: String,
     pub window_last: String,
     pub until: String,
-    pub recorded: String,
+    pub complete: usize,
+    pub tests: usize,
     pub needed: usize,
-    pub left: i64,
     pub is_short: bool,
     pub status: StatusMark,
-    pub with: String,
+    pub with: &'a str,
     pub minutes: String,
-    pub chamber: String,
-    pub containers: String,
+    pub chamber: &'a str,
+    /// Of the whole pull, for the list that goes along to the chambers.
+    pub containers: usize,
 }
 
 /// What is still to be done and until when: taking it, or testing it.
 fn until(pull: &Pull, today: NaiveDate) -> String {
-    let (Some(on), Some(days)) = (pull.facts.happened_on, pull.test_within_days) else {
-        return due_words(pull, today).rsplit(", ").next().unwrap_or_default().to_string();
-    };
-    let last = plus_days(on, days);
-    let words = crate::domain::moment::until_shown(today, last).replace("closes", "ends");
-    format!("taken {}, to be tested by {}, {words}", date_shown(on), date_shown(last))
+    if let (Some(on), Some(days)) = (pull.facts.happened_on, pull.test_within_days) {
+        let last = plus_days(on, days);
+        let words = until_shown(today, last).replace("closes", "ends");
+        return format!("taken {}, to be tested by {}, {words}", date_shown(on), date_shown(last));
+    }
+    left_words(pull, today)
 }
 
-pub(super) fn row(pull: &Pull, today: NaiveDate) -> Row {
+pub(super) fn row(pull: &Pull, today: NaiveDate) -> Row<'_> {
     let progress = pull.facts.progress;
-    let window = pull.window().map(|window| window.words()).unwrap_or_default();
-    let (first, last) = window.split_once('–').unwrap_or(("", &window));
-    let needed = pull.facts.containers_needed;
-    let still = needed.saturating_sub(usize::try_from(pull.containers_taken).unwrap_or_default());
+    let (window_first, window_last) = pull.window().map(|window| window.ends()).unwrap_or_default();
+    let containers = pull.facts.containers_needed;
+    let needed = containers.saturating_sub(usize::try_from(pull.containers_taken).unwrap_or_default());
     Row {
-        id: pull.id,
-        lot_number: pull.lot_number.clone(),
-        product: pull.product_words.clone(),
-        study: pull.study,
-        study_number: pull.study_number.clone(),
-        condition: format!("{}, {}", pull.condition_name, pull.orientation),
-        age: pull.age_text.clone(),
-        window_first: if first.is_empty() { String::new() } else { format!("{first}–") },
-        window_last: last.to_string(),
+        pull,
+        window_first,
+        window_last,
         until: until(pull, today),
-        recorded: format!("{} of {}", progress.complete, progress.tests),
-        needed: still,
-        left: pull.containers_left,
-        is_short: i64::try_from(still).unwrap_or_default() > pull.containers_left,
+        complete: progress.complete,
+        tests: progress.tests,
+        needed,
+        is_short: i64::try_from(needed).unwrap_or_default() > pull.containers_left,
         status: mark(pull, today),
-        with: pull.assigned_name.clone().unwrap_or_default(),
+        with: pull.assigned_name.as_deref().unwrap_or_default(),
         minutes: minutes_words(pull.minutes),
-        chamber: pull.chamber_code.clone().unwrap_or_default(),
-        containers: format!("{needed} {}s", pull.container_word),
+        chamber: pull.chamber_code.as_deref().unwrap_or_default(),
+        containers,
     }
 }
 
-struct DayView {
+struct DayView<'a> {
     heading: String,
     sum: String,
     is_open: bool,
-    rows: Vec<Row>,
+    rows: Vec<Row<'a>>,
     readings: Vec<String>,
 }
 
@@ -144,7 +132,7 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
 
 #[derive(Template)]
 #[template(path = "week/week.html")]
-struct WeekPage {
+struct WeekPage<'a> {
     shell: Shell,
     week: String,
     late: String,
@@ -155,8 +143,8 @@ struct WeekPage {
     is_idle: bool,
     next: Option<(String, i64, String)>,
     now: String,
-    urgent: Vec<Row>,
-    days: Vec<DayView>,
+    urgent: Vec<Row<'a>>,
+    days: Vec<DayView<'a>>,
     day_heads: Vec<String>,
     people: Vec<PersonView>,
     coming: Vec<(String, usize, String)>,
@@ -218,7 +206,7 @@ fn coming(days: &[DaySum], today: NaiveDate) -> Vec<(String, usize, String)> {
     week::coming_weeks(today).into_iter().map(week).collect()
 }
 
-fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView> {
+fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView<'_>> {
     week::days(today)
         .into_iter()
         .map(|day| {
