@@ -22,18 +22,17 @@ begin
     where study_arm = (select study_arm from container where id = new.container);
 end;
 
--- The words and dates of a pull, as planned and as it stands.
-create view pull_line as
-select p.id as pull, s.id as sample, s.number as number, y.id as study, y.number as study_number,
-    a.id as study_arm, a.position as arm_position, l.id as lot, l.number as lot_number,
-    d.name || ', ' || n.pack as product_words, n.container_word as container_word, c.name as condition_name,
-    a.orientation as orientation, h.code as chamber_code, h.location as chamber_location,
-    p.age_text as age_text, p.test_within_days as test_within_days, e.kind as event,
-    e.happened_on as happened_on, y.started_on as started_on, p.due_on as due_on,
-    p.earliest_on as earliest_on, p.latest_on as latest_on, p.is_last as is_last,
-    p.containers_needed as containers_needed, p.uuid as uuid,
-    (select count(*) from container_event where pull = p.id) as containers_taken,
-    (select count(*) from sample_test where sample = s.id) as tests
+-- What a list says of a pull as it was planned, in one text: parts with a unit separator between them, in the order in
+-- which the lists read them. Nothing of it changes once the pull is planned.
+create view pull_words as
+select p.id as pull,
+    replace(l.number, char(31), ' ') || char(31) || replace(d.name || ', ' || n.pack, char(31), ' ') || char(31)
+        || replace(n.container_word, char(31), ' ') || char(31) || y.number || char(31)
+        || replace(c.name, char(31), ' ') || ', ' || a.orientation || char(31)
+        || replace(coalesce(h.code, ''), char(31), ' ') || char(31) || p.age_text || char(31)
+        || s.number || char(31) || lower(hex(p.uuid)) || char(31)
+        || p.due_on || char(31) || coalesce(p.earliest_on, '') || char(31) || coalesce(p.latest_on, '') || char(31)
+        || p.containers_needed as words
 from pull p
 cross join study_arm a on a.id = p.study_arm
 join condition c on c.id = a.condition
@@ -42,8 +41,7 @@ join study y on y.id = a.study
 join lot l on l.id = y.lot
 join presentation n on n.id = l.presentation
 join product d on d.id = n.product
-join sample s on s.pull = p.id
-left join pull_event e on e.id = (select max(id) from pull_event where pull = p.id);
+join sample s on s.pull = p.id;
 
 -- How far each test of a pull is, and how far they are together. A test counts as checked when its newest result is, or
 -- when its method asks for no check.
@@ -76,39 +74,19 @@ group by pull, sample;
 
 create table open_line (
     pull integer primary key references pull (id),
-    sample integer not null,
-    number text not null,
     study integer not null,
-    study_number text not null,
     study_arm integer not null,
-    arm_position integer not null,
-    lot integer not null,
-    lot_number text not null,
-    product_words text not null,
-    container_word text not null,
-    condition_name text not null,
-    orientation text not null,
-    chamber_code text,
-    chamber_location text,
-    age_text text not null,
+    words text not null,
     test_within_days integer,
-    event text,
-    happened_on text,
-    started_on text not null,
-    due_on text not null,
-    earliest_on text,
-    latest_on text,
-    is_last integer not null,
-    containers_needed integer not null,
-    uuid blob not null,
-    containers_taken integer not null,
-    tests integer not null,
+    taken_on text,                          -- null until it is taken
+    containers_taken integer not null default 0,
+    tests integer not null default 0,
     started integer not null default 0,
     complete integer not null default 0,
     checked integer not null default 0,
     sent_back integer not null default 0,
     out_of_specification integer not null default 0,
-    counted integer not null default 0      -- raised to have the five numbers before it counted again
+    counted integer not null default 0      -- raised to have the six numbers before it counted again
 ) strict;
 
 create trigger open_line_counted after update of counted on open_line
@@ -125,9 +103,16 @@ begin
 end;
 create trigger open_line_opened after insert on open_pull
 begin
-    insert into open_line
-    select *, 0, 0, 0, 0, 0, 0 from pull_line where pull = new.pull;
-    update open_line set counted = counted + 1 where pull = new.pull and event = 'pulled';
+    insert into open_line (pull, study, study_arm, words, test_within_days, taken_on, containers_taken, tests)
+    select p.id, a.study, a.id, w.words, p.test_within_days,
+        (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
+        (select count(*) from container_event where pull = p.id),
+        (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
+    from pull p
+    join pull_words w on w.pull = p.id
+    join study_arm a on a.id = p.study_arm
+    where p.id = new.pull;
+    update open_line set counted = counted + 1 where pull = new.pull and taken_on is not null;
 end;
 create trigger open_line_closed after delete on open_pull
 begin
@@ -136,9 +121,12 @@ end;
 create trigger open_line_sampled after insert on sample
 when new.pull is not null
 begin
-    insert into open_line
-    select *, 0, 0, 0, 0, 0, 0 from pull_line
-    where pull = new.pull and exists (select 1 from open_pull where pull = new.pull);
+    insert into open_line (pull, study, study_arm, words, test_within_days)
+    select p.id, a.study, a.id, w.words, p.test_within_days
+    from pull p
+    join pull_words w on w.pull = p.id
+    join study_arm a on a.id = p.study_arm
+    where p.id = new.pull and exists (select 1 from open_pull where pull = new.pull);
 end;
 create trigger open_line_asked after insert on sample_test
 begin
@@ -147,7 +135,7 @@ begin
 end;
 create trigger open_line_happened after insert on pull_event
 begin
-    update open_line set event = new.kind, happened_on = new.happened_on where pull = new.pull;
+    update open_line set taken_on = new.happened_on where pull = new.pull and new.kind = 'pulled';
 end;
 create trigger open_line_taken after insert on container_event
 when new.pull is not null
@@ -177,9 +165,16 @@ begin
     where pull = (select pull from sample where id = new.sample);
 end;
 
-insert into open_line
-select *, 0, 0, 0, 0, 0, 0 from pull_line where pull in (select pull from open_pull);
-update open_line set counted = 1 where event = 'pulled';
+insert into open_line (pull, study, study_arm, words, test_within_days, taken_on, containers_taken, tests)
+select p.id, a.study, a.id, w.words, p.test_within_days,
+    (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
+    (select count(*) from container_event where pull = p.id),
+    (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
+from pull p
+join pull_words w on w.pull = p.id
+join study_arm a on a.id = p.study_arm
+where p.id in (select pull from open_pull);
+update open_line set counted = 1 where taken_on is not null;
 
 -- The week goes by due dates.
 drop index open_pull_by_due;

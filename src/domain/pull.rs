@@ -5,6 +5,7 @@ use chrono::NaiveDate;
 use super::moment::date_shown;
 use super::refusal::NamedReason;
 use super::status::Status;
+use super::window::Window;
 
 /// What happened to a pull; none: it is planned.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -60,6 +61,13 @@ pub struct PullFacts {
     pub progress: Progress,
     /// Signed by a reviewer, and nothing recorded since.
     pub is_signed: bool,
+}
+
+impl PullFacts {
+    /// None of an imported pull.
+    pub fn window(&self) -> Option<Window> {
+        Some(Window { earliest_on: self.earliest_on?, latest_on: self.latest_on? })
+    }
 }
 
 /// The states behind the status words (decision A17).

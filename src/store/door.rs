@@ -138,9 +138,9 @@ impl Db {
             Some(connection) => connection,
             None => open_reader(&self.path, &self.current)?,
         };
-        connection.execute_batch("begin deferred")?;
+        connection.prepare_cached("begin deferred")?.execute([])?;
         let answer = body(&Reader::over(&connection));
-        connection.execute_batch("rollback")?;
+        connection.prepare_cached("rollback")?.execute([])?;
         let mut readers = lock(&self.readers);
         if readers.len() < KEPT_READERS {
             readers.push(connection);

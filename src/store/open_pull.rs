@@ -3,10 +3,93 @@
 use chrono::NaiveDate;
 use rusqlite::{Row, named_params};
 
-use super::pull::Pull;
 use super::{Answer, Day, Reader};
-use crate::domain::moment::{date_stored, plus_days};
+use crate::domain::moment::{date_from_stored, date_stored, plus_days};
 use crate::domain::pull::{Event, Progress, PullFacts};
+
+/// A pull as a list of work shows it.
+#[derive(Clone, Debug)]
+pub struct Line {
+    pub pull: i64,
+    pub study: i64,
+    words: Words,
+    pub containers_taken: i64,
+    /// Containers of the arm that still stand in the chamber.
+    pub containers_left: i64,
+    /// Who has it.
+    pub assigned_name: Option<String>,
+    /// Hands-on minutes of its tests, from their methods.
+    pub minutes: u32,
+    pub test_within_days: Option<i64>,
+    /// What its status and its window need. A rule asks the records themselves.
+    pub facts: PullFacts,
+}
+
+const PARTS: usize = 13;
+
+/// The parts of a stored line in one text, and where each ends.
+#[derive(Clone, Debug)]
+struct Words {
+    text: String,
+    ends: [usize; PARTS],
+}
+
+impl Words {
+    fn new(text: String) -> Words {
+        let mut ends = [text.len(); PARTS];
+        for (end, (at, _)) in ends.iter_mut().zip(text.match_indices('\u{1f}')) {
+            *end = at;
+        }
+        Words { text, ends }
+    }
+
+    fn part(&self, number: usize) -> &str {
+        let start = if number == 0 { 0 } else { self.ends[number - 1] + 1 };
+        self.text.get(start..self.ends[number]).unwrap_or_default()
+    }
+}
+
+impl Line {
+    pub fn lot_number(&self) -> &str {
+        self.words.part(0)
+    }
+
+    pub fn product_words(&self) -> &str {
+        self.words.part(1)
+    }
+
+    pub fn container_word(&self) -> &str {
+        self.words.part(2)
+    }
+
+    pub fn study_number(&self) -> &str {
+        self.words.part(3)
+    }
+
+    /// Condition and orientation.
+    pub fn condition(&self) -> &str {
+        self.words.part(4)
+    }
+
+    /// Empty where no chamber is named.
+    pub fn chamber_code(&self) -> &str {
+        self.words.part(5)
+    }
+
+    pub fn age_text(&self) -> &str {
+        self.words.part(6)
+    }
+
+    /// Of the pull and of its sample: `ST-031-P07`.
+    pub fn number(&self) -> &str {
+        self.words.part(7)
+    }
+
+    /// Hexadecimal.
+    pub fn uuid(&self) -> &str {
+        self.words.part(8)
+    }
+}
 
 /// Which pulls a list of work shows; each is one range of an index.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -43,8 +126,8 @@ pub struct After {
 
 impl After {
     /// The place of a pull in a list.
-    pub fn of(pull: &Pull, show: Show) -> After {
-        After { on: day_of(pull, show).map(date_stored).unwrap_or_default(), pull: pull.id }
+    pub fn of(pull: &Line, show: Show) -> After {
+        After { on: day_of(pull, show).map(date_stored).unwrap_or_default(), pull: pull.pull }
     }
 
     /// `2026-12-08.17`, for an address.
@@ -59,7 +142,7 @@ impl After {
 }
 
 /// The day a list goes by.
-fn day_of(pull: &Pull, show: Show) -> Option<NaiveDate> {
+fn day_of(pull: &Line, show: Show) -> Option<NaiveDate> {
     let facts = &pull.facts;
     match (facts.happened_on, pull.test_within_days) {
         _ if show.is_by_due_date() => facts.due_on,
@@ -73,51 +156,51 @@ fn day_of(pull: &Pull, show: Show) -> Option<NaiveDate> {
 fn chosen(show: Show) -> &'static str {
     match show {
         Show::Late => {
-            "select pull, latest_on, account from open_pull
+            "select pull, latest_on, account, minutes from open_pull
              where stage = 'to take' and latest_on < :today and +due_on < :today
                  and (latest_on, pull) > (:after_on, :after_pull)
              order by latest_on, pull limit :limit"
         }
         Show::Closing => {
-            "select pull, latest_on, account from open_pull
+            "select pull, latest_on, account, minutes from open_pull
              where stage = 'to take' and latest_on between :today and :tomorrow and +due_on <= :tomorrow
                  and (latest_on, pull) > (:after_on, :after_pull)
              order by latest_on, pull limit :limit"
         }
         Show::InTest => {
-            "select pull, latest_on, account from open_pull
+            "select pull, latest_on, account, minutes from open_pull
              where stage = 'in test' and (latest_on, pull) > (:after_on, :after_pull)
              order by latest_on, pull limit :limit"
         }
         Show::Urgent => {
             "select * from (
                  select * from (
-                     select pull, latest_on, account from open_pull
+                     select pull, latest_on, account, minutes from open_pull
                      where stage = 'to take' and latest_on <= :tomorrow and +due_on <= :tomorrow
                          and (latest_on, pull) > (:after_on, :after_pull)
                      order by latest_on, pull limit :limit)
                  union all
                  select * from (
-                     select pull, latest_on, account from open_pull
+                     select pull, latest_on, account, minutes from open_pull
                      where stage = 'in test' and latest_on <= :tomorrow and +due_on <= :tomorrow
                          and (latest_on, pull) > (:after_on, :after_pull)
                      order by latest_on, pull limit :limit))
              order by latest_on, pull limit :limit"
         }
         Show::Week => {
-            "select pull, due_on, account from open_pull
+            "select pull, due_on, account, minutes from open_pull
              where stage = 'to take' and due_on <= :week_end and +latest_on >= :today
                  and (due_on, pull) > (:after_on, :after_pull)
              order by due_on, pull limit :limit"
         }
         Show::Coming => {
-            "select pull, due_on, account from open_pull
+            "select pull, due_on, account, minutes from open_pull
              where stage = 'to take' and due_on > :week_end and due_on <= :coming_end
                  and (due_on, pull) > (:after_on, :after_pull)
              order by due_on, pull limit :limit"
         }
         Show::ToTake => {
-            "select pull, due_on, account from open_pull
+            "select pull, due_on, account, minutes from open_pull
              where stage = 'to take' and (due_on, pull) > (:after_on, :after_pull)
              order by due_on, pull limit :limit"
         }
@@ -128,13 +211,9 @@ fn dates(today: NaiveDate) -> [Day; 4] {
     [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
 }
 
-const LINE: &str =
-    "select l.pull, l.sample, l.number, l.study, l.study_number, l.study_arm, l.arm_position, l.lot,
-        l.lot_number, l.product_words, l.container_word, l.condition_name, l.orientation, l.chamber_code,
-        l.chamber_location, l.age_text, l.containers_taken, coalesce(k.containers_left, 0), chosen.account,
-        g.full_name, (select minutes from open_pull where pull = l.pull), l.test_within_days, l.uuid, l.event,
-        l.happened_on, l.started_on, l.due_on, l.earliest_on, l.latest_on, l.is_last, l.containers_needed,
-        l.tests, l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
+const LINE: &str = "select l.pull, l.study, l.words, l.containers_taken, coalesce(k.containers_left, 0), g.full_name,
+        chosen.minutes, l.test_within_days, l.taken_on, l.tests, l.started, l.complete, l.checked, l.sent_back,
+        l.out_of_specification
     from chosen
     cross join open_line l on l.pull = chosen.pull
     left join arm_stock k on k.study_arm = l.study_arm
@@ -147,11 +226,11 @@ pub fn list(
     today: NaiveDate,
     after: Option<&After>,
     limit: i64,
-) -> Answer<Vec<Pull>> {
+) -> Answer<Vec<Line>> {
     let [today, tomorrow, week_end, coming_end] = dates(today);
     let sql = format!(
         "with dates as (select :today, :tomorrow, :week_end, :coming_end),
-         chosen (pull, day, account) as materialized ({}) {LINE}",
+         chosen (pull, day, account, minutes) as materialized ({}) {LINE}",
         chosen(show)
     );
     let params = named_params! {
@@ -164,62 +243,49 @@ pub fn list(
         ":limit": limit,
     };
     let mut pulls = reader.all(&sql, params, from_row)?;
-    pulls.sort_by_key(|pull| (day_of(pull, show), pull.id));
+    pulls.sort_by_key(|pull| (day_of(pull, show), pull.pull));
     Ok(pulls)
 }
 
-fn from_row(row: &Row<'_>) -> rusqlite::Result<Pull> {
-    Ok(Pull {
-        id: row.get(0)?,
-        sample: row.get(1)?,
-        number: row.get(2)?,
-        study: row.get(3)?,
-        study_number: row.get(4)?,
-        study_arm: row.get(5)?,
-        arm_position: row.get(6)?,
-        lot: row.get(7)?,
-        lot_number: row.get(8)?,
-        product_words: row.get(9)?,
-        container_word: row.get(10)?,
-        condition_name: row.get(11)?,
-        orientation: row.get(12)?,
-        chamber_code: row.get(13)?,
-        chamber_location: row.get(14)?,
-        age_text: row.get(15)?,
-        containers_taken: row.get(16)?,
-        containers_left: row.get(17)?,
-        assigned: row.get(18)?,
-        assigned_name: row.get(19)?,
-        minutes: row.get(20)?,
-        test_within_days: row.get(21)?,
-        uuid: row.get(22)?,
-        facts: facts_from_row(row)?,
+fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
+    let words = Words::new(row.get(2)?);
+    Ok(Line {
+        pull: row.get(0)?,
+        study: row.get(1)?,
+        containers_taken: row.get(3)?,
+        containers_left: row.get(4)?,
+        assigned_name: row.get(5)?,
+        minutes: row.get(6)?,
+        test_within_days: row.get(7)?,
+        facts: facts_from_row(row, &words)?,
+        words,
     })
 }
 
-fn facts_from_row(row: &Row<'_>) -> rusqlite::Result<PullFacts> {
-    let day = |at: usize| Ok::<_, rusqlite::Error>(row.get::<_, Option<Day>>(at)?.map(|day| day.0));
+/// An open pull is neither imported nor signed; before it is taken nothing of it was read.
+fn facts_from_row(row: &Row<'_>, words: &Words) -> rusqlite::Result<PullFacts> {
     let count = |at: usize| Ok::<_, rusqlite::Error>(usize::try_from(row.get::<_, i64>(at)?).unwrap_or(0));
-    let event = row.get_ref(23)?.as_str_or_null().map_err(rusqlite::Error::from)?;
+    let taken_on: Option<Day> = row.get(8)?;
+    let mut progress = Progress { tests: count(9)?, ..Progress::default() };
+    if taken_on.is_some() {
+        progress = Progress {
+            tests: progress.tests,
+            started: count(10)?,
+            complete: count(11)?,
+            checked: count(12)?,
+            sent_back: count(13)?,
+            out_of_specification: count(14)?,
+        };
+    }
     Ok(PullFacts {
-        is_imported: false,
-        event: event.and_then(Event::from_words),
-        happened_on: day(24)?,
-        started_on: day(25)?,
-        due_on: day(26)?,
-        earliest_on: day(27)?,
-        latest_on: day(28)?,
-        is_last: row.get(29)?,
-        containers_needed: count(30)?,
-        progress: Progress {
-            tests: count(31)?,
-            started: count(32)?,
-            complete: count(33)?,
-            checked: count(34)?,
-            sent_back: count(35)?,
-            out_of_specification: count(36)?,
-        },
-        is_signed: false,
+        event: taken_on.map(|_| Event::Pulled),
+        happened_on: taken_on.map(|day| day.0),
+        due_on: date_from_stored(words.part(9)),
+        earliest_on: date_from_stored(words.part(10)),
+        latest_on: date_from_stored(words.part(11)),
+        containers_needed: words.part(12).parse().unwrap_or_default(),
+        progress,
+        ..PullFacts::default()
     })
 }
 

@@ -6,7 +6,6 @@ use rusqlite::{Row, named_params};
 use super::door::Change;
 use super::{Answer, Day, Reader};
 use crate::domain::pull::{Event, Progress, PullFacts};
-use crate::domain::window::Window;
 
 /// A pull as lists and pages show it.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -38,13 +37,6 @@ pub struct Pull {
     pub test_within_days: Option<i64>,
     pub uuid: Vec<u8>,
     pub facts: PullFacts,
-}
-
-impl Pull {
-    pub fn window(&self) -> Option<Window> {
-        let (earliest_on, latest_on) = (self.facts.earliest_on?, self.facts.latest_on?);
-        Some(Window { earliest_on, latest_on })
-    }
 }
 
 /// All columns of [`Pull`] over a choice of pulls. What the methods say is read once for all rows; a test counts

@@ -91,7 +91,7 @@ fn a_study_makes_its_containers_and_pulls_at_time_zero() {
     assert_eq!(containers.len(), needed * 2 * (8 + 4 + 3) + 6 * 3);
     let first = world::pull(&lab, id, 1, "6 months");
     assert_eq!(first.facts.due_on, "2027-06-01".parse().ok());
-    assert_eq!(first.window().unwrap().words(), "1–8 Jun 2027");
+    assert_eq!(first.facts.window().unwrap().words(), "1–8 Jun 2027");
     assert_eq!(first.facts.progress.tests, 2);
     lab.manager().sees(&format!("{path}/labels"), &containers[0].label);
     lab.auditor().sees(&path, "started a study");
@@ -351,7 +351,7 @@ fn the_sites_default_windows_hold_for_studies_that_start_after() {
     lab.administrator().does("/settings", "/settings", &own);
     let lot = world::lot(&lab, "TW-104-0641");
     let second = world::study_of(&lab, lot, &KINDS);
-    let window = |study: i64| world::pull(&lab, study, 1, "6 months").window().unwrap().words();
+    let window = |study: i64| world::pull(&lab, study, 1, "6 months").facts.window().unwrap().words();
     assert_eq!(window(first), "1–8 Jun 2027");
     assert_eq!(window(second), "1–11 Jun 2027");
     lab.manager().sees("/protocol-versions/1", "−0/+10 d");

@@ -19,11 +19,14 @@ use supernate::acts;
 use supernate::acts::secret::{HashCost, Secrets};
 use supernate::domain::account::NewPerson;
 use supernate::domain::actor::Actor;
+use supernate::domain::digest::hex;
 use supernate::domain::moment::Moment;
+use supernate::domain::pull::PullFacts;
 use supernate::domain::role::Role;
 use supernate::store;
 use supernate::store::door::{Db, Durability};
-use supernate::store::open_pull::Show;
+use supernate::store::open_pull::{Line, Show};
+use supernate::store::pull::Pull;
 use supernate::store::site::Site;
 use supernate::web::app::App;
 use supernate::web::serve::router;
@@ -131,15 +134,37 @@ impl Drop for Lab {
             let mut pairs = Vec::new();
             for show in [Show::ToTake, Show::InTest] {
                 for pull in store::open_pull::list(reader, show, today, None, 10_000)? {
-                    pairs.push((store::pull::get(reader, pull.id)?, pull));
+                    pairs.push((store::pull::get(reader, pull.pull)?, pull));
                 }
             }
             Ok(pairs)
         });
         for (record, listed) in pairs.unwrap_or_default() {
-            assert_eq!(record, listed);
+            same(&record, &listed);
         }
     }
+}
+
+/// A line of a list says what the records of its pull say.
+pub fn same(record: &Pull, listed: &Line) {
+    let facts = PullFacts { started_on: None, is_last: false, ..record.facts };
+    assert_eq!(facts, listed.facts, "{}", record.number);
+    assert_eq!(
+        (record.id, record.study, record.minutes, record.test_within_days),
+        (listed.pull, listed.study, listed.minutes, listed.test_within_days)
+    );
+    assert_eq!(
+        (record.containers_taken, record.containers_left, &record.assigned_name),
+        (listed.containers_taken, listed.containers_left, &listed.assigned_name)
+    );
+    let words = [&record.lot_number, &record.product_words, &record.container_word, &record.study_number];
+    let listed_words =
+        [listed.lot_number(), listed.product_words(), listed.container_word(), listed.study_number()];
+    assert_eq!(words, listed_words);
+    assert_eq!(format!("{}, {}", record.condition_name, record.orientation), listed.condition());
+    assert_eq!(record.chamber_code.as_deref().unwrap_or_default(), listed.chamber_code());
+    assert_eq!((record.age_text.as_str(), record.number.as_str()), (listed.age_text(), listed.number()));
+    assert_eq!(hex(&record.uuid), listed.uuid());
 }
 
 impl Lab {

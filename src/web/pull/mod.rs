@@ -18,7 +18,7 @@ use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::moment::{date_shown, until_shown};
 use crate::domain::protocol::cost::minutes_words;
-use crate::domain::pull::{self, Event};
+use crate::domain::pull::{self, Event, PullFacts};
 use crate::domain::role::Role;
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
@@ -72,18 +72,18 @@ fn one(visit: &Visit) -> Outcome {
 }
 
 /// `6 months, due 3 Mar 2027, window 3–10 Mar 2027, closes in 4 days` (screen_U97, screen_U98).
-pub(in crate::web) fn due_words(pull: &Pull, today: chrono::NaiveDate) -> String {
-    let (Some(due_on), Some(window)) = (pull.facts.due_on, pull.window()) else {
+pub(in crate::web) fn due_words(facts: &PullFacts, today: chrono::NaiveDate) -> String {
+    let (Some(due_on), Some(window)) = (facts.due_on, facts.window()) else {
         return "imported, without a due date".to_string();
     };
     let dates = format!("due {}, window {}", date_shown(due_on), window.words());
-    format!("{dates}, {}", left_words(pull, today))
+    format!("{dates}, {}", left_words(facts, today))
 }
 
 /// What happened to a pull and when, or how long its window is still closed or open.
-pub(in crate::web) fn left_words(pull: &Pull, today: chrono::NaiveDate) -> String {
-    let Some(window) = pull.window() else { return "imported, without a due date".to_string() };
-    match (pull.facts.event, pull.facts.happened_on) {
+pub(in crate::web) fn left_words(facts: &PullFacts, today: chrono::NaiveDate) -> String {
+    let Some(window) = facts.window() else { return "imported, without a due date".to_string() };
+    match (facts.event, facts.happened_on) {
         (Some(event), Some(on)) => format!("{} on {}", event.words(), date_shown(on)),
         _ if today < window.earliest_on => {
             let days = (window.earliest_on - today).num_days();
@@ -120,8 +120,8 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
     }
     let page = PullPage {
         shell,
-        status: mark(&pull, today),
-        due: due_words(&pull, today),
+        status: mark(&pull.facts, today),
+        due: due_words(&pull.facts, today),
         side: pull::side_fact(&pull.facts, today),
         minutes: minutes_words(pull.minutes),
         containers: containers.into_iter().map(|line| container_row(visit, line)).collect(),

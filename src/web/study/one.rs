@@ -15,7 +15,7 @@ use crate::domain::act::Act;
 use crate::domain::chamber::qualification_warning;
 use crate::domain::failure::Failure;
 use crate::domain::moment::date_shown;
-use crate::domain::pull;
+use crate::domain::pull::{self, PullFacts};
 use crate::domain::subject::{Kind, Subject};
 use crate::report::chart::Drawn;
 use crate::report::chart::from_series::of_arms;
@@ -89,9 +89,9 @@ struct LedgerRow {
 }
 
 /// A pull's status mark: with the count of tests where one is out of specification.
-pub(in crate::web) fn mark(pull: &Pull, today: chrono::NaiveDate) -> StatusMark {
-    let progress = pull.facts.progress;
-    match pull::status(&pull.facts, today) {
+pub(in crate::web) fn mark(facts: &PullFacts, today: chrono::NaiveDate) -> StatusMark {
+    let progress = facts.progress;
+    match pull::status(facts, today) {
         status @ crate::domain::status::Status::OutOfSpecification => {
             StatusMark::counting(status, progress.out_of_specification, progress.tests, "tests")
         }
@@ -109,7 +109,7 @@ fn cell(visit: &Visit, pull: &Pull) -> Cell {
     Cell {
         pull: pull.id,
         number: pull.number.clone(),
-        status: mark(pull, today),
+        status: mark(&pull.facts, today),
         dates,
         side: pull::side_fact(&pull.facts, today),
     }

@@ -8,13 +8,11 @@ use super::super::reply::{Outcome, Reply, page};
 use super::super::show;
 use super::super::visit::Visit;
 use super::{Row, row};
-use crate::domain::digest::hex;
 use crate::domain::failure::Failure;
 use crate::domain::week;
 use crate::report::calendar;
 use crate::store;
-use crate::store::open_pull::{After, Show};
-use crate::store::pull::Pull;
+use crate::store::open_pull::{After, Line, Show};
 
 const PAGE: i64 = 50;
 /// Events of the calendar file and lines of the printed list.
@@ -69,7 +67,7 @@ pub(super) fn pulls(visit: &Visit) -> Outcome {
     })
 }
 
-fn due(visit: &Visit, list: Show) -> Result<Vec<Pull>, Failure> {
+fn due(visit: &Visit, list: Show) -> Result<Vec<Line>, Failure> {
     let today = visit.at.date();
     visit.read(|reader| store::open_pull::list(reader, list, today, None, MOST))
 }
@@ -86,8 +84,15 @@ pub(super) fn print_list(visit: &Visit) -> Outcome {
     let today = visit.at.date();
     let mut found = due(visit, Show::Late)?;
     found.extend(due(visit, Show::Week)?);
-    let on = |pull: &Pull| pull.facts.due_on.map_or(today, |due_on| week::day_of(due_on, today));
-    found.sort_by_key(|pull| (on(pull), pull.chamber_code.clone(), pull.lot_number.clone(), pull.id));
+    let on = |pull: &Line| pull.facts.due_on.map_or(today, |due_on| week::day_of(due_on, today));
+    found.sort_by(|one, other| {
+        (on(one), one.chamber_code(), one.lot_number(), one.pull).cmp(&(
+            on(other),
+            other.chamber_code(),
+            other.lot_number(),
+            other.pull,
+        ))
+    });
     let mut days: Vec<(NaiveDate, Vec<Row<'_>>)> = Vec::new();
     for pull in &found {
         match days.last_mut() {
@@ -99,15 +104,18 @@ pub(super) fn print_list(visit: &Visit) -> Outcome {
     page(&ListPage { shell: Shell::of(visit, "Pull list").crumb("/week", "Week"), days })
 }
 
-fn event(pull: &Pull) -> Option<calendar::Event> {
-    let window = pull.window()?;
+fn event(pull: &Line) -> Option<calendar::Event> {
+    let window = pull.facts.window()?;
     Some(calendar::Event {
-        uid: format!("pull-{}@supernate", hex(&pull.uuid)),
+        uid: format!("pull-{}@supernate", pull.uuid()),
         summary: format!(
-            "Pull {}: {}, {} {}, {}",
-            pull.number, pull.lot_number, pull.condition_name, pull.orientation, pull.age_text
+            "Pull {}: {}, {}, {}",
+            pull.number(),
+            pull.lot_number(),
+            pull.condition(),
+            pull.age_text()
         ),
-        place: pull.chamber_code.clone().unwrap_or_default(),
+        place: pull.chamber_code().to_string(),
         first_on: window.earliest_on,
         last_on: window.latest_on,
     })

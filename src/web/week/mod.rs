@@ -20,8 +20,7 @@ use crate::domain::moment::{date_shown, plus_days, until_shown};
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::week;
 use crate::store;
-use crate::store::open_pull::{Counts, Show};
-use crate::store::pull::Pull;
+use crate::store::open_pull::{Counts, Line, Show};
 use crate::store::week::{DaySum, OpenCylinder, PersonDay};
 
 pub const ROUTES: &[Route] = &[
@@ -33,12 +32,12 @@ pub const ROUTES: &[Route] = &[
     get("/week/calendar.ics", lists::calendar),
 ];
 
-/// Rows of the first block and of the days together; more are one link away.
-const MOST_ROWS: i64 = 100;
+/// Rows of the first block, and of the days together; more are one link away.
+const MOST_ROWS: i64 = 50;
 
 /// A pull as a row of the week.
 pub(super) struct Row<'a> {
-    pub pull: &'a Pull,
+    pub pull: &'a Line,
     pub window_first: String,
     pub window_last: String,
     pub until: String,
@@ -49,24 +48,23 @@ pub(super) struct Row<'a> {
     pub status: StatusMark,
     pub with: &'a str,
     pub minutes: String,
-    pub chamber: &'a str,
     /// Of the whole pull, for the list that goes along to the chambers.
     pub containers: usize,
 }
 
 /// What is still to be done and until when: taking it, or testing it.
-fn until(pull: &Pull, today: NaiveDate) -> String {
+fn until(pull: &Line, today: NaiveDate) -> String {
     if let (Some(on), Some(days)) = (pull.facts.happened_on, pull.test_within_days) {
         let last = plus_days(on, days);
         let words = until_shown(today, last).replace("closes", "ends");
         return format!("taken {}, to be tested by {}, {words}", date_shown(on), date_shown(last));
     }
-    left_words(pull, today)
+    left_words(&pull.facts, today)
 }
 
-pub(super) fn row(pull: &Pull, today: NaiveDate) -> Row<'_> {
+pub(super) fn row(pull: &Line, today: NaiveDate) -> Row<'_> {
     let progress = pull.facts.progress;
-    let (window_first, window_last) = pull.window().map(|window| window.ends()).unwrap_or_default();
+    let (window_first, window_last) = pull.facts.window().map(|window| window.ends()).unwrap_or_default();
     let containers = pull.facts.containers_needed;
     let needed = containers.saturating_sub(usize::try_from(pull.containers_taken).unwrap_or_default());
     Row {
@@ -78,10 +76,9 @@ pub(super) fn row(pull: &Pull, today: NaiveDate) -> Row<'_> {
         tests: progress.tests,
         needed,
         is_short: i64::try_from(needed).unwrap_or_default() > pull.containers_left,
-        status: mark(pull, today),
+        status: mark(&pull.facts, today),
         with: pull.assigned_name.as_deref().unwrap_or_default(),
         minutes: minutes_words(pull.minutes),
-        chamber: pull.chamber_code.as_deref().unwrap_or_default(),
         containers,
     }
 }
@@ -104,8 +101,8 @@ struct PersonView {
 struct Facts {
     counts: Counts,
     to_check: usize,
-    urgent: Vec<Pull>,
-    pulls: Vec<Pull>,
+    urgent: Vec<Line>,
+    pulls: Vec<Line>,
     sums: Vec<DaySum>,
     people: Vec<PersonDay>,
     coming: Vec<DaySum>,
@@ -218,7 +215,7 @@ fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView<'_>> {
                     format!("{}, about {}", show::counted(pulls, "pull", "pulls"), minutes_words(minutes))
                 }
             };
-            let is_on = |pull: &&Pull| pull.facts.due_on.map(|due| week::day_of(due, today)) == Some(day);
+            let is_on = |pull: &&Line| pull.facts.due_on.map(|due| week::day_of(due, today)) == Some(day);
             DayView {
                 heading: week::day_words(day),
                 sum,
