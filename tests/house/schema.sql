@@ -48,7 +48,7 @@ CREATE INDEX material_lot_by_material on material_lot (material);
 
 CREATE INDEX material_lot_status_by_lot on material_lot_status (material_lot);
 
-CREATE INDEX open_pull_by_due on open_pull (stage, due_on, latest_on, minutes);
+CREATE INDEX open_pull_by_due on open_pull (stage, due_on, pull, latest_on);
 
 CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);
 
@@ -147,6 +147,11 @@ CREATE TABLE account_state (
     account integer not null references account (id),
     state text not null check (state in ('enabled', 'disabled')),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE arm_stock (
+    study_arm integer primary key references study_arm (id),
+    containers_left integer not null
 ) strict;
 
 CREATE TABLE arm_trigger (
@@ -557,6 +562,23 @@ CREATE TABLE open_day (
     minutes integer not null,
     primary key (stage, due_on, latest_on)
 ) strict, without rowid;
+
+CREATE TABLE open_line (
+    pull integer primary key references pull (id),
+    study integer not null,
+    study_arm integer not null,
+    words text not null,
+    test_within_days integer,
+    taken_on text,                          -- null until it is taken
+    containers_taken integer not null default 0,
+    tests integer not null default 0,
+    started integer not null default 0,
+    complete integer not null default 0,
+    checked integer not null default 0,
+    sent_back integer not null default 0,
+    out_of_specification integer not null default 0,
+    counted integer not null default 0      -- raised to have the six numbers before it counted again
+) strict;
 
 CREATE TABLE open_pull (
     pull integer primary key references pull (id),
@@ -1043,6 +1065,19 @@ CREATE TABLE trail_subject (
     primary key (kind, subject, act)
 ) strict, without rowid;
 
+CREATE TRIGGER arm_stock_fewer after insert on container_event
+when not exists (select 1 from container_event where container = new.container and id <> new.id)
+begin
+    update arm_stock set containers_left = containers_left - 1
+    where study_arm = (select study_arm from container where id = new.container);
+end;
+
+CREATE TRIGGER arm_stock_more after insert on container
+begin
+    insert or ignore into arm_stock (study_arm, containers_left) values (new.study_arm, 0);
+    update arm_stock set containers_left = containers_left + 1 where study_arm = new.study_arm;
+end;
+
 CREATE TRIGGER guard_approval before insert on signature
 when new.meaning = 'approval' and exists (
     select 1 from signature
@@ -1189,6 +1224,92 @@ begin
     where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
 end;
 
+CREATE TRIGGER open_line_asked after insert on sample_test
+begin
+    update open_line set tests = tests + 1
+    where pull = (select pull from sample where id = new.sample);
+end;
+
+CREATE TRIGGER open_line_checked after insert on result_check
+begin
+    update open_line set counted = counted + 1
+    where pull = (select s.pull from sample_test t join sample s on s.id = t.sample where t.id = new.sample_test);
+end;
+
+CREATE TRIGGER open_line_closed after delete on open_pull
+begin
+    delete from open_line where pull = old.pull;
+end;
+
+CREATE TRIGGER open_line_counted after update of counted on open_line
+begin
+    update open_line
+    set (tests, started, complete, checked, sent_back, out_of_specification) = (
+        select w.tests, w.started, w.complete, w.checked,
+            max(w.sent_back, coalesce((select decision = 'send back' and act > w.newest
+                from review_decision where sample = w.sample order by id desc limit 1), 0)),
+            w.out_of_specification
+        from pull_progress w
+        where w.pull = new.pull)
+    where pull = new.pull;
+end;
+
+CREATE TRIGGER open_line_happened after insert on pull_event
+begin
+    update open_line set taken_on = new.happened_on where pull = new.pull and new.kind = 'pulled';
+end;
+
+CREATE TRIGGER open_line_judged after insert on result
+begin
+    update open_line set counted = counted + 1
+    where pull = (select s.pull from sample_test t join sample s on s.id = t.sample where t.id = new.sample_test);
+end;
+
+CREATE TRIGGER open_line_opened after insert on open_pull
+begin
+    insert into open_line (pull, study, study_arm, words, test_within_days, taken_on, containers_taken, tests)
+    select p.id, a.study, a.id, w.words, p.test_within_days,
+        (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
+        (select count(*) from container_event where pull = p.id),
+        (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
+    from pull p
+    join pull_words w on w.pull = p.id
+    join study_arm a on a.id = p.study_arm
+    where p.id = new.pull;
+    update open_line set counted = counted + 1 where pull = new.pull and taken_on is not null;
+end;
+
+CREATE TRIGGER open_line_read after insert on reading
+begin
+    update open_line set counted = counted + 1
+    where pull = (select s.pull from sample_test t join sample s on s.id = t.sample where t.id = new.sample_test)
+        and (sent_back > 0
+            or not exists (select 1 from reading where sample_test = new.sample_test and id < new.id));
+end;
+
+CREATE TRIGGER open_line_reviewed after insert on review_decision
+begin
+    update open_line set counted = counted + 1
+    where pull = (select pull from sample where id = new.sample);
+end;
+
+CREATE TRIGGER open_line_sampled after insert on sample
+when new.pull is not null
+begin
+    insert into open_line (pull, study, study_arm, words, test_within_days)
+    select p.id, a.study, a.id, w.words, p.test_within_days
+    from pull p
+    join pull_words w on w.pull = p.id
+    join study_arm a on a.id = p.study_arm
+    where p.id = new.pull and exists (select 1 from open_pull where pull = new.pull);
+end;
+
+CREATE TRIGGER open_line_taken after insert on container_event
+when new.pull is not null
+begin
+    update open_line set containers_taken = containers_taken + 1 where pull = new.pull;
+end;
+
 CREATE TRIGGER open_pull_asked after insert on sample_test
 begin
     update open_pull
@@ -1287,3 +1408,50 @@ when new.kind = 'sample' and new.meaning = 'review'
 begin
     delete from open_sample where sample = new.subject;
 end;
+
+CREATE VIEW pull_progress as
+select pull, sample, count(*) as tests, sum(started) as started,
+    sum(version is not null and coalesce(checking, '') <> 'sent back') as complete,
+    sum(version is not null and (coalesce(checking, '') = 'checked' or (checking is null and needs_check = 0)))
+        as checked,
+    sum(coalesce(checking, '') = 'sent back') as sent_back, sum(is_out) as out_of_specification,
+    max(newest) as newest
+from pull_test
+group by pull, sample;
+
+CREATE VIEW pull_test as
+select q.*,
+    (select verdict from result_check where sample_test = q.sample_test and version = q.version
+     order by id desc limit 1) as checking,
+    exists (select 1 from result where sample_test = q.sample_test and version = q.version
+        and verdict = 'out of specification') as is_out
+from (
+    select s.pull as pull, s.id as sample, t.id as sample_test,
+        json_extract(v.content, '$.needs_check') as needs_check,
+        (select max(version) from result where sample_test = t.id) as version,
+        exists (select 1 from reading where sample_test = t.id) as started,
+        max(coalesce((select max(act) from result where sample_test = t.id), 0),
+            coalesce((select max(act) from reading where sample_test = t.id), 0)) as newest
+    from sample s
+    cross join sample_test t on t.sample = s.id
+    cross join method_version v on v.id = t.method_version
+    where s.pull is not null) q;
+
+CREATE VIEW pull_words as
+select p.id as pull,
+    replace(l.number, char(31), ' ') || char(31) || replace(d.name || ', ' || n.pack, char(31), ' ') || char(31)
+        || replace(n.container_word, char(31), ' ') || char(31) || y.number || char(31)
+        || replace(c.name, char(31), ' ') || ', ' || a.orientation || char(31)
+        || replace(coalesce(h.code, ''), char(31), ' ') || char(31) || p.age_text || char(31)
+        || s.number || char(31) || lower(hex(p.uuid)) || char(31)
+        || p.due_on || char(31) || coalesce(p.earliest_on, '') || char(31) || coalesce(p.latest_on, '') || char(31)
+        || p.containers_needed as words
+from pull p
+cross join study_arm a on a.id = p.study_arm
+join condition c on c.id = a.condition
+left join chamber h on h.id = a.chamber
+join study y on y.id = a.study
+join lot l on l.id = y.lot
+join presentation n on n.id = l.presentation
+join product d on d.id = n.product
+join sample s on s.pull = p.id;

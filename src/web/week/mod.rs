@@ -146,6 +146,7 @@ struct WeekPage<'a> {
     people: Vec<PersonView>,
     coming: Vec<(String, usize, String)>,
     is_cut: bool,
+    is_urgent_cut: bool,
 }
 
 fn the_week(visit: &Visit) -> Outcome {
@@ -182,6 +183,7 @@ fn the_week(visit: &Visit) -> Outcome {
         people: people(&facts.people, today),
         coming: coming(&facts.coming, today),
         is_cut: in_week > facts.pulls.len(),
+        is_urgent_cut: facts.counts.urgent > facts.urgent.len(),
     })
 }
 
