@@ -10,6 +10,7 @@ pub mod condition;
 pub mod container;
 pub mod deviation;
 pub mod equipment;
+pub mod forecast;
 pub mod formulation;
 pub mod import;
 pub mod instrument;

@@ -101,10 +101,16 @@ fn put_results(change: &mut Change<'_>, sample: &BenchSample, test: &BenchTest) 
     if let Some(first) = judged.first_mut() {
         first.flags.extend(bench_flags(&test.content, &readings, now));
     }
+    let trend = super::trend::Judge::of(change, sample, test)?;
     let mut told = Vec::new();
     for one in &mut judged {
-        one.flags.extend(super::trend::first_signal(change, sample, test, one)?);
+        let followed = trend.as_ref().map(|trend| trend.judged(sample, test, one));
+        let flags = followed.iter().flat_map(|found| &found.verdicts).filter_map(|found| found.flag.clone());
+        one.flags.extend(flags);
         let result = store::result::insert(change, test.id, version, one)?;
+        if let Some(followed) = followed {
+            followed.put(change, result)?;
+        }
         for flag in &one.flags {
             store::flag::insert(change, result, flag)?;
         }

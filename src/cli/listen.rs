@@ -10,6 +10,7 @@ use tokio::net::TcpListener;
 use tokio::sync::Semaphore;
 use tower::ServiceExt;
 
+use super::timed;
 use crate::domain::failure::Failure;
 use crate::web::app::App;
 use crate::web::serve::{Client, router};
@@ -36,7 +37,10 @@ pub fn run(app: Arc<App>, address: SocketAddr, ready: impl FnOnce(SocketAddr)) -
     runtime.block_on(async {
         let listener = TcpListener::bind(address).await.map_err(|error| taken(address, &error))?;
         ready(listener.local_addr()?);
-        accept(app, listener).await
+        let timed = tokio::spawn(timed::work(Arc::clone(&app)));
+        let served = accept(app, listener).await;
+        timed.abort();
+        served
     })
 }
 

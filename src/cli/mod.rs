@@ -11,6 +11,7 @@ pub mod listen;
 pub mod lot_file;
 pub mod restore;
 pub mod serve;
+pub mod timed;
 pub mod verify;
 
 use std::process::ExitCode;

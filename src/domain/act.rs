@@ -123,6 +123,10 @@ acts! {
     DecideReview, "decided on a pull", Roles(&[QaReviewer]);
     SignPulls, "signed pulls", Roles(&[QaReviewer]);
 
+    DeclareAlike, "declared versions one history", Roles(&[QaReviewer]);
+    LeaveOutOfTrend, "decided on a result in the history", Roles(&[QaReviewer]);
+    SealForecast, "sealed forecasts", System;
+
     ExportLotFile, "exported a lot file", Roles(&[Formulator, LabManager, QaReviewer, Auditor]);
     ImportResults, "imported results", Roles(&[LabManager]);
 }

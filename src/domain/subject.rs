@@ -30,10 +30,11 @@ pub enum Kind {
     Sample,
     Investigation,
     Import,
+    TrendEquivalence,
 }
 
 impl Kind {
-    pub const ALL: [Kind; 27] = [
+    pub const ALL: [Kind; 28] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -61,6 +62,7 @@ impl Kind {
         Kind::Sample,
         Kind::Investigation,
         Kind::Import,
+        Kind::TrendEquivalence,
     ];
 
     /// The table of the record, and the word stored beside its number.
@@ -93,6 +95,7 @@ impl Kind {
             Kind::Sample => "sample",
             Kind::Investigation => "investigation",
             Kind::Import => "import",
+            Kind::TrendEquivalence => "trend_equivalence",
         }
     }
 

@@ -49,6 +49,7 @@ pub mod stop;
 pub mod study;
 pub mod submission;
 pub mod trail;
+pub mod trend;
 pub mod trigger;
 pub mod verify;
 pub mod version;

@@ -121,16 +121,3 @@ pub fn earlier(reader: &Reader<'_>, study_arm: i64, test: &str, before_pull: i64
     });
     Ok(dated.collect())
 }
-
-/// The actual age of a pull in months, where both dates are known.
-pub fn age_months(reader: &Reader<'_>, pull: i64) -> Answer<Option<Decimal>> {
-    let dates = reader.maybe(
-        "select y.started_on,
-             (select e.happened_on from pull_event e where e.pull = p.id order by e.id desc limit 1)
-         from pull p join study_arm a on a.id = p.study_arm join study y on y.id = a.study
-         where p.id = :pull",
-        named_params! { ":pull": pull },
-        |row| Ok((row.get::<_, Option<Day>>(0)?, row.get::<_, Option<Day>>(1)?)),
-    )?;
-    Ok(dates.and_then(|(started, pulled)| Some(actual_months(started?.0, pulled?.0))))
-}

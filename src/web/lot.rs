@@ -182,6 +182,8 @@ struct LotPage {
     samples: Vec<store::lot::SampleLine>,
     studies: Vec<(store::lot::StudyLine, String)>,
     links: Vec<(String, &'static str)>,
+    /// Path, test and place, what the early warning says.
+    warnings: Vec<(String, String, String)>,
     distribution: Option<Form>,
     trail: Trail,
 }
@@ -191,13 +193,14 @@ fn one(visit: &Visit) -> Outcome {
 }
 
 fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
-    let (lot, packed, distributions, samples, studies, lines) = visit.read(|reader| {
+    let (lot, packed, distributions, samples, studies, warnings, lines) = visit.read(|reader| {
         Ok((
             store::lot::get(reader, id)?,
             store::lot::packed_from(reader, id)?,
             store::lot::distributions(reader, id)?,
             store::lot::samples(reader, id)?,
             store::lot::studies(reader, id)?,
+            store::trend::tally::warnings_of_lot(reader, id)?,
             store::trail::of_subject(reader, Subject::new(Kind::Lot, id))?,
         ))
     })?;
@@ -229,6 +232,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
         samples,
         studies: studies.into_iter().map(started).collect(),
         links: links(visit, id, state),
+        warnings: warnings.into_iter().map(super::trend::warning).collect(),
         distribution,
         trail: Trail::of(&lines, visit.at.zone),
         lot,

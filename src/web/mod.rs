@@ -62,6 +62,7 @@ pub mod static_file;
 pub mod stop;
 pub mod study;
 pub mod table;
+pub mod trend;
 pub mod version;
 pub mod visit;
 pub mod week;

@@ -98,6 +98,7 @@ pub fn all() -> Vec<Route> {
         super::result::ROUTES,
         super::check::ROUTES,
         super::review::ROUTES,
+        super::trend::ROUTES,
         super::investigation::ROUTES,
         super::attachment::ROUTES,
         super::import::ROUTES,

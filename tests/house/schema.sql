@@ -116,6 +116,16 @@ CREATE INDEX study_by_lot on study (lot);
 
 CREATE INDEX trail_change_update on trail_change (record, row, act) where kind = 'update';
 
+CREATE INDEX trend_equivalence_by_pair on trend_equivalence (kind, one, other);
+
+CREATE INDEX trend_exclusion_by_test on trend_exclusion (sample_test, component);
+
+CREATE INDEX trend_forecast_by_seal on trend_forecast (seal);
+
+CREATE INDEX trend_verdict_by_day on trend_verdict (judged_on, verdict) where rule in ('H', 'A');
+
+CREATE INDEX trend_verdict_by_result on trend_verdict (result);
+
 CREATE TABLE account (
     id integer primary key,
     user_name text not null collate nocase unique,
@@ -1064,6 +1074,78 @@ CREATE TABLE trail_subject (
     act integer not null,
     primary key (kind, subject, act)
 ) strict, without rowid;
+
+CREATE TABLE trend_equivalence (
+    id integer primary key,
+    kind text not null check (kind in ('formulation version', 'method version')),
+    one integer not null,
+    other integer not null check (other > one),
+    state text not null check (state in ('declared', 'withdrawn')),
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE trend_exclusion (
+    id integer primary key,
+    sample_test integer not null references sample_test (id),
+    component text not null,
+    state text not null check (state in ('left out', 'taken back')),
+    why text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE trend_forecast (
+    id integer primary key,
+    seal integer not null references trend_seal (id),
+    sample_test integer not null references sample_test (id),
+    component text not null,
+    content text not null,
+    digest text not null,
+    history integer references trend_history (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (sample_test, component)
+) strict;
+
+CREATE TABLE trend_history (
+    id integer primary key,
+    digest text not null unique,
+    content text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE trend_seal (
+    id integer primary key,
+    pull integer not null unique references pull (id),
+    window_opened_on text not null,
+    days_late integer not null check (days_late >= 0),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE trend_verdict (
+    id integer primary key,
+    result integer not null references result (id),
+    rule text not null check (rule in ('H', 'A', 'HL', 'HS')),
+    verdict text not null check (verdict in ('not evaluable', 'in trend', 'alert', 'action', 'no warning', 'likely',
+        'very likely')),
+    sentence text not null,
+    age_days integer not null,
+    needs text,                             -- what is missing, for a verdict that could not be given
+    lower text,                             -- of the band outside which a result is an alert; centre is the median
+    centre text,
+    upper text,
+    action_lower text,
+    action_upper text,
+    degrees_of_freedom text,
+    probability text,                       -- two-sided p; for HS that the mean is outside at expiry
+    alert_level text,
+    action_level text,
+    month integer,                          -- HS: the first whole month with the mean more likely outside than inside
+    history integer references trend_history (id),
+    forecast integer references trend_forecast (id),
+    judged_on text not null,
+    detail text not null,                   -- JSON: context rules, history screen, weights, how the forecast was sealed
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
 
 CREATE TRIGGER arm_stock_fewer after insert on container_event
 when not exists (select 1 from container_event where container = new.container and id <> new.id)

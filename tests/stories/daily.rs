@@ -75,7 +75,7 @@ fn the_trend_speaks_once_a_study_has_enough_ages() {
         ("Initial", "2026-12-01T09:00:00Z", "97.0", "needs"),
         ("3 months", "2027-03-01T09:00:00Z", "96.1", "needs"),
         ("6 months", "2027-06-01T09:00:00Z", "95.0", "needs"),
-        ("9 months", "2027-09-01T09:00:00Z", "70.0", "Trend action: 0.7 is outside"),
+        ("9 months", "2027-09-01T09:00:00Z", "70.0", "Trend action: 0.70 lies outside"),
     ];
     for (age, clock, bed_mm, words) in ages {
         lab.clock(clock);

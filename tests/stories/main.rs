@@ -43,6 +43,7 @@ mod signatures;
 mod specifications;
 mod studies;
 mod trail;
+mod trends;
 mod upgrades;
 mod verification;
 mod weeks;

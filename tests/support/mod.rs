@@ -5,6 +5,7 @@
 
 pub mod aged;
 pub mod samples;
+pub mod trends;
 pub mod world;
 
 use std::path::PathBuf;

@@ -25,7 +25,7 @@ use super::{Lab, Seen};
 pub struct Bench<'a> {
     pub lab: &'a Lab,
     pub presentation: i64,
-    formulation_version: i64,
+    pub formulation_version: i64,
 }
 
 fn content(unit: &str, decimals: u32) -> MethodContent {
@@ -90,10 +90,14 @@ impl<'a> Bench<'a> {
     }
 
     pub fn lot_made_on(&self, number: &str, made_on: NaiveDate) -> i64 {
+        self.lot_of_version(number, made_on, self.formulation_version)
+    }
+
+    pub fn lot_of_version(&self, number: &str, made_on: NaiveDate, formulation_version: i64) -> i64 {
         let new = NewLot {
             number: number.to_string(),
             presentation: self.presentation,
-            formulation_version: self.formulation_version,
+            formulation_version,
             made_on,
             size: None,
             size_unit: None,

@@ -121,6 +121,7 @@ impl Player<'_> {
         let pulls = self.db.read(|reader| store::pull::of_study(reader, study))?;
         for pull in pulls {
             let Some(due) = pull.facts.due_on else { continue };
+            self.plan(pull.facts.earliest_on.unwrap_or(due), 0, 5, Scene::SealForecasts);
             self.plan(working_day(due), 9, 20, Scene::TakePull { lot: at, pull: pull.id });
         }
         Ok(())

@@ -139,7 +139,7 @@ fn redispersibility() -> MethodContent {
     let settings = Settings::Redispersibility {
         cap: 100,
         beat_per_minute: 60,
-        inspect_every: 5,
+        inspect_every: 1,
         instruction: "Turn the bottle through 180° and back, one inversion a second; look at the base."
             .to_string(),
     };

@@ -62,10 +62,23 @@ pub struct LimitRow {
     pub test: String,
     pub title: String,
     pub method: String,
+    #[serde(deserialize_with = "as_written")]
     pub release_lower: Option<Decimal>,
+    #[serde(deserialize_with = "as_written")]
     pub release_upper: Option<Decimal>,
+    #[serde(deserialize_with = "as_written")]
     pub shelf_lower: Option<Decimal>,
+    #[serde(deserialize_with = "as_written")]
     pub shelf_upper: Option<Decimal>,
+}
+
+/// A limit with the decimals it is written with: 0.80 is not 0.8, since values are rounded to its last place.
+fn as_written<'de, D: serde::Deserializer<'de>>(reader: D) -> Result<Option<Decimal>, D::Error> {
+    let text = String::deserialize(reader)?;
+    if text.is_empty() {
+        return Ok(None);
+    }
+    Decimal::from_str_exact(&text).map(Some).map_err(serde::de::Error::custom)
 }
 
 #[derive(Clone, Debug, Deserialize)]
@@ -199,6 +212,8 @@ mod tests {
         assert_eq!(packing.at(Decimal::from(12)), "0.8790".parse().unwrap());
         assert_eq!(start("TW-330-0702", "40/75", "upright", "viscosity"), "-470");
         assert_eq!(start("TW-330-0714", "40/75", "upright", "viscosity"), "-150");
+        let bed = seed.limits.iter().find(|limit| limit.product == "TW-104" && limit.test == "sedimentation");
+        assert_eq!(bed.unwrap().shelf_lower.unwrap().to_string(), "0.80");
         for limit in &seed.limits {
             if !["appearance"].contains(&limit.test.as_str()) {
                 assert!(

@@ -159,6 +159,8 @@ pub mod flag_kind {
     pub const HIGH_RATIO: &str = "high sedimentation ratio";
     pub const OUT_OF_TREND: &str = "out of trend";
     pub const NOT_EVALUABLE: &str = "not evaluable";
+    pub const LOT_TREND: &str = "trend of the lot";
+    pub const EARLY_WARNING: &str = "early warning";
 }
 
 /// A flag to be stored with its result.

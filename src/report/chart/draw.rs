@@ -138,6 +138,7 @@ impl Canvas {
                 let (x, y) = self.place(point, *reading);
                 self.shape("point-open", circle(x, y, "2.5"));
             }
+            self.forecast(point);
             let (x, y) = self.place(point, value);
             let (class, path) = mark(point, place, x, y);
             self.shape(class, path);
@@ -191,6 +192,15 @@ impl Canvas {
             path.push('z');
         }
         path
+    }
+
+    /// A bracket from the lower to the upper limit of the forecast at the point's age.
+    fn forecast(&mut self, point: &Point) {
+        let Some((lower, upper)) = point.forecast else { return };
+        let (x, low) = self.place(point, lower);
+        let (_, high) = self.place(point, upper);
+        let left = plain(x - Decimal::from(7));
+        self.shape("bound", format!("M{left} {}h14m-7 0V{}m-7 0h14", plain(low), plain(high)));
     }
 
     /// The straight line through the series' own points.

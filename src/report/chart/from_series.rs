@@ -22,6 +22,8 @@ pub struct About<'a> {
     /// Draws the straight line through the lot's own points.
     pub has_fit: bool,
     pub is_small: bool,
+    /// Forecasts of single results: test of the sample, component, lower and upper limit.
+    pub forecasts: &'a [(i64, String, Decimal, Decimal)],
 }
 
 /// One chart for each test and component, in the order of the points. Tests in words have none.
@@ -127,6 +129,11 @@ pub(in crate::report) fn drawn_point(point: &SeriesPoint, about: &About<'_>) -> 
         mark,
         is_signed: point.is_signed,
         is_asked: about.asked == Some(point.sample),
+        forecast: about
+            .forecasts
+            .iter()
+            .find(|(test, part, _, _)| *test == point.sample_test && *part == point.component)
+            .map(|(_, _, lower, upper)| (*lower, *upper)),
     }
 }
 

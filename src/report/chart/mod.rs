@@ -96,6 +96,8 @@ pub struct Point {
     pub is_signed: bool,
     /// The point this page is about: drawn with a ring and its value beside it.
     pub is_asked: bool,
+    /// The limits of the forecast made before it was measured, drawn as a bracket.
+    pub forecast: Option<(Decimal, Decimal)>,
 }
 
 /// Whether a value is known, or only that it lies beyond.

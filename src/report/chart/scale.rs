@@ -46,8 +46,10 @@ impl Axis {
 /// The same test with the same limits keeps its axis over all pulls and lots (screen_U115).
 pub fn values(chart: &Chart, from: i64, to: i64) -> Axis {
     let (least, most) = around_limits(chart.lower, chart.upper);
-    let drawn =
-        chart.valued().flat_map(|(_, point)| point.value.into_iter().chain(point.replicates.iter().copied()));
+    let drawn = chart.valued().flat_map(|(_, point)| {
+        let forecast = point.forecast.into_iter().flat_map(|(lower, upper)| [lower, upper]);
+        point.value.into_iter().chain(point.replicates.iter().copied()).chain(forecast)
+    });
     let (least, most) = drawn.fold((least, most), |(least, most), value| {
         (
             Some(least.map_or(value, |known| known.min(value))),

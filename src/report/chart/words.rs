@@ -101,7 +101,7 @@ pub fn limits(chart: &Chart) -> String {
 /// What the shapes that occur mean, in one sentence for the caption.
 pub fn key(chart: &Chart) -> String {
     let has = |test: &dyn Fn(&Point) -> bool| chart.valued().any(|(_, point)| test(point));
-    let table: [(bool, &str); 8] = [
+    let table: [(bool, &str); 9] = [
         (has(&|point| point.mark == Mark::None && point.is_signed), "filled: signed"),
         (has(&|point| point.mark == Mark::None && !point.is_signed), "open ring: not signed yet"),
         (!chart.is_group && has(&|point| !point.replicates.is_empty()), "small open: single readings"),
@@ -110,6 +110,7 @@ pub fn key(chart: &Chart) -> String {
         (has(&|point| point.mark == Mark::Imported), "ring with a dot: imported"),
         (has(&|point| point.mark == Mark::SetAside), "cross: set aside"),
         (has(&|point| point.bound != Bound::Equal), "arrow: beyond the value"),
+        (has(&|point| point.forecast.is_some()), "bracket: its forecast, outside which it is an alert"),
     ];
     let line = "straight line: least squares through the lot's own points, no shelf life";
     let fitted = chart.has_fit && chart.series.iter().any(|series| fit::ends(series).is_some());

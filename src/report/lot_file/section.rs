@@ -7,8 +7,27 @@ use crate::domain::moment::Moment;
 use crate::report::chart::from_series::of_arms;
 
 /// Columns that stand elsewhere in the line, or only in the data files.
-const NOT_SHOWN: [&str; 9] =
-    ["id", "act", "content", "detail", "numbers", "hints", "supersedes", "superseded_by", "offset_minutes"];
+const NOT_SHOWN: [&str; 19] = [
+    "id",
+    "act",
+    "content",
+    "detail",
+    "numbers",
+    "hints",
+    "supersedes",
+    "superseded_by",
+    "offset_minutes",
+    "lower",
+    "centre",
+    "upper",
+    "action_lower",
+    "action_upper",
+    "degrees_of_freedom",
+    "probability",
+    "alert_level",
+    "action_level",
+    "needs",
+];
 
 /// Everything about the lot, section by section.
 pub fn by_section(file: &LotFile, place: Place) -> Document {
@@ -34,6 +53,13 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
         charts: of_arms(&file.number, &file.series, false),
         ..maker.tables("charts", "Charts", "", &[])
     });
+    sections.push(maker.tables(
+        "trend",
+        "Trend",
+        "Each result against a forecast made before it was measured. Forecasts stand here once their readings are \
+         recorded.",
+        &["trend_verdicts", "trend_forecasts", "trend_exclusions"],
+    ));
     sections.push(maker.tables("containers", "Containers", "", &["containers", "container_events"]));
     sections.push(maker.tables(
         "samples",

@@ -40,6 +40,11 @@ impl Tally {
         Self { judged, expected, found, ordinary: ordinary(expected) }
     }
 
+    /// Where results were judged at different levels: the sum of them is expected.
+    pub fn expecting(judged: u32, expected: f64, found: u32) -> Self {
+        Self { judged, expected, found, ordinary: ordinary(expected) }
+    }
+
     /// More than is ordinary: real trouble, or heavy tails, or a wrong scale.
     pub fn stands_out(&self) -> bool {
         self.found > self.ordinary

@@ -109,6 +109,54 @@ pub(super) const QUERIES: &[Query] = &[
         ),
     },
     Query {
+        name: "trend_verdicts",
+        title: "Trend verdicts",
+        numeric: &["lower", "centre", "upper", "degrees_of_freedom", "probability"],
+        sql: of_family!(
+            "select v.id, s.number as sample, t.title, r.component, r.version, v.rule, v.verdict, v.sentence, v.lower,
+                 v.centre, v.upper, v.action_lower, v.action_upper, v.degrees_of_freedom, v.probability, v.alert_level,
+                 v.action_level, v.needs, h.digest as history_digest, v.judged_on, v.detail, v.act
+             from trend_verdict v
+             join result r on r.id = v.result
+             join sample_test t on t.id = r.sample_test
+             join sample s on s.id = t.sample
+             left join trend_history h on h.id = v.history
+             where s.lot in (select id from family)
+             order by s.id, t.position, v.id"
+        ),
+    },
+    Query {
+        name: "trend_forecasts",
+        title: "Forecasts sealed before their readings",
+        numeric: &[],
+        sql: of_family!(
+            "select f.id, s.number as sample, t.title, f.component, a.at as sealed_at, e.days_late, f.digest,
+                 f.content, f.act
+             from trend_forecast f
+             join trend_seal e on e.id = f.seal
+             join sample_test t on t.id = f.sample_test
+             join sample s on s.id = t.sample
+             join trail_act a on a.id = f.act
+             where s.lot in (select id from family) and exists (select 1 from reading where sample_test = t.id)
+             order by s.id, t.position, f.id"
+        ),
+    },
+    Query {
+        name: "trend_exclusions",
+        title: "Results left out of the history of later verdicts",
+        numeric: &[],
+        sql: of_family!(
+            "select x.id, s.number as sample, t.title, x.component, x.state, x.why, a.full_name as decided_by,
+                 a.at as decided_at, x.act
+             from trend_exclusion x
+             join sample_test t on t.id = x.sample_test
+             join sample s on s.id = t.sample
+             join trail_act a on a.id = x.act
+             where s.lot in (select id from family)
+             order by x.id"
+        ),
+    },
+    Query {
         name: "stage_losses",
         title: "Stages passed on without their readings",
         numeric: &[],

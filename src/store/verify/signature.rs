@@ -7,7 +7,7 @@ use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
 use crate::store::{
     Answer, Reader, condition, deviation, investigation, lot_decision, material_lot, review, shelf_life,
-    signature, stop, version,
+    signature, stop, trend, version,
 };
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
@@ -47,6 +47,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::Condition => condition::canonical_of(reader, signed.subject.id),
         Kind::MaterialLot => material_lot::canonical_of_signature(reader, signed.id),
         Kind::Deviation => deviation::canonical_of_signature(reader, signed.subject.id, signed.id),
+        Kind::TrendEquivalence => trend::alike::canonical_of(reader, signed.subject.id),
         Kind::Investigation => investigation::canonical_of(reader, signed.subject.id),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }

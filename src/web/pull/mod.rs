@@ -12,6 +12,7 @@ use super::reply::{Outcome, page_with};
 use super::route::{Route, get, post};
 use super::show;
 use super::study::one::mark;
+use super::table::Table;
 use super::visit::Visit;
 use crate::acts;
 use crate::domain::act::Act;
@@ -45,6 +46,7 @@ struct PullPage {
     minutes: String,
     containers: Vec<(i64, String, String, String)>,
     tests: Vec<TestLine>,
+    trend: Table,
     is_at_bench: bool,
     forms: Vec<PullForm>,
     trail: Trail,
@@ -99,12 +101,13 @@ fn container_row(visit: &Visit, line: LedgerLine) -> (i64, String, String, Strin
 }
 
 fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
-    let (pull, containers, tests, lines) = visit.read(|reader| {
+    let (pull, containers, tests, verdicts, lines) = visit.read(|reader| {
         let pull = store::pull::get(reader, id)?;
         let containers = store::container::of_pull(reader, id)?;
         let tests = store::pull::tests(reader, pull.sample)?;
         let lines = store::trail::of_subject(reader, Subject::new(Kind::Pull, id))?;
-        Ok((pull, containers, tests, lines))
+        let verdicts = store::trend::verdict::of_sample(reader, pull.sample)?;
+        Ok((pull, containers, tests, verdicts, lines))
     })?;
     let today = visit.at.date();
     let mut forms = forms(visit, &pull)?;
@@ -126,6 +129,7 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
         minutes: minutes_words(pull.minutes),
         containers: containers.into_iter().map(|line| container_row(visit, line)).collect(),
         tests,
+        trend: super::trend::table(&verdicts),
         is_at_bench: pull.facts.event == Some(Event::Pulled) || pull.facts.is_imported,
         forms,
         trail: Trail::of(&lines, visit.at.zone),

@@ -21,6 +21,7 @@ use crate::store::bench::{BenchSample, BenchTest};
 use crate::store::flag::Flag;
 use crate::store::investigation::Investigation;
 use crate::store::result::StoredResult;
+use crate::store::trend::verdict::Verdict;
 use crate::web::visit::Visit;
 
 /// What a test page is made from.
@@ -32,6 +33,7 @@ pub struct Loaded {
     pub slots: Vec<Slot>,
     pub results: Vec<StoredResult>,
     pub flags: Vec<Flag>,
+    pub verdicts: Vec<Verdict>,
     pub investigations: Vec<Investigation>,
     pub instruments: Vec<InstrumentFacts>,
     /// Reference photographs of the method's grades: digest and file.
@@ -95,6 +97,7 @@ pub fn load(visit: &Visit, id: i64) -> Result<Loaded, Failure> {
             slots: slots.collect(),
             results: store::result::of_test(reader, id)?,
             flags: store::flag::of_test(reader, id)?,
+            verdicts: store::trend::verdict::of_test(reader, id)?,
             investigations: store::investigation::of_test(reader, id)?,
             is_label_right: labelled(&label, &sample.number, &sample.containers).is_some(),
             instrument: chosen(&asked("instrument"), &instruments, &readings, today),

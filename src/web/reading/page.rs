@@ -21,6 +21,7 @@ use crate::web::part::{StatusMark, Trail};
 use crate::web::reply::{Outcome, page_with};
 use crate::web::sedimentation::{Cylinders, cylinders};
 use crate::web::show;
+use crate::web::trend::{TrendPart, is_told_by_verdict};
 use crate::web::visit::Visit;
 
 /// One instrument to choose from.
@@ -94,6 +95,7 @@ struct TestPage<'a> {
     questions: Vec<Asked>,
     results: Vec<ResultRow>,
     flags: Vec<(bool, String)>,
+    trend: TrendPart,
     changes: Vec<ChangeRow>,
     read: Vec<ReadRow>,
     stale: Option<Stale>,
@@ -151,6 +153,7 @@ pub fn test_page(status: u16, visit: &Visit, loaded: &Loaded, said: &Said, stale
         questions: if is_ready { questions(loaded) } else { Vec::new() },
         results: results(loaded, visit),
         flags: flags(loaded),
+        trend: TrendPart::of(&loaded.verdicts),
         changes: changes(loaded, visit),
         read: read_rows(loaded, visit, &refusals),
         saved: saved_words(loaded, visit),
@@ -255,10 +258,11 @@ fn results(loaded: &Loaded, visit: &Visit) -> Vec<ResultRow> {
         .collect()
 }
 
-/// Of the newest version: whether it is an exception, and its sentence.
+/// Of the newest version: whether it is an exception, and its sentence; what the trend says stands by itself.
 fn flags(loaded: &Loaded) -> Vec<(bool, String)> {
     let newest = loaded.results.first().map(|result| result.version);
-    let of_newest = loaded.flags.iter().filter(|flag| Some(flag.version) == newest);
+    let is_said = |kind: &str| !loaded.verdicts.is_empty() && is_told_by_verdict(kind);
+    let of_newest = loaded.flags.iter().filter(|flag| Some(flag.version) == newest && !is_said(&flag.kind));
     of_newest.map(|flag| (flag.level == "exception", flag.sentence.clone())).collect()
 }
 

@@ -72,7 +72,7 @@ fn card(
 
 fn class(one: &Exception) -> &'static str {
     match (one.kind.as_str(), one.is_action) {
-        ("out of trend", _) => "exception trend",
+        ("out of trend" | "trend of the lot" | "early warning", _) => "exception trend",
         (_, true) => "exception",
         _ => "exception side",
     }

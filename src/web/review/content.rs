@@ -5,6 +5,7 @@ use chrono_tz::Tz;
 use crate::domain::reading::{Question, interval_words, shown};
 use crate::store::review::page::{CheckLine, ReadingLine, ResultLine};
 use crate::web::show;
+use crate::web::trend::TrendPart;
 
 /// One test with its latest results and all its readings.
 #[derive(Clone, Debug)]
@@ -16,6 +17,7 @@ pub struct TestBlock {
     pub readings: Vec<ReadingRow>,
     /// "Completed by …", "Checked by …", "Sent back by …, because …", oldest first.
     pub steps: Vec<String>,
+    pub trend: TrendPart,
 }
 
 /// A result with its limit, as every page prints it (screen_U104).
@@ -152,6 +154,7 @@ pub fn tests(
                     .map(|line| reading_row(line, zone))
                     .collect(),
                 steps: Vec::new(),
+                trend: TrendPart::default(),
             });
         }
         let Some(block) = blocks.last_mut() else { continue };

@@ -15,7 +15,9 @@ use crate::store::review::facts::{Head, ReviewSample};
 use crate::store::review::page::{CheckLine, ReadingLine, ResultLine};
 use crate::store::signature::Signature;
 use crate::store::trail::Recent;
+use crate::store::trend::verdict::Verdict;
 use crate::store::{Answer, Reader};
+use crate::web::trend::bands;
 
 /// Everything about one sample.
 pub struct Loaded {
@@ -33,6 +35,7 @@ pub struct Loaded {
     pub points: Vec<SeriesPoint>,
     pub clarities: Vec<(i64, u8)>,
     pub investigations: Vec<(i64, i64)>,
+    pub verdicts: Vec<Verdict>,
     pub trail: Recent,
 }
 
@@ -55,6 +58,7 @@ pub fn load(reader: &Reader<'_>, id: i64) -> Answer<Loaded> {
         set: limit_set(&sample.head),
         points,
         clarities,
+        verdicts: store::trend::verdict::of_sample(reader, id)?,
         investigations: store::review::page::investigations(reader, id)?,
         trail: store::trail::of_subject(reader, Subject::new(Kind::Sample, id))?,
         sample,
@@ -91,7 +95,9 @@ pub fn limit_set(head: &Head) -> Option<LimitSet> {
 impl Loaded {
     /// The charts of all tests with numbers, this sample's points marked.
     pub fn charts(&self, id_prefix: &str, is_small: bool) -> Vec<(String, Chart)> {
+        let bands = bands(&self.verdicts);
         let about = About {
+            forecasts: &bands,
             lot: &self.sample.head.lot_number,
             condition: &self.sample.head.condition,
             specification: self.specification.as_ref(),

@@ -23,6 +23,7 @@ use crate::web::part::{Signatures, StatusMark, Trail};
 use crate::web::photo::Photos;
 use crate::web::reply::{Outcome, page_with};
 use crate::web::show;
+use crate::web::trend::TrendPart;
 use crate::web::visit::Visit;
 
 #[derive(Template)]
@@ -85,7 +86,11 @@ fn view(visit: &Visit, loaded: &Loaded) -> Result<SamplePage, Failure> {
     let limit = |test: &str, component: &str| {
         content::limit_words(loaded.specification.as_ref(), loaded.set, test, component)
     };
-    let tests = content::tests(&loaded.results, &loaded.readings, &loaded.checks, &limit, zone);
+    let mut tests = content::tests(&loaded.results, &loaded.readings, &loaded.checks, &limit, zone);
+    for block in &mut tests {
+        let own: Vec<_> = loaded.verdicts.iter().filter(|one| one.sample_test == block.id).cloned().collect();
+        block.trend = TrendPart::of(&own);
+    }
     let rules = rules(&loaded.checked);
     let account = visit.actor()?.account;
     let refusal = may_agree(facts, account).err();
