@@ -90,6 +90,11 @@ acts! {
     WriteDeviation, "wrote in a deviation", Roles(&[ProductionOperator, Analyst, LabManager, QaReviewer]);
     CloseDeviation, "decided on a deviation", Roles(&[QaReviewer]);
 
+    CountPackaging, "counted containers or labels", Roles(&[ProductionOperator, LabManager]);
+    CheckPackaging, "checked a reconciliation", Roles(&[ProductionOperator, LabManager, QaReviewer]);
+    KeepRetain, "recorded a retain", Roles(&[ProductionOperator, Analyst, LabManager]);
+    RecordRetainEvent, "recorded a retain event", Roles(&[Analyst, LabManager, QaReviewer]);
+
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
     RecordDistribution, "recorded the distribution of a lot", Roles(&[QaReviewer]);
     DecideLot, "decided on a lot", Roles(&[QaReviewer]);

@@ -181,6 +181,7 @@ struct LotPage {
     distributions: Vec<(String, String)>,
     samples: Vec<store::lot::SampleLine>,
     studies: Vec<(store::lot::StudyLine, String)>,
+    made_with: super::lot_parts::Parts,
     links: Vec<(String, &'static str)>,
     /// Path, test and place, what the early warning says.
     warnings: Vec<(String, String, String)>,
@@ -231,6 +232,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
         distributions: distributions.into_iter().map(|one| (date_shown(one.first_on), one.markets)).collect(),
         samples,
         studies: studies.into_iter().map(started).collect(),
+        made_with: super::lot_parts::Parts::of(visit, id)?,
         links: links(visit, id, state),
         warnings: warnings.into_iter().map(super::trend::warning).collect(),
         distribution,
@@ -256,6 +258,13 @@ fn links(visit: &Visit, id: i64, state: LotState) -> Vec<(String, &'static str)>
     }
     if visit.may(Act::StartStudy) {
         links.push((format!("/studies/new?lot={id}"), "Start a study"));
+    }
+    links.push((format!("/lots/{id}/packaging"), "Containers and labels"));
+    if visit.may(Act::KeepRetain) {
+        links.push((format!("/lots/{id}/retains/new"), "Record a retain"));
+    }
+    if visit.may(Act::OpenDeviation) {
+        links.push((format!("/deviations/new?lot={id}"), "Open a deviation"));
     }
     if visit.may(Act::DecideLot) {
         links.push((format!("/lots/{id}/decision"), "Release or reject"));

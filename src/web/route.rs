@@ -77,6 +77,8 @@ pub fn all() -> Vec<Route> {
         super::material_lot::ROUTES,
         super::equipment::ROUTES,
         super::deviation::ROUTES,
+        super::packaging::ROUTES,
+        super::retain::ROUTES,
         super::label::ROUTES,
         super::qualification::ROUTES,
         super::stop::ROUTES,

@@ -2,7 +2,7 @@
 
 use super::field::{Entry, Field};
 use super::form::{self, Form, Typed};
-use super::material_lot::typed_lot;
+use super::material_lot::{typed_label, typed_lot};
 use super::page::Shell;
 use super::reply::{Outcome, page};
 use super::route::{Route, get, post};
@@ -148,31 +148,13 @@ fn new_page(visit: &Visit) -> Outcome {
     form::show(visit, "Open a deviation", NEW_LEAD, new_form(visit)?)
 }
 
-/// A record named by what its label says; may be missing.
-fn scanned<T>(
-    typed: &mut Typed<'_>,
-    name: &str,
-    what: &str,
-    find: impl FnOnce(&store::Reader<'_>, &str) -> Result<Option<T>, Failure>,
-) -> Option<Option<T>> {
-    let Some(text) = typed.maybe_text(name, 60)? else { return Some(None) };
-    let visit = typed.visit;
-    match visit.read(|reader| find(reader, &text)) {
-        Ok(Some(found)) => Some(Some(found)),
-        _ => {
-            typed.fault(name, format!("There is no {what} {text}. Scan its label, or check what was typed."));
-            None
-        }
-    }
-}
-
 fn typed_new(typed: &mut Typed<'_>) -> Option<NewDeviation> {
     let (title, described) = (typed.text("title", 120), typed.text("described", 4000));
     let occurred_on = typed.date("occurred_on");
     let lot = typed_lot(typed, "lot");
     let step = typed.maybe_text("step", 120);
-    let material_lot = scanned(typed, "material_lot", "material lot", store::material_lot::by_scan);
-    let equipment = scanned(typed, "equipment", "equipment", store::equipment::by_scan);
+    let material_lot = typed_label(typed, "material_lot", "material lot", store::material_lot::by_scan);
+    let equipment = typed_label(typed, "equipment", "equipment", store::equipment::by_scan);
     Some(NewDeviation {
         title: title?,
         described: described?,

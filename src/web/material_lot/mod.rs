@@ -301,3 +301,21 @@ pub fn typed_lot(typed: &mut Typed<'_>, name: &str) -> Option<Option<i64>> {
         }
     }
 }
+
+/// A record named by what its label says; may be missing.
+pub fn typed_label<T>(
+    typed: &mut Typed<'_>,
+    name: &str,
+    what: &str,
+    find: impl FnOnce(&store::Reader<'_>, &str) -> Result<Option<T>, Failure>,
+) -> Option<Option<T>> {
+    let Some(text) = typed.maybe_text(name, 60)? else { return Some(None) };
+    let visit = typed.visit;
+    match visit.read(|reader| find(reader, &text)) {
+        Ok(Some(found)) => Some(Some(found)),
+        _ => {
+            typed.fault(name, format!("There is no {what} {text}. Scan its label, or check what was typed."));
+            None
+        }
+    }
+}
