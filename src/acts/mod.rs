@@ -46,3 +46,4 @@ pub mod study;
 pub mod trend;
 pub mod verify;
 pub mod version;
+pub mod working_days;

@@ -108,6 +108,7 @@ acts! {
     AmendStudy, "amended a study", Roles(&[LabManager]);
     TriggerArm, "triggered a contingent arm", Roles(&[LabManager, QaReviewer]);
     RecordContainer, "recorded a container", Roles(&[Analyst, LabManager]);
+    SetWorkingDays, "stated closed days and bench time", Roles(&[LabManager]);
     AssignPull, "assigned a pull", Roles(&[LabManager]);
     RecordPull, "took a pull", Roles(&[Analyst, LabManager]);
     MissPull, "recorded a pull as missed", Roles(&[LabManager]);

@@ -67,3 +67,4 @@ pub mod typed;
 pub mod version;
 pub mod week;
 pub mod window;
+pub mod working_days;

@@ -1,11 +1,14 @@
 //! Settings of the site, as rows: the newest of a name counts.
 
+use std::collections::BTreeMap;
+
 use rusqlite::named_params;
 
 use super::door::Change;
 use super::{Answer, Reader};
 use crate::domain::setting::WINDOWS;
 use crate::domain::window::Defaults;
+use crate::domain::working_days::{CLOSED_DATES, CLOSED_WEEKDAYS, MINUTES_A_DAY, WorkingDays};
 
 pub fn set(change: &Change<'_>, name: &str, value: &str) -> Answer<()> {
     change.insert(
@@ -30,4 +33,24 @@ pub fn get(reader: &Reader<'_>, name: &str) -> Answer<Option<String>> {
         named_params! { ":name": name },
         |row| row.get(0),
     )
+}
+
+/// Closed days and stated bench time that hold now.
+pub fn working_days(reader: &Reader<'_>) -> Answer<WorkingDays> {
+    let weekdays = get(reader, CLOSED_WEEKDAYS)?.unwrap_or_default();
+    let dates = get(reader, CLOSED_DATES)?.unwrap_or_default();
+    // The newest row of a name wins: rows come oldest first.
+    let rows: Vec<(String, String)> = reader.all(
+        "select name, value from setting where name > :first and name < :last order by id",
+        named_params! { ":first": MINUTES_A_DAY, ":last": format!("{MINUTES_A_DAY}~") },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )?;
+    let mut minutes: BTreeMap<i64, Option<u32>> = BTreeMap::new();
+    for (name, value) in rows {
+        if let Some(account) = name.strip_prefix(MINUTES_A_DAY).and_then(|account| account.parse().ok()) {
+            minutes.insert(account, value.parse().ok());
+        }
+    }
+    let stated = minutes.into_iter().filter_map(|(account, minutes)| Some((account, minutes?)));
+    Ok(WorkingDays::of_stored(&weekdays, &dates, stated.collect()))
 }

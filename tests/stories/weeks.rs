@@ -199,3 +199,47 @@ fn a_long_list_is_paged_by_key() {
     assert_eq!((first.len(), second.len()), (50, 6));
     assert!(second.iter().all(|path| !first.contains(path)));
 }
+
+/// Screens 15a: the sums of a day stand against the stated hours, and a closed day with something on it is marked.
+#[test]
+fn closed_days_and_stated_hours_stand_beside_the_sums() {
+    let lab = Lab::new();
+    let study = world::study(&lab, "TW-104-0640", &KINDS);
+    let pull = world::pull(&lab, study, 1, "Initial");
+    let ilse = lab.actor("ilse.brandt").account;
+    let path = format!("/pulls/{}", pull.id);
+    lab.manager().does(&path, &format!("{path}/assign"), &[("account", &ilse.to_string())]);
+    let hours = format!("hours.{ilse}");
+    let why = ("reason", "hours agreed for the winter");
+    let bad = [("dates", "25 Dec 2026\n31 Feb 2027\nEaster"), (hours.as_str(), "25"), why];
+    let seen = lab.manager().submits("/week/days", "/week/days", &bad);
+    assert_eq!(seen.status, 422, "{}", seen.text());
+    for words in ["“31 Feb 2027” is not a date", "“Easter” is not a date", "Hours"] {
+        assert!(seen.text().contains(words), "{words}: {}", seen.text());
+    }
+    let all = ["monday", "tuesday", "wednesday", "thursday", "friday", "saturday", "sunday"];
+    let mut closed: Vec<(&str, &str)> = all.iter().map(|day| (*day, "yes")).collect();
+    closed.push(why);
+    let refused = lab.manager().submits("/week/days", "/week/days", &closed);
+    assert_eq!(refused.status, 409, "{}", refused.text());
+    assert_eq!(lab.analyst().get("/week/days").status, 403);
+
+    let good =
+        [("saturday", "yes"), ("sunday", "yes"), ("dates", "25 Dec 2026"), (hours.as_str(), "0.1"), why];
+    let seen = lab.manager().does("/week/days", "/week/days", &good);
+    let over = supernate::domain::protocol::cost::minutes_words(pull.minutes - 6);
+    assert!(seen.text().contains(&format!("over by {over}")), "{}", seen.text());
+    assert!(seen.text().contains("of 6 min stated"), "{}", seen.text());
+    assert!(seen.text().contains("Saturday 5 December closed"), "{}", seen.text());
+    assert!(seen.text().contains("Fri 25"), "the closed day of a coming week: {}", seen.text());
+    lab.auditor()
+        .sees("/history", "closed on Saturday, Sunday; closed dates 25 Dec 2026; Ilse Brandt 6 min a day");
+    let kept = lab.manager().get("/week/days").form("/week/days");
+    assert!(kept.contains(&(hours.clone(), "0.1".to_string())), "{kept:?}");
+
+    lab.clock("2026-12-05T09:00:00Z");
+    lab.manager().sees("/week", "Saturday 5 December");
+    let lot = world::lot(&lab, "TW-104-0641");
+    let check = format!("/studies/new/check?lot={lot}&protocol_version=1");
+    lab.manager().sees(&check, "Initial: due on a closed day, 5 Dec 2026; its window has open days.");
+}

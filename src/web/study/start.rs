@@ -15,6 +15,7 @@ use crate::domain::moment::date_shown;
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::role::Role;
 use crate::domain::study::{NewStudy, PlannedArm};
+use crate::domain::working_days::WorkingDays;
 use crate::store;
 
 #[derive(Template)]
@@ -91,6 +92,21 @@ struct ArmPreview {
     is_contingent: bool,
     containers: u32,
     rows: Vec<(String, String, String, u32, String)>,
+    /// Ages whose window has no open day, or whose due day is a closed one.
+    closed: Vec<String>,
+}
+
+/// `12 months is due on a closed day`, and what is left of its window.
+fn closed_words(pull: &crate::domain::study::PlannedPull, working: &WorkingDays) -> Option<String> {
+    let (first, last) = (pull.window.earliest_on, pull.window.latest_on);
+    let closed = working.closed_between(first, last);
+    let is_all = first.iter_days().take_while(|day| *day <= last).count() == closed.len();
+    let (age, due) = (pull.age.words(), date_shown(pull.due_on));
+    match (is_all, working.is_closed(pull.due_on)) {
+        (true, _) => Some(format!("{age}: every day of its window is closed ({}).", pull.window.words())),
+        (false, true) => Some(format!("{age}: due on a closed day, {due}; its window has open days.")),
+        _ => None,
+    }
 }
 
 fn asked_study(visit: &Visit) -> Result<NewStudy, Failure> {
@@ -140,7 +156,7 @@ fn check_form(visit: &Visit, new: &NewStudy, prepared: &Prepared) -> Result<Form
     Ok(form)
 }
 
-fn preview(planned: &PlannedArm, words: &str) -> ArmPreview {
+fn preview(planned: &PlannedArm, words: &str, working: &WorkingDays) -> ArmPreview {
     let row = |pull: &crate::domain::study::PlannedPull| {
         (
             pull.age.words(),
@@ -155,6 +171,7 @@ fn preview(planned: &PlannedArm, words: &str) -> ArmPreview {
         is_contingent: planned.arm.is_contingent,
         containers: planned.container_count(),
         rows: planned.pulls.iter().map(row).collect(),
+        closed: planned.pulls.iter().filter_map(|pull| closed_words(pull, working)).collect(),
     }
 }
 
@@ -165,6 +182,7 @@ fn show(status: u16, visit: &Visit, prepared: &Prepared, form: Form) -> Outcome 
         .with_errors(&form);
     let planned = prepared.plan.iter().filter(|arm| !arm.arm.is_contingent).flat_map(|arm| &arm.pulls);
     let minutes = planned.clone().map(|pull| pull.cost.minutes).sum();
+    let working = visit.read(store::setting::working_days)?;
     let names = prepared.facts.arms.iter().map(|arm| arm.words.as_str());
     let page = CheckPage {
         shell,
@@ -173,7 +191,7 @@ fn show(status: u16, visit: &Visit, prepared: &Prepared, form: Form) -> Outcome 
         pulls: planned.count(),
         containers: prepared.plan.iter().map(PlannedArm::container_count).sum(),
         minutes: minutes_words(minutes),
-        arms: prepared.plan.iter().zip(names).map(|(arm, words)| preview(arm, words)).collect(),
+        arms: prepared.plan.iter().zip(names).map(|(arm, words)| preview(arm, words, &working)).collect(),
         container_word: prepared.lot.container_word.clone(),
         form,
     };

@@ -1,10 +1,11 @@
 //! The lab manager's week: what is late or closing, seven days, who has what, and the weeks to come.
 
 mod assign;
+mod days;
 mod lists;
 
 use askama::Template;
-use chrono::NaiveDate;
+use chrono::{Datelike, NaiveDate};
 
 use super::page::Shell;
 use super::part::StatusMark;
@@ -19,6 +20,7 @@ use crate::domain::failure::Failure;
 use crate::domain::moment::{date_shown, plus_days, until_shown};
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::week;
+use crate::domain::working_days::WorkingDays;
 use crate::store;
 use crate::store::open_pull::{Counts, Line, Show};
 use crate::store::week::{DaySum, OpenCylinder, PersonDay};
@@ -28,6 +30,8 @@ pub const ROUTES: &[Route] = &[
     get("/week/pulls", lists::pulls),
     get("/week/assign", assign::show),
     post("/week/assign", &[Act::AssignPull], assign::assign),
+    get("/week/days", days::show),
+    post("/week/days", &[Act::SetWorkingDays], days::set),
     get("/week/list", lists::print_list),
     get("/week/calendar.ics", lists::calendar),
 ];
@@ -86,6 +90,8 @@ pub(super) fn row(pull: &Line, today: NaiveDate) -> Row<'_> {
 struct DayView<'a> {
     heading: String,
     sum: String,
+    /// A closed day on which something falls, or more to do than there is stated time.
+    warning: String,
     is_open: bool,
     rows: Vec<Row<'a>>,
     readings: Vec<String>,
@@ -93,7 +99,8 @@ struct DayView<'a> {
 
 struct PersonView {
     name: String,
-    cells: Vec<String>,
+    /// Time, and where it is over the stated hours, by how much.
+    cells: Vec<(String, Option<String>)>,
     total: String,
 }
 
@@ -107,6 +114,7 @@ struct Facts {
     people: Vec<PersonDay>,
     coming: Vec<DaySum>,
     cylinders: Vec<OpenCylinder>,
+    working: WorkingDays,
     next: Option<(NaiveDate, i64, String)>,
 }
 
@@ -122,6 +130,7 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
             people: store::week::people(reader, today, last)?,
             coming: store::week::due_days(reader, plus_days(last, 1), week::coming_end(today))?,
             cylinders: store::week::cylinders(reader, visit.at.zone)?,
+            working: store::setting::working_days(reader)?,
             next: store::week::next(reader, last)?,
         })
     })
@@ -137,6 +146,7 @@ struct WeekPage<'a> {
     in_test: String,
     to_check: String,
     may_assign: bool,
+    may_set_days: bool,
     is_idle: bool,
     next: Option<(String, i64, String)>,
     now: String,
@@ -144,7 +154,8 @@ struct WeekPage<'a> {
     days: Vec<DayView<'a>>,
     day_heads: Vec<String>,
     people: Vec<PersonView>,
-    coming: Vec<(String, usize, String)>,
+    /// Days, pulls, bench time, closed days among them.
+    coming: Vec<(String, usize, String, String)>,
     is_cut: bool,
     is_urgent_cut: bool,
 }
@@ -174,14 +185,15 @@ fn the_week(visit: &Visit) -> Outcome {
             count => format!("{count} results wait for a check"),
         },
         may_assign: visit.may(Act::AssignPull),
+        may_set_days: visit.may(Act::SetWorkingDays),
         is_idle: in_week + late + closing + in_test == 0,
         next: facts.next.clone().map(|(on, pull, number)| (date_shown(on), pull, number)),
         now: visit.at.shown(),
         urgent: facts.urgent.iter().map(|pull| row(pull, today)).collect(),
         days,
         day_heads: week::days(today).into_iter().map(short_day).collect(),
-        people: people(&facts.people, today),
-        coming: coming(&facts.coming, today),
+        people: people(&facts.people, &facts.working, today),
+        coming: coming(&facts.coming, &facts.working, today),
         is_cut: in_week > facts.pulls.len(),
         is_urgent_cut: facts.counts.urgent > facts.urgent.len(),
     })
@@ -195,14 +207,43 @@ fn short_day(day: NaiveDate) -> String {
     format!("{} {number}", weekday.chars().take(3).collect::<String>())
 }
 
-fn coming(days: &[DaySum], today: NaiveDate) -> Vec<(String, usize, String)> {
+fn coming(days: &[DaySum], working: &WorkingDays, today: NaiveDate) -> Vec<(String, usize, String, String)> {
     let week = |(first, last): (NaiveDate, NaiveDate)| {
         let within: Vec<&DaySum> = days.iter().filter(|day| first <= day.on && day.on <= last).collect();
         let window = crate::domain::window::Window { earliest_on: first, latest_on: last };
         let minutes = minutes_words(within.iter().map(|day| day.minutes).sum());
-        (window.words(), within.iter().map(|day| day.pulls).sum(), minutes)
+        // Closed weekdays come every week; what is worth a word are the single days.
+        let closed = working.closed_between(first, last).into_iter();
+        let closed = closed.filter(|day| !working.closed_weekdays.contains(&day.weekday())).map(short_day);
+        let closed = closed.collect::<Vec<_>>().join(", ");
+        (window.words(), within.iter().map(|day| day.pulls).sum(), minutes, closed)
     };
     week::coming_weeks(today).into_iter().map(week).collect()
+}
+
+/// `3 h 20 min of 6 h stated`, and what to look at: a closed day, or too little time.
+fn day_sum(pulls: usize, minutes: u32, day: NaiveDate, working: &WorkingDays) -> (String, String) {
+    let is_closed = working.is_closed(day);
+    let stated = working.minutes_on(day);
+    let of = stated.filter(|_| !is_closed).map(|stated| format!(" of {} stated", minutes_words(stated)));
+    let sum = match pulls {
+        0 if is_closed => "closed".to_string(),
+        0 => "no pulls".to_string(),
+        pulls => format!(
+            "{}, about {}{}",
+            show::counted(pulls, "pull", "pulls"),
+            minutes_words(minutes),
+            of.unwrap_or_default()
+        ),
+    };
+    let over = stated.map(|stated| minutes.saturating_sub(stated)).filter(|over| *over > 0);
+    let warning = match (pulls, is_closed, over) {
+        (0, ..) => String::new(),
+        (_, true, _) => "the site is closed".to_string(),
+        (_, false, Some(over)) => format!("over by {}", minutes_words(over)),
+        _ => String::new(),
+    };
+    (sum, warning)
 }
 
 fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView<'_>> {
@@ -211,16 +252,12 @@ fn days(facts: &Facts, today: NaiveDate) -> Vec<DayView<'_>> {
         .map(|day| {
             let sum = facts.sums.iter().find(|sum| sum.on == day);
             let (pulls, minutes) = sum.map_or((0, 0), |sum| (sum.pulls, sum.minutes));
-            let sum = match pulls {
-                0 => "no pulls".to_string(),
-                pulls => {
-                    format!("{}, about {}", show::counted(pulls, "pull", "pulls"), minutes_words(minutes))
-                }
-            };
+            let (sum, warning) = day_sum(pulls, minutes, day, &facts.working);
             let is_on = |pull: &&Line| pull.facts.due_on.map(|due| week::day_of(due, today)) == Some(day);
             DayView {
                 heading: week::day_words(day),
                 sum,
+                warning,
                 is_open: day == today,
                 rows: facts.pulls.iter().filter(is_on).map(|pull| row(pull, today)).collect(),
                 readings: readings(&facts.cylinders, day, today),
@@ -244,7 +281,7 @@ fn readings(cylinders: &[OpenCylinder], day: NaiveDate, today: NaiveDate) -> Vec
     found.into_iter().map(|(_, words)| words).collect()
 }
 
-fn people(lines: &[PersonDay], today: NaiveDate) -> Vec<PersonView> {
+fn people(lines: &[PersonDay], working: &WorkingDays, today: NaiveDate) -> Vec<PersonView> {
     let mut accounts: Vec<(i64, String)> =
         lines.iter().map(|line| (line.account, line.full_name.clone())).collect();
     accounts.dedup();
@@ -253,8 +290,13 @@ fn people(lines: &[PersonDay], today: NaiveDate) -> Vec<PersonView> {
         .map(|(account, name)| {
             let own: Vec<&PersonDay> = lines.iter().filter(|line| line.account == account).collect();
             let cell = |day: NaiveDate| match own.iter().find(|line| line.on == day) {
-                Some(line) => minutes_words(line.minutes),
-                None => "–".to_string(),
+                Some(line) => {
+                    let stated = working.minutes_of(account, day);
+                    let over =
+                        stated.map(|stated| line.minutes.saturating_sub(stated)).filter(|over| *over > 0);
+                    (minutes_words(line.minutes), over.map(|over| format!("over by {}", minutes_words(over))))
+                }
+                None => ("–".to_string(), None),
             };
             PersonView {
                 name,
