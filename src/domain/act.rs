@@ -132,6 +132,7 @@ acts! {
     DeclareAlike, "declared versions one history", Roles(&[QaReviewer]);
     LeaveOutOfTrend, "decided on a result in the history", Roles(&[QaReviewer]);
     SealForecast, "sealed forecasts", System;
+    ConcludeEvaluation, "concluded an evaluation", Roles(&[LabManager, QaReviewer]);
 
     ExportLotFile, "exported a lot file", Roles(&[Formulator, LabManager, QaReviewer, Auditor]);
     ImportResults, "imported results", Roles(&[LabManager]);

@@ -31,10 +31,11 @@ pub enum Kind {
     Investigation,
     Import,
     TrendEquivalence,
+    Conclusion,
 }
 
 impl Kind {
-    pub const ALL: [Kind; 28] = [
+    pub const ALL: [Kind; 29] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -63,6 +64,7 @@ impl Kind {
         Kind::Investigation,
         Kind::Import,
         Kind::TrendEquivalence,
+        Kind::Conclusion,
     ];
 
     /// The table of the record, and the word stored beside its number.
@@ -96,6 +98,7 @@ impl Kind {
             Kind::Investigation => "investigation",
             Kind::Import => "import",
             Kind::TrendEquivalence => "trend_equivalence",
+            Kind::Conclusion => "evaluation_conclusion",
         }
     }
 

@@ -7,6 +7,7 @@ pub mod bench;
 pub mod bulk;
 pub mod chamber;
 pub mod check;
+pub mod conclusion;
 pub mod condition;
 pub mod container;
 pub mod definitions;

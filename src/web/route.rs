@@ -90,6 +90,7 @@ pub fn all() -> Vec<Route> {
         super::study::ROUTES,
         super::amendment::ROUTES,
         super::evaluation::ROUTES,
+        super::conclusion::ROUTES,
         super::container::ROUTES,
         super::pull::ROUTES,
         super::week::ROUTES,

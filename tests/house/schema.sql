@@ -20,6 +20,10 @@ CREATE INDEX equipment_event_by_equipment on equipment_event (equipment, kind);
 
 CREATE INDEX equipment_event_by_lot on equipment_event (lot) where lot is not null;
 
+CREATE INDEX evaluation_conclusion_by_presentation on evaluation_conclusion (presentation);
+
+CREATE INDEX evaluation_conclusion_lot_by_lot on evaluation_conclusion_lot (lot);
+
 CREATE INDEX exception_answer_by_flag on exception_answer (flag) where flag is not null;
 
 CREATE INDEX exception_answer_by_sample on exception_answer (sample);
@@ -348,6 +352,26 @@ CREATE TABLE equipment_event (
     account integer not null references account (id),
     note text,
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE evaluation_conclusion (
+    id integer primary key,
+    uuid blob not null unique,
+    presentation integer not null references presentation (id),
+    study_arm integer not null references study_arm (id),   -- any arm of the condition it speaks of
+    months integer not null check (months >= 0),            -- proposed; assigned only by the authorised person
+    inputs_digest text not null,                            -- SHA-256 of the results and limits it rests on
+    content text not null,                                  -- JSON: lots, reasons, answers, inputs, numbers, program
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE evaluation_conclusion_lot (
+    id integer primary key,
+    conclusion integer not null references evaluation_conclusion (id),
+    lot integer not null references lot (id),
+    left_out_because text,                                  -- null: chosen
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (conclusion, lot)
 ) strict;
 
 CREATE TABLE exception_answer (

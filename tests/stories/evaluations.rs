@@ -94,3 +94,146 @@ fn a_site_without_studies_says_so() {
     let lab = Lab::new();
     lab.manager().sees("/evaluations", "No lot is on study yet");
 }
+
+/// What a manager answers about the first condition of the site, with every lot chosen.
+const ANSWERS: [(&str, &str); 10] = [
+    ("storage", "room"),
+    ("accelerated", "none"),
+    ("accelerated_why", "the accelerated arm of older lots was unchanged"),
+    ("intermediate", "not-tested"),
+    ("little_change", ""),
+    ("statistics", "yes"),
+    ("supporting_data", "yes"),
+    ("supporting_why", "three pilot lots followed for 24 months"),
+    ("intermediate_why", ""),
+    ("little_change_why", ""),
+];
+
+/// The address of the page with these answers and lots.
+fn asked(arm: i64, lots: &[(i64, &str)], changed: &[(&str, &str)]) -> String {
+    let mut fields: Vec<(String, String)> = vec![("arm".to_string(), arm.to_string())];
+    for (name, value) in ANSWERS {
+        let value = changed.iter().find(|(other, _)| *other == name).map_or(value, |(_, value)| value);
+        fields.push((name.to_string(), value.to_string()));
+    }
+    for (lot, why) in lots {
+        match why.is_empty() {
+            true => fields.push((format!("lot.{lot}"), "yes".to_string())),
+            false => fields.push((format!("why.{lot}"), why.to_string())),
+        }
+    }
+    format!("/conclusions/new?{}", crate::support::form_body(&fields))
+}
+
+fn lots_of(lab: &Lab) -> Vec<i64> {
+    let mut lots: Vec<i64> = lab
+        .app
+        .db
+        .read(|reader| supernate::store::lot::before(reader, None, 9))
+        .unwrap()
+        .iter()
+        .map(|lot| lot.id)
+        .collect();
+    lots.sort_unstable();
+    lots
+}
+
+#[test]
+fn req_e2_a_conclusion_is_signed_with_its_answers_and_knows_whether_its_inputs_still_stand() {
+    let lab = Lab::new();
+    let aged = Aged::with_assay(&lab, &THREE);
+    let arm = aged.arm("TW-104-0640", 1);
+    let manager = lab.manager();
+    let first = format!("/conclusions/new?arm={arm}");
+    assert!(manager.get("/evaluations").links().contains(&first));
+    manager.sees(&first, "accelerated: no result yet.");
+    let every: Vec<(i64, &str)> = lots_of(&lab).into_iter().map(|lot| (lot, "")).collect();
+    let page = asked(arm, &every, &[]);
+    manager.sees(&page, "30 results of the chosen lots are not signed by QA yet");
+    aged.signs_all();
+    let seen = manager.sees(&page, "So at most twice X, and not more than X + 12: 24 months.");
+    for words in [
+        "Accelerated: no significant change over six months.",
+        "X, the long-term data that every chosen lot has: 12 months.",
+        "At most 24 months may be proposed. The cap of the tree binds: 24 months.",
+    ] {
+        assert!(seen.text().contains(words), "{words}: {}", seen.text());
+    }
+    let sign = |fields: &[(&str, &str)]| {
+        let mut all = fields.to_vec();
+        all.extend([("user_name", "maren.oddy"), ("password", crate::support::PASSWORD)]);
+        manager.submits(&page, "/conclusions/new", &all)
+    };
+    let long = sign(&[("months", "25"), ("physical_why", "two older lots stand at 36 months")]);
+    assert_eq!(long.status, 409, "{}", long.text());
+    let text = long.text();
+    assert!(
+        text.contains("25 months are more than may be proposed: at most 24. The cap of the tree binds"),
+        "{text}"
+    );
+    let bare = sign(&[("months", "24")]);
+    assert!(
+        bare.status == 409 && bare.text().contains("reach beyond the 12 months of data"),
+        "{}",
+        bare.text()
+    );
+    assert_eq!(sign(&[("months", "many")]).status, 422);
+    let done = sign(&[("months", "24"), ("physical_why", "two older lots stand at 36 months")]);
+    assert_eq!(done.status, 303, "{}", done.text());
+    let to = done.location.unwrap();
+    let signed = manager.sees(&to, "Concluded by me from the recorded findings");
+    let text = signed.text();
+    for words in [
+        "24 months proposed for TW TW-104",
+        "are those that were signed; computed again they give the same numbers",
+        "three pilot lots followed for 24 months",
+        "leaf N2 of the tree",
+        "never taken from a computation",
+    ] {
+        assert!(text.contains(words), "{words}: {text}");
+    }
+    let report = crate::verification::verify(&lab.folder.0, None);
+    assert!(report.holds(), "{:?}", report.findings);
+    lab.auditor().sees("/evaluations", "The cap of the tree binds: 24 months.");
+    lab.clock("2028-06-01T09:00:00Z");
+    aged.reads("TW-104-0640", 1, "18 months", "97.0");
+    let changed = manager.sees(&to, "The records have changed since");
+    assert!(changed.text().contains("Assay: 1 results have come since"), "{}", changed.text());
+}
+
+#[test]
+fn a_conclusion_is_refused_with_the_reason_that_stands_in_the_way() {
+    let lab = Lab::new();
+    let aged = Aged::with_assay(&lab, &THREE);
+    aged.signs_all();
+    let arm = aged.arm("TW-104-0640", 1);
+    let manager = lab.manager();
+    let lots = lots_of(&lab);
+    let every: Vec<(i64, &str)> = lots.iter().map(|lot| (*lot, "")).collect();
+    let none: Vec<(i64, &str)> =
+        lots.iter().map(|lot| (*lot, "the filling line stood still that day")).collect();
+    let short = [(lots[0], ""), (lots[1], ""), (lots[2], "bad")];
+    for (page, words) in [
+        (asked(arm, &none, &[]), "No lot is chosen"),
+        (asked(arm, &short, &[]), "Lot TW-104-0642 is left out without a reason"),
+        (asked(arm, &every, &[("little_change", "yes")]), "is your judgement: say what you saw"),
+        (asked(arm, &every, &[("supporting_data", "")]), "without supporting data nothing beyond"),
+        (asked(arm, &every, &[("supporting_why", "yes")]), "Name the supporting data"),
+        (asked(arm, &every, &[("storage", "")]), "have no answer yet"),
+        (
+            asked(arm, &every, &[("accelerated", "after-3-months")]),
+            "asks for the intermediate condition: answer what it shows",
+        ),
+    ] {
+        let seen = manager.sees(&page, words);
+        assert!(!seen.html().contains("Sign this conclusion"), "{words}");
+    }
+    let other = aged.arm("TW-104-0640", 3);
+    manager.sees(&asked(other, &every, &[]), "A shelf life rests on long-term data");
+    let two = [(lots[0], ""), (lots[1], ""), (lots[2], "its cap was of another maker")];
+    manager.sees(&asked(arm, &two, &[]), "At most 24 months may be proposed");
+    assert_eq!(manager.get("/conclusions/new?arm=1&wish=more").status, 400);
+    assert_eq!(manager.get("/conclusions/new").status, 404);
+    assert_eq!(manager.get("/conclusions/9").status, 404);
+    assert_eq!(lab.analyst().get(&asked(arm, &every, &[])).status, 403);
+}

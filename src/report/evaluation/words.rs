@@ -65,6 +65,11 @@ pub fn outcome(outcome: Outcome) -> String {
     }
 }
 
+/// Whether no shelf life can be estimated at all.
+pub fn is_not_estimable(found: &Assessment) -> bool {
+    found.life.outcome == Outcome::NotEstimable
+}
+
 /// What is missing where nothing can be estimated: never a silent blank.
 pub fn needs(found: &Assessment) -> String {
     let series = &found.series;

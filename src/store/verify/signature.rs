@@ -6,8 +6,8 @@ use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
 use crate::store::{
-    Answer, Reader, condition, deviation, investigation, lot_decision, material_lot, review, shelf_life,
-    signature, stop, trend, version,
+    Answer, Reader, conclusion, condition, deviation, investigation, lot_decision, material_lot, review,
+    shelf_life, signature, stop, trend, version,
 };
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
@@ -48,6 +48,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::MaterialLot => material_lot::canonical_of_signature(reader, signed.id),
         Kind::Deviation => deviation::canonical_of_signature(reader, signed.subject.id, signed.id),
         Kind::TrendEquivalence => trend::alike::canonical_of(reader, signed.subject.id),
+        Kind::Conclusion => Ok(Some(conclusion::get(reader, signed.subject.id)?.text)),
         Kind::Investigation => investigation::canonical_of(reader, signed.subject.id),
         _ => Ok(stop::of_signature(reader, signed.id)?.map(|found| found.lifted.canonical())),
     }

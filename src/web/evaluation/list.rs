@@ -8,7 +8,8 @@ use super::super::show;
 use super::super::table::{Cell, Table};
 use super::super::visit::Visit;
 use super::load;
-use crate::domain::evaluation::group::{self, Computed, Wishes};
+use crate::domain::act::Act;
+use crate::domain::evaluation::group::{self, Computed};
 use crate::domain::evaluation::record::{Group, Record, conforming_until, covered_months};
 use crate::domain::failure::Failure;
 use crate::report::evaluation::words;
@@ -22,6 +23,7 @@ struct ListPage {
     /// Path, code, words, lots, whether it is the one shown.
     presentations: Vec<(String, String, String, String, bool)>,
     groups: Vec<GroupPart>,
+    conclusions: Option<Table>,
 }
 
 /// One condition of the presentation.
@@ -43,9 +45,9 @@ pub fn list(visit: &Visit) -> Outcome {
             Some(id.ok_or_else(|| Failure::missing("presentation on study with this number"))?)
         }
     };
-    let groups = match chosen {
-        Some(id) => parts(visit, id)?,
-        None => Vec::new(),
+    let (groups, conclusions) = match chosen {
+        Some(id) => (parts(visit, id)?, Some(conclusions(visit, id)?)),
+        None => (Vec::new(), None),
     };
     let presentations = known
         .into_iter()
@@ -60,7 +62,27 @@ pub fn list(visit: &Visit) -> Outcome {
     } else {
         "No lot is on study yet, so there is nothing to evaluate. A lab manager starts a study from a lot's page."
     };
-    page(&ListPage { shell: Shell::of(visit, "Evaluation"), lead: lead.to_string(), presentations, groups })
+    let shell = Shell::of(visit, "Evaluation");
+    page(&ListPage { shell, lead: lead.to_string(), presentations, groups, conclusions })
+}
+
+/// The signed conclusions on a presentation.
+fn conclusions(visit: &Visit, presentation: i64) -> Result<Table, Failure> {
+    let found = visit.read(|reader| store::conclusion::of_presentation(reader, presentation))?;
+    let mut rows = Vec::new();
+    for one in found {
+        let content = one.content()?;
+        rows.push(vec![
+            Cell::link(format!("/conclusions/{}", one.id), format!("Conclusion {}", one.id)),
+            Cell::text(&content.condition),
+            Cell::number(one.months.to_string()),
+            Cell::text(&content.binds),
+            Cell::noted(&one.concluded_by, show::instant(&one.concluded_at, visit.at.zone)),
+        ]);
+    }
+    let heads = ["Conclusion", "Condition", "Proposed, months#", "What binds", "Signed by"];
+    let empty = "Nothing is concluded yet. A lab manager or QA concludes from a labelled condition above.";
+    Ok(Table::new("Signed conclusions, the newest first", &heads, empty).rows(rows))
 }
 
 fn parts(visit: &Visit, presentation: i64) -> Result<Vec<GroupPart>, Failure> {
@@ -79,12 +101,15 @@ fn parts(visit: &Visit, presentation: i64) -> Result<Vec<GroupPart>, Failure> {
         let is_of = |record: &&Record| arms.contains(&(record.arm, one.arm));
         let own: Vec<Record> = records.iter().filter(is_of).cloned().collect();
         let computed = group::compute_all(&one, &own, &limits, &wishes);
-        parts.push(part(&one, &own, &computed, &wishes));
+        let may = visit.may(Act::ConcludeEvaluation) && !one.is_imported && !computed.is_empty();
+        let may = may && (one.is_labelled || one.condition_use.starts_with("long-term"));
+        let conclude = may.then(|| format!("/conclusions/new?arm={}", one.arm));
+        parts.push(GroupPart { conclude, ..part(&one, &own, &computed) });
     }
     Ok(parts)
 }
 
-fn part(group: &Group, records: &[Record], computed: &[Computed], _: &Wishes) -> GroupPart {
+fn part(group: &Group, records: &[Record], computed: &[Computed]) -> GroupPart {
     let heads = ["Test", "Lots#", "Data cover, months#", "Newest result", "Shelf life", "Exactly, months#"];
     let empty = "No test at this condition has a result yet.";
     let rows = computed.iter().map(|one| row(group, records, one));
@@ -114,7 +139,7 @@ fn heading(group: &Group) -> String {
 }
 
 fn row(group: &Group, records: &[Record], one: &Computed) -> Vec<Cell> {
-    let path = super::one::path(group.arm, &one.test, &one.component);
+    let path = super::path(group.arm, &one.test, &one.component);
     let own: Vec<&Record> = records
         .iter()
         .filter(|record| record.point.test == one.test && record.point.component == one.component)

@@ -4,11 +4,11 @@ use askama::Template;
 
 use super::super::field::{Entry, Field};
 use super::super::page::Shell;
-use super::super::pairs::encoded;
 use super::super::reply::{Outcome, page};
 use super::super::table::{Cell, Table};
 use super::super::visit::Visit;
 use super::load::{self, Loaded};
+use super::path;
 use crate::domain::evaluation::Replicates;
 use crate::domain::evaluation::group::{self, Computed, Wishes};
 use crate::domain::evaluation::record::{self, Record, SCALES, scale_code, usual_scale};
@@ -32,16 +32,6 @@ struct OnePage {
     choices: Vec<Field>,
     here: String,
     component: String,
-}
-
-/// The address of a series.
-pub fn path(arm: i64, test: &str, component: &str) -> String {
-    let test = encoded(test);
-    if component.is_empty() {
-        format!("/evaluations/{arm}/{test}")
-    } else {
-        format!("/evaluations/{arm}/{test}?component={}", encoded(component))
-    }
 }
 
 pub fn one(visit: &Visit) -> Outcome {
