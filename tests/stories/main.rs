@@ -42,6 +42,7 @@ mod retains;
 mod reviews;
 mod searches;
 mod sedimentations;
+mod settlings;
 mod signatures;
 mod specifications;
 mod studies;
