@@ -85,10 +85,27 @@ pub fn month_shown(date: NaiveDate) -> &'static str {
 
 /// `3 Mar 2027`: the one way a date is shown.
 pub fn date_shown(date: NaiveDate) -> String {
-    format!("{} {} {}", date.day(), month_shown(date), date.year())
+    let mut text = String::with_capacity(12);
+    push_number(&mut text, date.day());
+    text.push(' ');
+    text.push_str(month_shown(date));
+    text.push(' ');
+    match u32::try_from(date.year()) {
+        Ok(year) => push_number(&mut text, year),
+        Err(_) => text.push_str(&date.year().to_string()),
+    }
+    text
 }
 
-/// `2027-03-03`, as stored. Written digit by digit: lists of work show hundreds of dates.
+/// Writes a number without the machinery of formatting: lists of work show hundreds of dates.
+pub fn push_number(text: &mut String, number: u32) {
+    if number > 9 {
+        push_number(text, number / 10);
+    }
+    text.push(char::from(b'0' + (number % 10) as u8));
+}
+
+/// `2027-03-03`, as stored.
 pub fn date_stored(date: NaiveDate) -> String {
     let Some(year) = u32::try_from(date.year()).ok().filter(|year| *year <= 9999) else {
         return date.format("%Y-%m-%d").to_string();

@@ -5,7 +5,7 @@
 use chrono::NaiveDate;
 
 use super::age::Age;
-use super::moment::{date_shown, month_shown, plus_days};
+use super::moment::{date_shown, month_shown, plus_days, push_number};
 use super::setting::WINDOWS;
 
 /// First and last calendar date of the site on which a pull is in its window.
@@ -80,12 +80,18 @@ impl Window {
     pub fn ends(&self) -> (String, String) {
         use chrono::Datelike;
         let (first, last) = (self.earliest_on, self.latest_on);
-        let first_words = match (first.year() == last.year(), first.month() == last.month()) {
-            _ if first == last => String::new(),
-            (true, true) => format!("{}–", first.day()),
-            (true, false) => format!("{} {}–", first.day(), month_shown(first)),
-            _ => date_shown(first) + "–",
-        };
+        let mut first_words = String::with_capacity(16);
+        match (first.year() == last.year(), first.month() == last.month()) {
+            _ if first == last => return (first_words, date_shown(last)),
+            (true, true) => push_number(&mut first_words, first.day()),
+            (true, false) => {
+                push_number(&mut first_words, first.day());
+                first_words.push(' ');
+                first_words.push_str(month_shown(first));
+            }
+            _ => first_words.push_str(&date_shown(first)),
+        }
+        first_words.push('–');
         (first_words, date_shown(last))
     }
 }

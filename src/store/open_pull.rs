@@ -37,7 +37,8 @@ struct Words {
 impl Words {
     fn new(text: String) -> Words {
         let mut ends = [text.len(); PARTS];
-        for (end, (at, _)) in ends.iter_mut().zip(text.match_indices('\u{1f}')) {
+        let separators = text.bytes().enumerate().filter(|(_, byte)| *byte == 0x1f);
+        for (end, (at, _)) in ends.iter_mut().zip(separators) {
             *end = at;
         }
         Words { text, ends }
@@ -102,8 +103,10 @@ pub enum Show {
     Week,
     /// Taken, and not all tests have their result.
     InTest,
-    /// To take or in testing, and the last day for it is tomorrow or before.
-    Urgent,
+    /// To take, and the last day for it is tomorrow or before.
+    UrgentToTake,
+    /// In testing, and the last day for it is tomorrow or before.
+    UrgentInTest,
     /// To take, due in the 28 days after the week.
     Coming,
     /// Everything that is to be taken.
@@ -151,58 +154,41 @@ fn day_of(pull: &Line, show: Show) -> Option<NaiveDate> {
     }
 }
 
-/// The chosen pulls with the day a list goes by. The plus signs keep a range on the index of its order: a list of
-/// fifty never sorts what stands behind it.
-fn chosen(show: Show) -> &'static str {
+/// The range of the index that a list walks in its order, `o`. The plus signs keep it on that index: a list of fifty
+/// never sorts what stands behind it.
+fn range(show: Show) -> &'static str {
     match show {
         Show::Late => {
-            "select pull, latest_on, account, minutes from open_pull
-             where stage = 'to take' and latest_on < :today and +due_on < :today
-                 and (latest_on, pull) > (:after_on, :after_pull)
-             order by latest_on, pull limit :limit"
+            "o.stage = 'to take' and o.latest_on < :today and +o.due_on < :today
+             and (o.latest_on, o.pull) > (:after_on, :after_pull) order by o.latest_on, o.pull limit :limit"
         }
         Show::Closing => {
-            "select pull, latest_on, account, minutes from open_pull
-             where stage = 'to take' and latest_on between :today and :tomorrow and +due_on <= :tomorrow
-                 and (latest_on, pull) > (:after_on, :after_pull)
-             order by latest_on, pull limit :limit"
+            "o.stage = 'to take' and o.latest_on between :today and :tomorrow and +o.due_on <= :tomorrow
+             and (o.latest_on, o.pull) > (:after_on, :after_pull) order by o.latest_on, o.pull limit :limit"
         }
         Show::InTest => {
-            "select pull, latest_on, account, minutes from open_pull
-             where stage = 'in test' and (latest_on, pull) > (:after_on, :after_pull)
-             order by latest_on, pull limit :limit"
-        }
-        Show::Urgent => {
-            "select * from (
-                 select * from (
-                     select pull, latest_on, account, minutes from open_pull
-                     where stage = 'to take' and latest_on <= :tomorrow and +due_on <= :tomorrow
-                         and (latest_on, pull) > (:after_on, :after_pull)
-                     order by latest_on, pull limit :limit)
-                 union all
-                 select * from (
-                     select pull, latest_on, account, minutes from open_pull
-                     where stage = 'in test' and latest_on <= :tomorrow and +due_on <= :tomorrow
-                         and (latest_on, pull) > (:after_on, :after_pull)
-                     order by latest_on, pull limit :limit))
-             order by latest_on, pull limit :limit"
+            "o.stage = 'in test' and (o.latest_on, o.pull) > (:after_on, :after_pull)
+             order by o.latest_on, o.pull limit :limit"
         }
         Show::Week => {
-            "select pull, due_on, account, minutes from open_pull
-             where stage = 'to take' and due_on <= :week_end and +latest_on >= :today
-                 and (due_on, pull) > (:after_on, :after_pull)
-             order by due_on, pull limit :limit"
+            "o.stage = 'to take' and o.due_on <= :week_end and +o.latest_on >= :today
+             and (o.due_on, o.pull) > (:after_on, :after_pull) order by o.due_on, o.pull limit :limit"
         }
         Show::Coming => {
-            "select pull, due_on, account, minutes from open_pull
-             where stage = 'to take' and due_on > :week_end and due_on <= :coming_end
-                 and (due_on, pull) > (:after_on, :after_pull)
-             order by due_on, pull limit :limit"
+            "o.stage = 'to take' and o.due_on > :week_end and o.due_on <= :coming_end
+             and (o.due_on, o.pull) > (:after_on, :after_pull) order by o.due_on, o.pull limit :limit"
         }
         Show::ToTake => {
-            "select pull, due_on, account, minutes from open_pull
-             where stage = 'to take' and (due_on, pull) > (:after_on, :after_pull)
-             order by due_on, pull limit :limit"
+            "o.stage = 'to take' and (o.due_on, o.pull) > (:after_on, :after_pull)
+             order by o.due_on, o.pull limit :limit"
+        }
+        Show::UrgentToTake => {
+            "o.stage = 'to take' and o.latest_on <= :tomorrow and +o.due_on <= :tomorrow
+             and (o.latest_on, o.pull) > (:after_on, :after_pull) order by o.latest_on, o.pull limit :limit"
+        }
+        Show::UrgentInTest => {
+            "o.stage = 'in test' and o.latest_on <= :tomorrow and +o.due_on <= :tomorrow
+             and (o.latest_on, o.pull) > (:after_on, :after_pull) order by o.latest_on, o.pull limit :limit"
         }
     }
 }
@@ -211,13 +197,13 @@ fn dates(today: NaiveDate) -> [Day; 4] {
     [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
 }
 
-const LINE: &str = "select l.pull, l.study, l.words, l.containers_taken, coalesce(k.containers_left, 0), g.full_name,
-        chosen.minutes, l.test_within_days, l.taken_on, l.tests, l.started, l.complete, l.checked, l.sent_back,
-        l.out_of_specification
-    from chosen
-    cross join open_line l on l.pull = chosen.pull
+const LINE: &str = "select l.pull, l.study, l.words, l.containers_taken, coalesce(k.containers_left, 0),
+        (select full_name from account where id = l.account), l.minutes, l.test_within_days, l.taken_on, l.tests,
+        l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
+    from open_pull o
+    cross join open_line l on l.pull = o.pull
     left join arm_stock k on k.study_arm = l.study_arm
-    left join account g on g.id = chosen.account";
+    where :today || :tomorrow || :week_end || :coming_end is not null and ";
 
 /// The pulls of a list from a place on: by their last day or, where the list goes by it, their due date.
 pub fn list(
@@ -228,11 +214,6 @@ pub fn list(
     limit: i64,
 ) -> Answer<Vec<Line>> {
     let [today, tomorrow, week_end, coming_end] = dates(today);
-    let sql = format!(
-        "with dates as (select :today, :tomorrow, :week_end, :coming_end),
-         chosen (pull, day, account, minutes) as materialized ({}) {LINE}",
-        chosen(show)
-    );
     let params = named_params! {
         ":today": today,
         ":tomorrow": tomorrow,
@@ -242,9 +223,17 @@ pub fn list(
         ":after_pull": after.map_or(0, |after| after.pull),
         ":limit": limit,
     };
-    let mut pulls = reader.all(&sql, params, from_row)?;
-    pulls.sort_by_key(|pull| (day_of(pull, show), pull.pull));
-    Ok(pulls)
+    reader.all(&format!("{LINE}{}", range(show)), params, from_row)
+}
+
+/// What is to be taken or tested by tomorrow or before, the last day that comes first on top.
+pub fn urgent(reader: &Reader<'_>, today: NaiveDate, limit: usize) -> Answer<Vec<Line>> {
+    let most = i64::try_from(limit).unwrap_or(i64::MAX);
+    let mut lines = list(reader, Show::UrgentToTake, today, None, most)?;
+    lines.extend(list(reader, Show::UrgentInTest, today, None, most)?);
+    lines.sort_by_key(|line| (day_of(line, Show::UrgentToTake), line.pull));
+    lines.truncate(limit);
+    Ok(lines)
 }
 
 fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
@@ -301,16 +290,15 @@ pub struct Counts {
 }
 
 impl Counts {
-    /// Of one list; none for [`Show::ToTake`], which no page counts.
+    /// Of one list; none for those that no page counts by themselves.
     pub fn of(&self, show: Show) -> Option<usize> {
         match show {
             Show::Late => Some(self.late),
             Show::Closing => Some(self.closing),
             Show::Week => Some(self.week),
             Show::InTest => Some(self.in_test),
-            Show::Urgent => Some(self.urgent),
             Show::Coming => Some(self.coming),
-            Show::ToTake => None,
+            Show::ToTake | Show::UrgentToTake | Show::UrgentInTest => None,
         }
     }
 }

@@ -636,6 +636,8 @@ CREATE TABLE open_line (
     study integer not null,
     study_arm integer not null,
     words text not null,
+    account integer references account (id), -- who has it
+    minutes integer not null default 0,     -- at the bench, from the methods of its tests
     test_within_days integer,
     taken_on text,                          -- null until it is taken
     containers_taken integer not null default 0,
@@ -1495,6 +1497,11 @@ begin
     where pull = new.pull;
 end;
 
+CREATE TRIGGER open_line_given after update of account, minutes on open_pull
+begin
+    update open_line set account = new.account, minutes = new.minutes where pull = new.pull;
+end;
+
 CREATE TRIGGER open_line_happened after insert on pull_event
 begin
     update open_line set taken_on = new.happened_on where pull = new.pull and new.kind = 'pulled';
@@ -1508,15 +1515,17 @@ end;
 
 CREATE TRIGGER open_line_opened after insert on open_pull
 begin
-    insert into open_line (pull, study, study_arm, words, test_within_days, taken_on, containers_taken, tests)
-    select p.id, a.study, a.id, w.words, p.test_within_days,
+    insert into open_line (pull, study, study_arm, words, account, minutes, test_within_days, taken_on,
+        containers_taken, tests)
+    select p.id, a.study, a.id, w.words, o.account, o.minutes, p.test_within_days,
         (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
         (select count(*) from container_event where pull = p.id),
         (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
-    from pull p
+    from open_pull o
+    join pull p on p.id = o.pull
     join pull_words w on w.pull = p.id
     join study_arm a on a.id = p.study_arm
-    where p.id = new.pull;
+    where o.pull = new.pull;
     update open_line set counted = counted + 1 where pull = new.pull and taken_on is not null;
 end;
 
@@ -1537,12 +1546,13 @@ end;
 CREATE TRIGGER open_line_sampled after insert on sample
 when new.pull is not null
 begin
-    insert into open_line (pull, study, study_arm, words, test_within_days)
-    select p.id, a.study, a.id, w.words, p.test_within_days
-    from pull p
+    insert into open_line (pull, study, study_arm, words, account, minutes, test_within_days)
+    select p.id, a.study, a.id, w.words, o.account, o.minutes, p.test_within_days
+    from open_pull o
+    join pull p on p.id = o.pull
     join pull_words w on w.pull = p.id
     join study_arm a on a.id = p.study_arm
-    where p.id = new.pull and exists (select 1 from open_pull where pull = new.pull);
+    where o.pull = new.pull;
 end;
 
 CREATE TRIGGER open_line_taken after insert on container_event

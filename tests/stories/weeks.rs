@@ -81,7 +81,16 @@ fn the_lists_agree_with_the_facts_of_every_pull() {
             Ok(all)
         });
         let all = all.unwrap();
-        for show in [Show::Late, Show::Closing, Show::Week, Show::Coming, Show::ToTake, Show::InTest] {
+        for show in [
+            Show::Late,
+            Show::Closing,
+            Show::Week,
+            Show::Coming,
+            Show::ToTake,
+            Show::InTest,
+            Show::UrgentToTake,
+            Show::UrgentInTest,
+        ] {
             let expected: Vec<&Pull> = all.iter().filter(|pull| is_on(show, pull, today)).collect();
             let count = lab.app.db.read(|reader| counts(reader, today)).unwrap().of(show);
             let list = lab.app.db.read(|reader| list(reader, show, today, None, 500)).unwrap();
@@ -103,8 +112,15 @@ fn is_on(show: Show, pull: &Pull, today: NaiveDate) -> bool {
         Show::Coming => is_to_take && due_on > week_end && due_on <= plus_days(today, 34),
         Show::ToTake => is_to_take,
         Show::InTest => pull.facts.event == Some(Event::Pulled),
-        Show::Urgent => unreachable!("not asked here"),
+        Show::UrgentToTake => is_to_take && latest_on <= tomorrow && due_on <= tomorrow,
+        Show::UrgentInTest => {
+            pull.facts.event == Some(Event::Pulled) && due_on <= tomorrow && tested_by(pull) <= tomorrow
+        }
     }
+}
+
+fn tested_by(pull: &Pull) -> NaiveDate {
+    plus_days(pull.facts.happened_on.unwrap(), pull.test_within_days.unwrap_or(0))
 }
 
 /// screen_U96: windows close at the site's midnight, which in summer is 23:00 UTC.

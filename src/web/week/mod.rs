@@ -37,7 +37,7 @@ pub const ROUTES: &[Route] = &[
 ];
 
 /// Rows of the first block, and of the days together; more are one link away.
-const MOST_ROWS: i64 = 50;
+const MOST_ROWS: usize = 50;
 
 /// A pull as a row of the week.
 pub(super) struct Row<'a> {
@@ -124,8 +124,8 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
         Ok(Facts {
             counts: store::open_pull::counts(reader, today)?,
             to_check: store::check::count_waiting(reader)?,
-            urgent: store::open_pull::list(reader, Show::Urgent, today, None, MOST_ROWS)?,
-            pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS)?,
+            urgent: store::open_pull::urgent(reader, today, MOST_ROWS)?,
+            pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS as i64)?,
             sums: store::week::days(reader, today, last)?,
             people: store::week::people(reader, today, last)?,
             coming: store::week::due_days(reader, plus_days(last, 1), week::coming_end(today))?,
