@@ -32,7 +32,8 @@ select p.id as pull,
         || replace(coalesce(h.code, ''), char(31), ' ') || char(31) || p.age_text || char(31)
         || s.number || char(31) || lower(hex(p.uuid)) || char(31)
         || p.due_on || char(31) || coalesce(p.earliest_on, '') || char(31) || coalesce(p.latest_on, '') || char(31)
-        || p.containers_needed as words
+        || p.containers_needed || char(31) || p.id || char(31) || y.id || char(31)
+        || coalesce(p.test_within_days, '') as words
 from pull p
 cross join study_arm a on a.id = p.study_arm
 join condition c on c.id = a.condition
@@ -74,12 +75,10 @@ group by pull, sample;
 
 create table open_line (
     pull integer primary key references pull (id),
-    study integer not null,
     study_arm integer not null,
     words text not null,
     account integer references account (id), -- who has it
     minutes integer not null default 0,     -- at the bench, from the methods of its tests
-    test_within_days integer,
     taken_on text,                          -- null until it is taken
     containers_taken integer not null default 0,
     tests integer not null default 0,
@@ -105,16 +104,14 @@ begin
 end;
 create trigger open_line_opened after insert on open_pull
 begin
-    insert into open_line (pull, study, study_arm, words, account, minutes, test_within_days, taken_on,
-        containers_taken, tests)
-    select p.id, a.study, a.id, w.words, o.account, o.minutes, p.test_within_days,
+    insert into open_line (pull, study_arm, words, account, minutes, taken_on, containers_taken, tests)
+    select p.id, p.study_arm, w.words, o.account, o.minutes,
         (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
         (select count(*) from container_event where pull = p.id),
         (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
     from open_pull o
     join pull p on p.id = o.pull
     join pull_words w on w.pull = p.id
-    join study_arm a on a.id = p.study_arm
     where o.pull = new.pull;
     update open_line set counted = counted + 1 where pull = new.pull and taken_on is not null;
 end;
@@ -129,12 +126,11 @@ end;
 create trigger open_line_sampled after insert on sample
 when new.pull is not null
 begin
-    insert into open_line (pull, study, study_arm, words, account, minutes, test_within_days)
-    select p.id, a.study, a.id, w.words, o.account, o.minutes, p.test_within_days
+    insert into open_line (pull, study_arm, words, account, minutes)
+    select p.id, p.study_arm, w.words, o.account, o.minutes
     from open_pull o
     join pull p on p.id = o.pull
     join pull_words w on w.pull = p.id
-    join study_arm a on a.id = p.study_arm
     where o.pull = new.pull;
 end;
 create trigger open_line_asked after insert on sample_test
@@ -174,16 +170,14 @@ begin
     where pull = (select pull from sample where id = new.sample);
 end;
 
-insert into open_line (pull, study, study_arm, words, account, minutes, test_within_days, taken_on,
-        containers_taken, tests)
-select p.id, a.study, a.id, w.words, o.account, o.minutes, p.test_within_days,
+insert into open_line (pull, study_arm, words, account, minutes, taken_on, containers_taken, tests)
+select p.id, p.study_arm, w.words, o.account, o.minutes,
     (select happened_on from pull_event where pull = p.id and kind = 'pulled' order by id desc limit 1),
     (select count(*) from container_event where pull = p.id),
     (select count(*) from sample_test t join sample s on s.id = t.sample where s.pull = p.id)
 from open_pull o
 join pull p on p.id = o.pull
-join pull_words w on w.pull = p.id
-join study_arm a on a.id = p.study_arm;
+join pull_words w on w.pull = p.id;
 update open_line set counted = 1 where taken_on is not null;
 
 -- The week goes by due dates.

@@ -68,11 +68,8 @@ pub fn sha256_hex(bytes: &[u8]) -> String {
 }
 
 pub fn hex(bytes: &[u8]) -> String {
-    use std::fmt::Write;
-    bytes.iter().fold(String::with_capacity(bytes.len() * 2), |mut text, byte| {
-        let _ = write!(text, "{byte:02x}");
-        text
-    })
+    let digit = |value: u8| char::from(b"0123456789abcdef"[usize::from(value & 15)]);
+    bytes.iter().flat_map(|byte| [digit(byte >> 4), digit(*byte)]).collect()
 }
 
 /// The bytes of a hexadecimal text; `None` where it is not one.

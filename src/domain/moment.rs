@@ -155,13 +155,24 @@ pub fn plus_days(date: NaiveDate, days: i64) -> NaiveDate {
 
 /// `2 days late`, `closes today`, `closes in 3 days`: always shown beside the date itself.
 pub fn until_shown(today: NaiveDate, last_day: NaiveDate) -> String {
-    match (last_day - today).num_days() {
-        0 => "closes today 23:59".to_string(),
-        1 => "closes tomorrow 23:59".to_string(),
-        days if days > 1 => format!("closes in {days} days"),
-        -1 => "1 day late".to_string(),
-        days => format!("{} days late", -days),
+    let days = (last_day - today).num_days();
+    let number = u32::try_from(days.unsigned_abs()).unwrap_or(u32::MAX);
+    let mut text = String::with_capacity(24);
+    match days {
+        0 => text.push_str("closes today 23:59"),
+        1 => text.push_str("closes tomorrow 23:59"),
+        -1 => text.push_str("1 day late"),
+        2.. => {
+            text.push_str("closes in ");
+            push_number(&mut text, number);
+            text.push_str(" days");
+        }
+        _ => {
+            push_number(&mut text, number);
+            text.push_str(" days late");
+        }
     }
+    text
 }
 
 #[cfg(test)]

@@ -6,12 +6,24 @@ use super::moment::{Moment, plus_days};
 
 /// How many days the week page shows, today included.
 pub const DAYS: i64 = 7;
-/// How many weeks after them are summed.
-pub const COMING_WEEKS: i64 = 4;
 
-/// `Thursday 3 December`.
-pub fn day_words(date: NaiveDate) -> String {
-    let weekday = match date.weekday() {
+const MONTHS: [&str; 12] = [
+    "January",
+    "February",
+    "March",
+    "April",
+    "May",
+    "June",
+    "July",
+    "August",
+    "September",
+    "October",
+    "November",
+    "December",
+];
+
+fn weekday_words(date: NaiveDate) -> &'static str {
+    match date.weekday() {
         Weekday::Mon => "Monday",
         Weekday::Tue => "Tuesday",
         Weekday::Wed => "Wednesday",
@@ -19,8 +31,17 @@ pub fn day_words(date: NaiveDate) -> String {
         Weekday::Fri => "Friday",
         Weekday::Sat => "Saturday",
         Weekday::Sun => "Sunday",
-    };
-    format!("{weekday} {} {}", date.day(), date.format("%B"))
+    }
+}
+
+/// `Thursday 3 December`.
+pub fn day_words(date: NaiveDate) -> String {
+    format!("{} {} {}", weekday_words(date), date.day(), MONTHS[date.month0() as usize])
+}
+
+/// `Thu 3`.
+pub fn short_day(date: NaiveDate) -> String {
+    format!("{} {}", &weekday_words(date)[..3], date.day())
 }
 
 /// The seven days from today on.
@@ -34,17 +55,11 @@ pub fn day_of(due_on: NaiveDate, today: NaiveDate) -> NaiveDate {
 }
 
 /// First and last day of the coming weeks, the first one after the seven days.
-pub fn coming_weeks(today: NaiveDate) -> Vec<(NaiveDate, NaiveDate)> {
-    let week = |number: i64| {
+pub fn coming_weeks(today: NaiveDate) -> [(NaiveDate, NaiveDate); 4] {
+    [1, 2, 3, 4].map(|number| {
         let first = plus_days(today, DAYS * number);
         (first, plus_days(first, DAYS - 1))
-    };
-    (1..=COMING_WEEKS).map(week).collect()
-}
-
-/// The last day of the coming weeks.
-pub fn coming_end(today: NaiveDate) -> NaiveDate {
-    plus_days(today, DAYS * (COMING_WEEKS + 1) - 1)
+    })
 }
 
 /// A cylinder that was filled and shaken, with the minutes at which it is read and those read already.

@@ -25,7 +25,7 @@ pub struct Line {
     pub facts: PullFacts,
 }
 
-const PARTS: usize = 13;
+const PARTS: usize = 16;
 
 /// The parts of a stored line in one text, and where each ends.
 #[derive(Clone, Debug)]
@@ -47,6 +47,10 @@ impl Words {
     fn part(&self, number: usize) -> &str {
         let start = if number == 0 { 0 } else { self.ends[number - 1] + 1 };
         self.text.get(start..self.ends[number]).unwrap_or_default()
+    }
+
+    fn number(&self, part: usize) -> Option<i64> {
+        self.part(part).parse().ok()
     }
 }
 
@@ -197,12 +201,13 @@ fn dates(today: NaiveDate) -> [Day; 4] {
     [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
 }
 
-const LINE: &str = "select l.pull, l.study, l.words, l.containers_taken, coalesce(k.containers_left, 0),
-        (select full_name from account where id = l.account), l.minutes, l.test_within_days, l.taken_on, l.tests,
-        l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
+const LINE: &str =
+    "select l.words, l.containers_taken, coalesce(k.containers_left, 0), g.full_name, l.minutes,
+        l.tests, l.taken_on, l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
     from open_pull o
     cross join open_line l on l.pull = o.pull
     left join arm_stock k on k.study_arm = l.study_arm
+    left join account g on g.id = l.account
     where :today || :tomorrow || :week_end || :coming_end is not null and ";
 
 /// The pulls of a list from a place on: by their last day or, where the list goes by it, their due date.
@@ -237,15 +242,15 @@ pub fn urgent(reader: &Reader<'_>, today: NaiveDate, limit: usize) -> Answer<Vec
 }
 
 fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
-    let words = Words::new(row.get(2)?);
+    let words = Words::new(row.get(0)?);
     Ok(Line {
-        pull: row.get(0)?,
-        study: row.get(1)?,
-        containers_taken: row.get(3)?,
-        containers_left: row.get(4)?,
-        assigned_name: row.get(5)?,
-        minutes: row.get(6)?,
-        test_within_days: row.get(7)?,
+        pull: words.number(13).unwrap_or_default(),
+        study: words.number(14).unwrap_or_default(),
+        test_within_days: words.number(15),
+        containers_taken: row.get(1)?,
+        containers_left: row.get(2)?,
+        assigned_name: row.get(3)?,
+        minutes: row.get(4)?,
         facts: facts_from_row(row, &words)?,
         words,
     })
@@ -254,16 +259,16 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
 /// An open pull is neither imported nor signed; before it is taken nothing of it was read.
 fn facts_from_row(row: &Row<'_>, words: &Words) -> rusqlite::Result<PullFacts> {
     let count = |at: usize| Ok::<_, rusqlite::Error>(usize::try_from(row.get::<_, i64>(at)?).unwrap_or(0));
-    let taken_on: Option<Day> = row.get(8)?;
-    let mut progress = Progress { tests: count(9)?, ..Progress::default() };
+    let taken_on: Option<Day> = row.get(6)?;
+    let mut progress = Progress { tests: count(5)?, ..Progress::default() };
     if taken_on.is_some() {
         progress = Progress {
             tests: progress.tests,
-            started: count(10)?,
-            complete: count(11)?,
-            checked: count(12)?,
-            sent_back: count(13)?,
-            out_of_specification: count(14)?,
+            started: count(7)?,
+            complete: count(8)?,
+            checked: count(9)?,
+            sent_back: count(10)?,
+            out_of_specification: count(11)?,
         };
     }
     Ok(PullFacts {
@@ -272,7 +277,7 @@ fn facts_from_row(row: &Row<'_>, words: &Words) -> rusqlite::Result<PullFacts> {
         due_on: date_from_stored(words.part(9)),
         earliest_on: date_from_stored(words.part(10)),
         latest_on: date_from_stored(words.part(11)),
-        containers_needed: words.part(12).parse().unwrap_or_default(),
+        containers_needed: words.number(12).unwrap_or_default() as usize,
         progress,
         ..PullFacts::default()
     })

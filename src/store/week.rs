@@ -35,15 +35,26 @@ pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Ve
     )
 }
 
-/// The days between two on which something is due, with the sums of all that is.
-pub fn due_days(reader: &Reader<'_>, first: NaiveDate, last: NaiveDate) -> Answer<Vec<DaySum>> {
+/// Pulls due in each of four weeks and their minutes, each week by its first and last day.
+pub fn weeks(reader: &Reader<'_>, weeks: [(NaiveDate, NaiveDate); 4]) -> Answer<Vec<(usize, u32)>> {
+    let [first, second, third, fourth] = weeks.map(|(first, last)| (Day(first), Day(last)));
     reader.all(
-        "select due_on, sum(pulls), sum(minutes)
-         from open_day
-         where stage = 'to take' and due_on between :first and :last
-         group by due_on",
-        named_params! { ":first": Day(first), ":last": Day(last) },
-        |row| Ok(DaySum { on: row.get::<_, Day>(0)?.0, pulls: count(row.get(1)?), minutes: row.get(2)? }),
+        "select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         where stage = 'to take' and due_on between :first and :first_end
+         union all
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         where stage = 'to take' and due_on between :second and :second_end
+         union all
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         where stage = 'to take' and due_on between :third and :third_end
+         union all
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         where stage = 'to take' and due_on between :fourth and :fourth_end",
+        named_params! {
+            ":first": first.0, ":first_end": first.1, ":second": second.0, ":second_end": second.1,
+            ":third": third.0, ":third_end": third.1, ":fourth": fourth.0, ":fourth_end": fourth.1,
+        },
+        |row| Ok((count(row.get(0)?), row.get(1)?)),
     )
 }
 

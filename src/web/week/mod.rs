@@ -112,7 +112,7 @@ struct Facts {
     pulls: Vec<Line>,
     sums: Vec<DaySum>,
     people: Vec<PersonDay>,
-    coming: Vec<DaySum>,
+    coming: Vec<(usize, u32)>,
     cylinders: Vec<OpenCylinder>,
     working: WorkingDays,
     next: Option<(NaiveDate, i64, String)>,
@@ -128,7 +128,7 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
             pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS as i64)?,
             sums: store::week::days(reader, today, last)?,
             people: store::week::people(reader, today, last)?,
-            coming: store::week::due_days(reader, plus_days(last, 1), week::coming_end(today))?,
+            coming: store::week::weeks(reader, week::coming_weeks(today))?,
             cylinders: store::week::cylinders(reader, visit.at.zone)?,
             working: store::setting::working_days(reader)?,
             next: store::week::next(reader, last)?,
@@ -191,7 +191,7 @@ fn the_week(visit: &Visit) -> Outcome {
         now: visit.at.shown(),
         urgent: facts.urgent.iter().map(|pull| row(pull, today)).collect(),
         days,
-        day_heads: week::days(today).into_iter().map(short_day).collect(),
+        day_heads: week::days(today).into_iter().map(week::short_day).collect(),
         people: people(&facts.people, &facts.working, today),
         coming: coming(&facts.coming, &facts.working, today),
         is_cut: in_week > facts.pulls.len(),
@@ -199,26 +199,21 @@ fn the_week(visit: &Visit) -> Outcome {
     })
 }
 
-/// `Thu 3`.
-fn short_day(day: NaiveDate) -> String {
-    let words = week::day_words(day);
-    let (weekday, rest) = words.split_once(' ').unwrap_or((&words, ""));
-    let number = rest.split(' ').next().unwrap_or_default();
-    format!("{} {number}", weekday.chars().take(3).collect::<String>())
-}
-
-fn coming(days: &[DaySum], working: &WorkingDays, today: NaiveDate) -> Vec<(String, usize, String, String)> {
-    let week = |(first, last): (NaiveDate, NaiveDate)| {
-        let within: Vec<&DaySum> = days.iter().filter(|day| first <= day.on && day.on <= last).collect();
+fn coming(
+    sums: &[(usize, u32)],
+    working: &WorkingDays,
+    today: NaiveDate,
+) -> Vec<(String, usize, String, String)> {
+    let week = |((first, last), (pulls, minutes)): ((NaiveDate, NaiveDate), &(usize, u32))| {
         let window = crate::domain::window::Window { earliest_on: first, latest_on: last };
-        let minutes = minutes_words(within.iter().map(|day| day.minutes).sum());
         // Closed weekdays come every week; what is worth a word are the single days.
         let closed = working.closed_between(first, last).into_iter();
-        let closed = closed.filter(|day| !working.closed_weekdays.contains(&day.weekday())).map(short_day);
+        let closed =
+            closed.filter(|day| !working.closed_weekdays.contains(&day.weekday())).map(week::short_day);
         let closed = closed.collect::<Vec<_>>().join(", ");
-        (window.words(), within.iter().map(|day| day.pulls).sum(), minutes, closed)
+        (window.words(), *pulls, minutes_words(*minutes), closed)
     };
-    week::coming_weeks(today).into_iter().map(week).collect()
+    week::coming_weeks(today).into_iter().zip(sums).map(week).collect()
 }
 
 /// `3 h 20 min of 6 h stated`, and what to look at: a closed day, or too little time.
