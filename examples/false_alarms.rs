@@ -200,6 +200,7 @@ fn clean(chance: &mut Chance) -> Lot {
             solids: Some(0.04),
         },
         limits: Limits { ph_lower: Some(5.0), ph_upper: Some(6.5), preservative_lower: Some(80.0) },
+        repeatability: Default::default(),
         expiry_days: Some(36.0 * 30.4375),
         arms,
         attributes: vec![Attribute { results, lower: Some(95.0), upper: None }],

@@ -4,7 +4,6 @@ pub mod account;
 pub mod amendment;
 pub mod attachment;
 pub mod backup;
-pub mod batch;
 pub mod chamber;
 pub mod check;
 pub mod conclusion;

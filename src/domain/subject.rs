@@ -21,7 +21,6 @@ pub enum Kind {
     Equipment,
     Deviation,
     Lot,
-    BatchRecord,
     Condition,
     Chamber,
     Protocol,
@@ -36,7 +35,7 @@ pub enum Kind {
 }
 
 impl Kind {
-    pub const ALL: [Kind; 30] = [
+    pub const ALL: [Kind; 29] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -55,7 +54,6 @@ impl Kind {
         Kind::Equipment,
         Kind::Deviation,
         Kind::Lot,
-        Kind::BatchRecord,
         Kind::Condition,
         Kind::Chamber,
         Kind::Protocol,
@@ -90,7 +88,6 @@ impl Kind {
             Kind::Equipment => "equipment",
             Kind::Deviation => "deviation",
             Kind::Lot => "lot",
-            Kind::BatchRecord => "batch_record",
             Kind::Condition => "condition",
             Kind::Chamber => "chamber",
             Kind::Protocol => "protocol",

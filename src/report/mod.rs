@@ -7,6 +7,5 @@ pub mod cylinder;
 pub mod evaluation;
 pub mod export;
 pub mod lot_file;
-pub mod settling;
 pub mod table;
 pub mod zip;

@@ -54,3 +54,15 @@ pub fn working_days(reader: &Reader<'_>) -> Answer<WorkingDays> {
     let stated = minutes.into_iter().filter_map(|(account, minutes)| Some((account, minutes?)));
     Ok(WorkingDays::of_stored(&weekdays, &dates, stated.collect()))
 }
+
+/// The newest of every setting whose name begins so, as (name, value).
+pub fn of_prefix(reader: &Reader<'_>, prefix: &str) -> Answer<Vec<(String, String)>> {
+    reader.all(
+        "select s.name, s.value
+         from setting s
+         where substr(s.name, 1, length(:prefix)) = :prefix
+             and s.id = (select max(id) from setting newest where newest.name = s.name)",
+        named_params! { ":prefix": prefix },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}

@@ -9,6 +9,7 @@ use super::part::Trail;
 use super::reply::{Outcome, page, page_with};
 use super::route::{Route, get, post};
 use super::show;
+use super::suggestion::Suggestions;
 use super::visit::Visit;
 use crate::acts;
 use crate::domain::act::Act;
@@ -19,7 +20,6 @@ use crate::domain::moment::date_shown;
 use crate::domain::role::Role;
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::typed::NumberRule;
-use crate::report::cylinder::Strip;
 use crate::store;
 use crate::store::lot::Lot;
 
@@ -186,10 +186,7 @@ struct LotPage {
     links: Vec<(String, &'static str)>,
     /// Path, test and place, what the early warning says.
     warnings: Vec<(String, String, String)>,
-    /// The cylinders of each arm over its ages.
-    strips: Vec<(String, Strip)>,
-    /// Signed conclusions on it: address and words.
-    conclusions: Vec<(String, String)>,
+    suggestions: Option<Suggestions>,
     distribution: Option<Form>,
     trail: Trail,
 }
@@ -199,17 +196,19 @@ fn one(visit: &Visit) -> Outcome {
 }
 
 fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
-    let (lot, packed, distributions, samples, studies, warnings, lines) = visit.read(|reader| {
-        Ok((
-            store::lot::get(reader, id)?,
-            store::lot::packed_from(reader, id)?,
-            store::lot::distributions(reader, id)?,
-            store::lot::samples(reader, id)?,
-            store::lot::studies(reader, id)?,
-            store::trend::tally::warnings_of_lot(reader, id)?,
-            store::trail::of_subject(reader, Subject::new(Kind::Lot, id))?,
-        ))
-    })?;
+    let (lot, packed, distributions, samples, studies, warnings, suggestions, lines) =
+        visit.read(|reader| {
+            Ok((
+                store::lot::get(reader, id)?,
+                store::lot::packed_from(reader, id)?,
+                store::lot::distributions(reader, id)?,
+                store::lot::samples(reader, id)?,
+                store::lot::studies(reader, id)?,
+                store::trend::tally::warnings_of_lot(reader, id)?,
+                Suggestions::of(reader, id)?,
+                store::trail::of_subject(reader, Subject::new(Kind::Lot, id))?,
+            ))
+        })?;
     let state = lot.state();
     let distribution = match failed {
         Some(failed) => Some(failed),
@@ -222,10 +221,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
     if let Some(form) = &distribution {
         shell = shell.with_errors(form);
     }
-    let (strips, conclusions) = seen_of(visit, id)?;
     let page = LotPage {
-        strips,
-        conclusions,
         shell,
         made_on: made_on(&lot),
         size: match (&lot.size, &lot.size_unit) {
@@ -242,6 +238,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
         studies: studies.into_iter().map(started).collect(),
         made_with: super::lot_parts::Parts::of(visit, id)?,
         links: links(visit, id, state),
+        suggestions,
         warnings: warnings.into_iter().map(super::trend::warning).collect(),
         distribution,
         trail: Trail::of(&lines, visit.at.zone),
@@ -255,28 +252,9 @@ fn started(study: store::lot::StudyLine) -> (store::lot::StudyLine, String) {
     (study, started_on)
 }
 
-/// Cylinder strips by arm, and links to conclusions with their words.
-type SeenOf = (Vec<(String, Strip)>, Vec<(String, String)>);
-
-/// What was seen of the lot over its ages, and what was concluded from it.
-fn seen_of(visit: &Visit, id: i64) -> Result<SeenOf, Failure> {
-    let (arms, clarities, concluded) = visit.read(|reader| {
-        Ok((
-            super::settling::arms_of_lot(reader, id)?,
-            store::series::clarities_of_lot(reader, id)?,
-            store::conclusion::of_lot(reader, id)?,
-        ))
-    })?;
-    let words = |(id, months, condition): (i64, u32, String)| {
-        (format!("/conclusions/{id}"), format!("Conclusion {id}: {months} months proposed, {condition}"))
-    };
-    Ok((super::settling::strips(&arms, &clarities), concluded.into_iter().map(words).collect()))
-}
-
 /// What this person can do from here.
 fn links(visit: &Visit, id: i64, state: LotState) -> Vec<(String, &'static str)> {
-    let mut links =
-        vec![(format!("/lots/{id}/file"), "Lot file"), (format!("/lots/{id}/settling"), "How it settles")];
+    let mut links = vec![(format!("/lots/{id}/file"), "Lot file")];
     if state == LotState::Imported {
         return links;
     }

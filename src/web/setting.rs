@@ -19,7 +19,8 @@ pub const ROUTES: &[Route] = &[
     post("/settings/clock", &[Act::ConfirmClock], confirm_clock),
 ];
 
-const LEAD: &str = "What holds at this site. Each change stands in the history with its reason.";
+const LEAD: &str = "What holds at this site. Each change stands in the history with its reason. The thresholds of \
+                    suggestions have their own page, /settings/suggestions.";
 
 /// The value of a setting that holds now.
 pub fn value(visit: &Visit, setting: Setting) -> Result<i64, Failure> {

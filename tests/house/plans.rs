@@ -10,7 +10,9 @@ use rusqlite::auto_extension::{init_auto_extension, register_auto_extension};
 use rusqlite::functions::FunctionFlags;
 use rusqlite::trace::{TraceEvent, TraceEventCodes};
 use rusqlite::{Connection, StatementStatus, ffi};
+use supernate::acts;
 use supernate::domain::act::Act;
+use supernate::domain::actor::Actor;
 use supernate::domain::moment::plus_days;
 use supernate::domain::reason::Reason;
 use supernate::store::bulk;
@@ -24,7 +26,7 @@ static SEEN: Mutex<BTreeSet<String>> = Mutex::new(BTreeSet::new());
 static WRITTEN: Mutex<BTreeMap<String, i32>> = Mutex::new(BTreeMap::new());
 
 /// Tables with a row per lot, pull, test, reading, act or visit.
-const GROWING: [&str; 36] = [
+const GROWING: [&str; 41] = [
     "attachment",
     "container",
     "container_event",
@@ -61,10 +63,15 @@ const GROWING: [&str; 36] = [
     "trail_change",
     "trail_seal",
     "trail_subject",
+    "trend_exclusion",
+    "trend_forecast",
+    "trend_history",
+    "trend_seal",
+    "trend_verdict",
 ];
 
 /// The pages people live on. `{lot}`, `{study}`, `{pull}`, `{sample}` and `{test}` are of the newest lot.
-const PAGES: [(&str, &str); 18] = [
+const PAGES: [(&str, &str); 20] = [
     ("maren.oddy", "/week"),
     ("maren.oddy", "/week/pulls?show=late"),
     ("maren.oddy", "/lots"),
@@ -83,6 +90,8 @@ const PAGES: [(&str, &str); 18] = [
     ("ada.whitlock", "/review"),
     ("ada.whitlock", "/review/{sample}"),
     ("ada.whitlock", "/review/sign"),
+    ("ada.whitlock", "/trend"),
+    ("ada.whitlock", "/trend/tests/{test}"),
 ];
 
 #[test]
@@ -106,7 +115,23 @@ fn no_hot_page_walks_a_growing_table() {
         }
     }
     walks.extend(walks_of_a_submit(&lab, &plans, &ids));
+    walks.extend(walks_of_the_clock(&lab, &plans));
     assert!(walks.is_empty(), "{} walks over a growing table:\n\n{}", walks.len(), walks.join("\n\n"));
+}
+
+/// Forecasts sealed: the history of each test is found as for its verdict.
+fn walks_of_the_clock(lab: &Lab, plans: &Connection) -> Vec<String> {
+    lab.later_days(160);
+    SEEN.lock().unwrap().clear();
+    let sealed = acts::forecast::seal_due(&lab.app.db, &Actor::clock(lab.now())).unwrap();
+    assert!(sealed > 0, "a window is open");
+    let statements = SEEN.lock().unwrap().clone();
+    assert!(
+        statements
+            .iter()
+            .any(|sql| sql.contains("e.happened_on < :before") || sql.contains("e.happened_on < '"))
+    );
+    statements.iter().flat_map(|sql| walked(plans, sql)).map(|walk| format!("sealing: {walk}")).collect()
 }
 
 /// A form sent: its key, its act, the chain.

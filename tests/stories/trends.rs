@@ -408,3 +408,38 @@ fn expected_and_found_stand_in_one_line() {
     assert!(page.text().contains("not evaluable and count in neither number"), "{}", page.text());
     lab.reviewer().sees("/review", "Trend: expected and found");
 }
+
+#[test]
+fn what_the_tests_suggest_together_stands_with_its_evidence_and_what_is_missing() {
+    let lab = Lab::new();
+    let ageing = Ageing::new(&lab);
+    let lot = ageing.starts("TW-104-0801", 0);
+    for (months, value) in [(0, "99.6"), (3, "98.6"), (6, "97.8"), (9, "96.7")] {
+        ageing.reads(&lot, months, value);
+    }
+    let sample = ageing.sample(&lot, 9);
+    let pages = [format!("/lots/{}", lot.lot), format!("/review/{sample}")];
+    for path in &pages {
+        let page = lab.reviewer().sees(path, "What the tests suggest together").text();
+        for words in [
+            "R14 Point passes, bound does not (note): suggests that the claimed expiry is not yet proven",
+            "last result 96.7 at 9.0 months",
+            "sedimentation ratio at two ages; shake count missing",
+        ] {
+            assert!(page.contains(words), "{path}: {words}: {page}");
+        }
+        assert!(!page.contains("fault of sampling"), "{path}");
+    }
+    let settings = "/settings/suggestions";
+    let admin = lab.administrator();
+    let outside = admin.submits(
+        settings,
+        settings,
+        &[("suggest.r10-first", "7"), ("reason", "stricter for this site")],
+    );
+    assert_eq!(outside.status, 409);
+    assert!(outside.text().contains("outside 10 to 100"), "{}", outside.text());
+    admin.does(settings, settings, &[("suggest.r10-first", "100"), ("reason", "stricter for this site")]);
+    let page = lab.reviewer().get(&pages[0]).text();
+    assert!(page.contains("suggests a fault of sampling or mixing"), "{page}");
+}

@@ -4,7 +4,6 @@
 #![allow(dead_code)]
 
 pub mod aged;
-pub mod batches;
 pub mod samples;
 pub mod trends;
 pub mod world;

@@ -6,7 +6,6 @@ mod words;
 use askama::Template;
 
 use super::chart::Drawn;
-use super::cylinder::Strip;
 use crate::domain::lot_file::{Export, LotFile};
 
 /// A document of sections, embedded in a page or in an exported file.
@@ -28,8 +27,6 @@ pub struct Section {
     pub lead: String,
     pub facts: Vec<(String, String)>,
     pub charts: Vec<Drawn>,
-    /// The cylinders of each arm over its ages.
-    pub strips: Vec<(String, Strip)>,
     pub grids: Vec<Grid>,
 }
 

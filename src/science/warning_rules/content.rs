@@ -1,6 +1,6 @@
 //! R8 preservative, R9 water loss, R10 assay scatter, R12 pH drift.
 
-use super::facts::{At, Lot, ends, line, rose, significant, values};
+use super::facts::{At, Lot, ends, line, rose, significant_change, values};
 use super::{CLOSE, Finding, Level, Rule, Settings};
 use crate::science::distribution::student::Student;
 use crate::science::shelf_life::{Outcome, Side, crossing};
@@ -57,8 +57,9 @@ pub(super) fn water_loss(lot: &Lot, settings: &Settings) -> Finding {
         return Finding::lacking(Rule::R9, &["assay at two ages"]);
     };
     let loss = values(&lot.pulls, |pull| pull.weight_loss).last().copied();
-    let density = rose(&values(&lot.pulls, |pull| pull.density));
-    let viscosity = rose(&values(&lot.pulls, |pull| pull.viscosity.map(|viscosity| viscosity.value)));
+    let density = rose(&values(&lot.pulls, |pull| pull.density), lot.repeatability.density);
+    let thickness = values(&lot.pulls, |pull| pull.viscosity.map(|viscosity| viscosity.value));
+    let viscosity = rose(&thickness, lot.repeatability.viscosity);
     let ratio = last.value / first.value;
     let together = others_in_ratio(lot, ratio);
     let mut finding = Finding::new(Rule::R9).with("assay at baseline", first.value, Some(first.age)).with(
@@ -126,7 +127,8 @@ pub(super) fn scatter(lot: &Lot, settings: &Settings) -> Finding {
     );
     let grown = last.value >= settings.scatter_share * first.value - CLOSE
         && last.value >= settings.scatter_least - CLOSE;
-    let harder = rose(&values(&lot.pulls, |pull| pull.inversions)) == Some(true);
+    let harder =
+        rose(&values(&lot.pulls, |pull| pull.inversions), lot.repeatability.inversions) == Some(true);
     let residue = lot.pulls.last().is_some_and(|pull| pull.residue == Some(true));
     let apart = values(&lot.pulls, |pull| pull.top_bottom.map(f64::abs)).last().copied();
     let uneven = apart.is_some_and(|at| at.value >= settings.top_bottom - CLOSE);
@@ -152,13 +154,13 @@ pub(super) fn ph_drift(lot: &Lot, settings: &Settings) -> Finding {
         let then = line.at(expiry);
         let lower = lot.limits.ph_lower.is_some_and(|limit| then < limit);
         let upper = lot.limits.ph_upper.is_some_and(|limit| then > limit);
-        significant(&line) != 0 && (lower || upper)
+        significant_change(&ph, lot.repeatability.ph) != 0 && (lower || upper)
     });
     if !(moved || outside) {
         return finding;
     }
     let assay = values(&lot.pulls, |pull| pull.assay);
-    let assay_falls = line(&assay).is_some_and(|line| significant(&line) < 0);
+    let assay_falls = significant_change(&assay, lot.repeatability.assay) < 0;
     let colour = lot.pulls.iter().any(|pull| pull.colour_changed == Some(true));
     if let Some(line) = line(&assay) {
         finding = finding.with("assay slope per day", line.slope, None);

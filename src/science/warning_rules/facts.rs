@@ -148,6 +148,23 @@ pub enum Doubt {
     UnreadableSpread,
 }
 
+/// What two readings of the same thing differ by at most, by the method; a smaller change is none.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Repeatability {
+    /// Sedimentation ratio.
+    pub f: Option<f64>,
+    /// Inversions.
+    pub inversions: Option<f64>,
+    /// Viscosity, mPa·s.
+    pub viscosity: Option<f64>,
+    /// pH.
+    pub ph: Option<f64>,
+    /// Assay, % of label.
+    pub assay: Option<f64>,
+    /// Density.
+    pub density: Option<f64>,
+}
+
 /// One lot.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct Lot {
@@ -163,6 +180,8 @@ pub struct Lot {
     pub formula: Formula,
     /// Limits.
     pub limits: Limits,
+    /// Repeatability of the methods.
+    pub repeatability: Repeatability,
     /// Claimed expiry, days.
     pub expiry_days: Option<f64>,
     /// Weight loss, F and cap residue by orientation.
@@ -216,12 +235,26 @@ pub(super) fn significant(line: &Line) -> i8 {
     }
 }
 
-/// Whether values rose: the last above the first, and with three values or more a slope that differs from
-/// zero. None with fewer than two ages.
-pub(super) fn rose(values: &[At]) -> Option<bool> {
+/// Whether the change from first to last exceeds what the method itself scatters by, where that is known.
+pub(super) fn exceeds(values: &[At], repeatability: Option<f64>) -> bool {
+    let change = ends(values).map_or(0.0, |(first, last)| (last.value - first.value).abs());
+    repeatability.is_none_or(|least| change > least)
+}
+
+/// −1 for a fall, 1 for a rise that is significant and exceeds the repeatability of the method.
+pub(super) fn significant_change(values: &[At], repeatability: Option<f64>) -> i8 {
+    if !exceeds(values, repeatability) {
+        return 0;
+    }
+    line(values).map_or(0, |line| significant(&line))
+}
+
+/// Whether values rose: the last above the first by more than the repeatability, and with three values or more a
+/// slope that differs from zero. None with fewer than two ages.
+pub(super) fn rose(values: &[At], repeatability: Option<f64>) -> Option<bool> {
     let (first, last) = ends(values)?;
-    let real = values.len() < 3 || line(values).is_some_and(|line| significant(&line) > 0);
-    Some(last.value > first.value && real)
+    let real = values.len() < 3 || significant_change(values, repeatability) > 0;
+    Some(last.value > first.value && exceeds(values, repeatability) && real)
 }
 
 /// R² of a power of the values against age.

@@ -3,6 +3,7 @@
 use super::content::bound_meets;
 use super::facts::{ArmPair, At, Lot, values};
 use super::{CLOSE, Finding, Level, Rule, Settings};
+use crate::science::distribution::student::Student;
 use crate::science::shelf_life::Side;
 
 /// R11: the shake on the label is not enough, or nearly so.
@@ -43,27 +44,55 @@ fn moments(values: &[f64]) -> (f64, f64) {
     (mean, values.iter().map(|v| (v - mean) * (v - mean)).sum())
 }
 
-/// Difference of the arms, and their pooled standard deviation.
-fn difference(pair: &ArmPair) -> Option<(f64, f64)> {
+/// Difference of the arms with their pooled standard deviation.
+struct Difference {
+    difference: f64,
+    sd: f64,
+    /// Its standard error.
+    error: f64,
+    df: f64,
+}
+
+impl Difference {
+    /// Two-sided probability of Student's t test with pooled variance.
+    fn p(&self) -> f64 {
+        if self.error <= 0.0 {
+            return f64::from(self.difference == 0.0);
+        }
+        Student::new(self.df).map_or(1.0, |student| student.two_sided(self.difference / self.error))
+    }
+}
+
+fn difference(pair: &ArmPair) -> Option<Difference> {
     let (n, m) = (pair.upright.len(), pair.inverted.len());
     (n >= 2 && m >= 2).then_some(())?;
     let ((up, up_squares), (down, down_squares)) = (moments(&pair.upright), moments(&pair.inverted));
-    let sd = ((up_squares + down_squares) / (n + m - 2) as f64).sqrt();
-    ((down - up).is_finite() && sd.is_finite()).then_some((down - up, sd))
+    let (difference, df) = (down - up, (n + m - 2) as f64);
+    let sd = ((up_squares + down_squares) / df).sqrt();
+    let error = sd * (1.0 / n as f64 + 1.0 / m as f64).sqrt();
+    (difference.is_finite() && sd.is_finite()).then_some(Difference { difference, sd, error, df })
 }
 
 /// R13: inverted containers differ from upright ones.
 pub(super) fn orientation(lot: &Lot, settings: &Settings) -> Finding {
-    let found: Vec<(f64, f64)> = lot.arms.iter().filter_map(difference).collect();
+    let found: Vec<Difference> = lot.arms.iter().filter_map(difference).collect();
     if found.is_empty() {
         return Finding::lacking(Rule::R13, &["two upright and two inverted containers"]);
     }
     let mut finding = Finding::new(Rule::R13);
-    for (difference, sd) in &found {
-        finding = finding.with("inverted minus upright", *difference, None).with("pooled sd", *sd, None);
+    for one in &found {
+        finding = finding
+            .with("inverted minus upright", one.difference, None)
+            .with("pooled sd", one.sd, None)
+            .with("probability by chance", one.p(), None);
     }
-    let differs =
-        |(difference, sd): &(f64, f64)| difference.abs() > settings.arm_sds * sd + CLOSE * difference.abs();
+    // Beyond the stated number of standard deviations AND beyond chance: the standard deviation of the
+    // difference of two small means is not much smaller than the one of a value, so that with three containers a
+    // side 2 sd alone are passed by 7 % of pairs that do not differ.
+    let differs = |one: &Difference| {
+        let beyond = one.difference.abs() > settings.arm_sds * one.sd + CLOSE * one.difference.abs();
+        beyond && one.p() * (found.len() as f64) < settings.arm_level
+    };
     if found.iter().any(differs) {
         return finding
             .fires(Level::Watch, "suggests a leak, sorption by the closure, or a cake at the shoulder");

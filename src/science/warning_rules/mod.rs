@@ -170,8 +170,10 @@ pub struct Settings {
     pub label_share: f64,
     /// R12: change of pH.
     pub ph_change: f64,
-    /// R13: difference in pooled standard deviations.
+    /// R13: difference in pooled standard deviations …
     pub arm_sds: f64,
+    /// R13: … that comes by chance less often than this, over all pairs compared.
+    pub arm_level: f64,
     /// R15: largest F.
     pub largest_f: f64,
     /// R15: rise of F between readings without shaking.
@@ -205,6 +207,7 @@ impl Default for Settings {
             label_share: 0.8,
             ph_change: 0.5,
             arm_sds: 2.0,
+            arm_level: 0.01,
             largest_f: 1.1,
             f_rise: 0.05,
         }

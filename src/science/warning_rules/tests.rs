@@ -246,6 +246,18 @@ fn r13_compares_orientations() {
     assert_eq!(of(vec![0.4, 0.45, 0.42]), Level::Watch);
     assert_eq!(of(vec![0.11, 0.12, 0.10]), Level::Quiet);
     assert_eq!(of(vec![0.4]), Level::NotEvaluable);
+    // 2.5 pooled standard deviations of three and three: t = 3.06 on 4 degrees of freedom, p = 0.038.
+    assert_eq!(of(vec![0.125, 0.135, 0.145]), Level::Quiet);
+}
+
+/// A change that the method itself may make is no change, where its repeatability is known.
+#[test]
+fn a_change_within_the_repeatability_is_none() {
+    let mut drift = lot(pulls(6, |i, pull| pull.ph = Some(6.0 - 0.05 * i as f64)));
+    (drift.limits.ph_lower, drift.expiry_days) = (Some(5.5), Some(2000.0));
+    assert_eq!(level(Rule::R12, &drift), Level::Watch);
+    drift.repeatability.ph = Some(0.3);
+    assert_eq!(level(Rule::R12, &drift), Level::Quiet);
 }
 
 #[test]

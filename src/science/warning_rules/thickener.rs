@@ -1,6 +1,6 @@
 //! R6 viscosity loss explains settling, R7 why the thickener failed.
 
-use super::facts::{At, Lot, Pull, ends, line, significant, values};
+use super::facts::{At, Lot, Pull, ends, significant_change, values};
 use super::{CLOSE, Finding, Level, Rule, Settings};
 
 /// Low-shear viscosities by one method: that of the first pull that has one.
@@ -14,9 +14,9 @@ fn comparable(pulls: &[Pull]) -> Vec<At> {
     })
 }
 
-fn falling(values: &[At]) -> bool {
+fn falling(values: &[At], repeatability: Option<f64>) -> bool {
     let fell = ends(values).is_some_and(|(first, last)| last.value < first.value);
-    fell && line(values).is_some_and(|line| significant(&line) < 0)
+    fell && significant_change(values, repeatability) < 0
 }
 
 /// R6: viscosity fell, F falls, and the faster settling is about what the loss predicts.
@@ -47,7 +47,7 @@ pub(super) fn loss_explains_settling(lot: &Lot, settings: &Settings) -> Finding 
         .with("observed rate ratio", observed, None);
     let apart = (predicted / observed).max(observed / predicted);
     let thin = v_last.value <= settings.thinning_share * v_first.value + CLOSE;
-    if thin && falling(&f) && apart <= settings.rate_factor + CLOSE {
+    if thin && falling(&f, lot.repeatability.f) && apart <= settings.rate_factor + CLOSE {
         finding.fires(Level::Watch, "suggests that the thickener fails, not that the sediment cakes")
     } else {
         finding

@@ -60,13 +60,15 @@ pub struct Standout {
     pub judged_on: NaiveDate,
 }
 
-/// Alerts, actions and early warnings since a day, the newest first; at most so many.
+/// Alerts, actions and early warnings since a day, the newest first; at most so many. Every judged result has one row
+/// of H or A, by which the days are found.
 pub fn standing_out(reader: &Reader<'_>, day: NaiveDate, most: usize) -> Answer<Vec<Standout>> {
     reader.all(
         "select t.id, s.id, l.id, l.number,
              c.name || case a.orientation when 'not stated' then '' else ' ' || a.orientation end || ', ' || p.age_text,
              t.title, r.component, r.shown, r.unit, v.rule, v.verdict, v.sentence, v.judged_on
-         from trend_verdict v
+         from trend_verdict d
+         cross join trend_verdict v on v.result = d.result
          cross join result r on r.id = v.result
          join sample_test t on t.id = r.sample_test
          join sample s on s.id = t.sample
@@ -74,8 +76,9 @@ pub fn standing_out(reader: &Reader<'_>, day: NaiveDate, most: usize) -> Answer<
          join pull p on p.id = s.pull
          join study_arm a on a.id = p.study_arm
          join condition c on c.id = a.condition
-         where v.verdict in ('alert', 'action', 'likely', 'very likely')
-             and v.judged_on >= :day
+         where d.rule in ('H', 'A')
+             and d.judged_on >= :day
+             and v.verdict in ('alert', 'action', 'likely', 'very likely')
              and r.version = (select max(version) from result where sample_test = r.sample_test)
          order by v.judged_on desc, v.id desc
          limit :most",

@@ -4,6 +4,7 @@ mod chain;
 mod file;
 mod record;
 mod signature;
+mod trend;
 
 use std::fmt;
 use std::path::{Path, PathBuf};
@@ -112,6 +113,7 @@ pub fn run(reader: &Reader<'_>, files: &Path, expected: Option<&str>, progress: 
     check.part("the records", |check| record::verify(reader, check));
     check.part("the references", |check| references(reader, check));
     check.part("the signatures", |check| signature::verify(reader, check));
+    check.part("the trend", |check| trend::verify(reader, check));
     check.part("the attachments", |check| file::verify(reader, files, check));
     check.part("the guards", |check| guards(reader, check));
     check.report

@@ -8,7 +8,7 @@ use crate::domain::specification::{LimitSet, SpecificationContent};
 use crate::domain::subject::{Kind, Subject};
 use crate::report::chart::Chart;
 use crate::report::chart::from_series::{About, charts};
-use crate::report::cylinder::{Cylinder, of_points};
+use crate::report::cylinder::Cylinder;
 use crate::store;
 use crate::store::review::decision::AnswerLine;
 use crate::store::review::facts::{Head, ReviewSample};
@@ -17,6 +17,7 @@ use crate::store::signature::Signature;
 use crate::store::trail::Recent;
 use crate::store::trend::verdict::Verdict;
 use crate::store::{Answer, Reader};
+use crate::web::suggestion::Suggestions;
 use crate::web::trend::bands;
 
 /// Everything about one sample.
@@ -36,6 +37,8 @@ pub struct Loaded {
     pub clarities: Vec<(i64, u8)>,
     pub investigations: Vec<(i64, i64)>,
     pub verdicts: Vec<Verdict>,
+    /// Of the sample's lot, where it has results on a study.
+    pub suggestions: Option<Suggestions>,
     pub trail: Recent,
 }
 
@@ -58,6 +61,10 @@ pub fn load(reader: &Reader<'_>, id: i64) -> Answer<Loaded> {
         set: limit_set(&sample.head),
         points,
         clarities,
+        suggestions: match sample.head.pull {
+            Some(_) => Suggestions::of(reader, sample.head.lot)?,
+            None => None,
+        },
         verdicts: store::trend::verdict::of_sample(reader, id)?,
         investigations: store::review::page::investigations(reader, id)?,
         trail: store::trail::of_subject(reader, Subject::new(Kind::Sample, id))?,
@@ -121,6 +128,30 @@ impl Loaded {
 
     /// The product drawn at each age: sediment, clarity, inversions.
     pub fn cylinders(&self) -> Vec<Cylinder> {
-        of_points(&self.points, &self.clarities, false)
+        let mut cylinders: Vec<(i64, Cylinder)> = Vec::new();
+        let settled = |point: &&SeriesPoint| point.test == "sedimentation" && !point.is_missed;
+        for point in self.points.iter().filter(settled) {
+            let inversions = self.points.iter().find(|other| {
+                other.sample == point.sample && other.test == "redispersibility" && other.value.is_some()
+            });
+            let cylinder = Cylinder {
+                age: point.age.clone(),
+                ratio: point.value,
+                clarity: self.clarities.iter().find(|(id, _)| *id == point.sample).map(|(_, grade)| *grade),
+                inversions: inversions.map(inversion_words).unwrap_or_default(),
+                is_small: false,
+            };
+            cylinders.push((point.sample, cylinder));
+        }
+        let seen = |cylinder: &Cylinder| cylinder.ratio.is_some() || !cylinder.inversions.is_empty();
+        cylinders.into_iter().map(|(_, cylinder)| cylinder).filter(seen).collect()
+    }
+}
+
+fn inversion_words(point: &SeriesPoint) -> String {
+    if point.shown.contains("inversion") {
+        point.shown.clone()
+    } else {
+        format!("{} inversions", point.shown)
     }
 }

@@ -23,6 +23,7 @@ use crate::web::part::{Signatures, StatusMark, Trail};
 use crate::web::photo::Photos;
 use crate::web::reply::{Outcome, page_with};
 use crate::web::show;
+use crate::web::suggestion::Suggestions;
 use crate::web::trend::TrendPart;
 use crate::web::visit::Visit;
 
@@ -34,6 +35,7 @@ struct SamplePage {
     status: StatusMark,
     facts: Vec<(String, String)>,
     cards: Vec<Card>,
+    suggestions: Option<Suggestions>,
     rules: Vec<Rule>,
     charts: Vec<Drawn>,
     no_charts: &'static str,
@@ -113,6 +115,7 @@ fn view(visit: &Visit, loaded: &Loaded) -> Result<SamplePage, Failure> {
         status: StatusMark::of(status(&loaded.sample)),
         facts: facts_of(loaded),
         cards: card::cards(visit, loaded, &tests, card::may_answer(visit, loaded))?,
+        suggestions: loaded.suggestions.clone(),
         rules,
         charts: loaded.charts("", true).into_iter().map(|(_, chart)| chart.drawn()).collect(),
         no_charts: no_charts(loaded),
