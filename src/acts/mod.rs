@@ -11,6 +11,7 @@ pub mod condition;
 pub mod container;
 pub mod deviation;
 pub mod equipment;
+pub mod follow_through;
 pub mod forecast;
 pub mod formulation;
 pub mod import;

@@ -75,6 +75,7 @@ fn first_content(reader: &Reader<'_>, new: &NewProtocol) -> Result<ProtocolConte
         tests,
         spare_containers: 2,
         retain_containers: 1,
+        follow_through_containers: 0,
         why_no_intermediate: None,
         worst_orientation: None,
     })

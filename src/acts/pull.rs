@@ -4,7 +4,7 @@ use chrono::NaiveDate;
 
 use crate::domain::act::Act;
 use crate::domain::actor::Actor;
-use crate::domain::container::{self, names_label};
+use crate::domain::container::{self, Purpose, names_label};
 use crate::domain::failure::Failure;
 use crate::domain::moment::date_shown;
 use crate::domain::pull::{self, Event, Found, Scanned, Take};
@@ -31,6 +31,7 @@ fn scan(reader: &Reader<'_>, arm: i64, labels: &[String]) -> Result<Vec<Scanned>
     for typed in labels {
         let own = here.iter().find(|container| names_label(typed, &container.label));
         let found = match own {
+            Some(container) if container.purpose == Purpose::FollowThrough.words() => Found::NeverOpened,
             Some(container) if container.event.is_none() => Found::Here { container: container.id },
             Some(_) => Found::Left,
             None => match store::container::by_label(reader, typed.trim())? {

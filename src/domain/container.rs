@@ -12,6 +12,8 @@ pub enum Purpose {
     Pull,
     Spare,
     Retain,
+    /// Never opened: weighed, measured and photographed at each age.
+    FollowThrough,
 }
 
 impl Purpose {
@@ -21,6 +23,7 @@ impl Purpose {
             Purpose::Pull => "pull",
             Purpose::Spare => "spare",
             Purpose::Retain => "retain",
+            Purpose::FollowThrough => "follow-through",
         }
     }
 }

@@ -18,6 +18,7 @@ pub mod evaluation;
 pub mod failure;
 pub mod find;
 pub mod flag;
+pub mod follow_through;
 pub mod formula;
 pub mod formulation;
 pub mod hint;

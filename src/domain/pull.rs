@@ -178,6 +178,8 @@ pub enum Found {
     },
     /// A container of this arm that left already.
     Left,
+    /// It is followed unopened.
+    NeverOpened,
     /// A container of another arm or study.
     Elsewhere(String),
     Nowhere,
@@ -221,6 +223,10 @@ pub enum PullRefusal {
     LabelOfOther { place: usize, typed: String, what: String },
     #[error("“{typed}” left its chamber before. Nothing was recorded. Look at the label again.")]
     ContainerHasLeft { place: usize, typed: String },
+    #[error(
+        "“{typed}” is followed unopened through all ages. Nothing was recorded. Put it back and take another one."
+    )]
+    ContainerNeverOpened { place: usize, typed: String },
     #[error("“{typed}” stands twice. Scan each container once.")]
     ContainerScannedTwice { place: usize, typed: String },
     #[error("The last point of an arm is never taken early. Its window opens on {0}.")]
@@ -252,6 +258,7 @@ impl NamedReason for PullRefusal {
             WrongLabel { place, .. }
             | LabelOfOther { place, .. }
             | ContainerHasLeft { place, .. }
+            | ContainerNeverOpened { place, .. }
             | ContainerScannedTwice { place, .. } => Some(format!("container.{place}")),
             NoContainer => Some("container.1".to_string()),
             TakenInFuture | TakenBeforeTimeZero => Some("taken_on".to_string()),
@@ -346,6 +353,7 @@ fn labels_match(scanned: &[Scanned]) -> Result<(), PullRefusal> {
             Found::Elsewhere(what) => {
                 return Err(PullRefusal::LabelOfOther { place, typed, what: what.clone() });
             }
+            Found::NeverOpened => return Err(PullRefusal::ContainerNeverOpened { place, typed }),
             Found::Left => return Err(PullRefusal::ContainerHasLeft { place, typed }),
             Found::Here { container } if seen.contains(container) => {
                 return Err(PullRefusal::ContainerScannedTwice { place, typed });

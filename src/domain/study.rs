@@ -193,6 +193,7 @@ fn plan_arm(ground: &Ground<'_>, arm: &Arm) -> PlannedArm {
         (Purpose::Pull, needed),
         (Purpose::Spare, content.spare_containers),
         (Purpose::Retain, content.retain_containers),
+        (Purpose::FollowThrough, content.follow_through_containers),
     ];
     let containers = containers.into_iter().filter(|(_, count)| *count > 0).collect();
     PlannedArm { arm: arm.clone(), containers, pulls }
@@ -368,6 +369,7 @@ mod tests {
             tests,
             spare_containers: 2,
             retain_containers: 1,
+            follow_through_containers: 0,
             why_no_intermediate: None,
             worst_orientation: None,
         }

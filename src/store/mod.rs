@@ -17,6 +17,7 @@ pub mod equipment;
 pub mod evaluation;
 pub mod find;
 pub mod flag;
+pub mod follow_through;
 pub mod formulation;
 pub mod import;
 pub mod instrument;

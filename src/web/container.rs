@@ -3,6 +3,7 @@
 use askama::Template;
 
 use super::field::{Entry, Field};
+use super::follow_through::{Followed, observe_form, typed};
 use super::form::{self, Form};
 use super::page::Shell;
 use super::reply::{Outcome, page_with};
@@ -13,13 +14,16 @@ use super::visit::Visit;
 use crate::acts;
 use crate::acts::container::NewEvent;
 use crate::domain::act::Act;
-use crate::domain::container::Event;
+use crate::domain::container::{Event, Purpose};
 use crate::domain::failure::Failure;
 use crate::store;
 use crate::store::container::{Container, LedgerLine};
 
-pub const ROUTES: &[Route] =
-    &[get("/containers/{id}", one), post("/containers/{id}/events", &[Act::RecordContainer], record)];
+pub const ROUTES: &[Route] = &[
+    get("/containers/{id}", one),
+    post("/containers/{id}/events", &[Act::RecordContainer], record),
+    post("/containers/{id}/observations", &[Act::RecordContainer], observe),
+];
 
 #[derive(Template)]
 #[template(path = "container/container.html")]
@@ -29,10 +33,12 @@ struct ContainerPage {
     where_it_is: String,
     rows: Vec<(String, String, String, String, i64)>,
     form: Option<Form>,
+    followed: Option<Followed>,
+    observe: Option<Form>,
 }
 
 fn one(visit: &Visit) -> Outcome {
-    container_page(200, visit, visit.id("id")?, None)
+    container_page(200, visit, visit.id("id")?, None, None)
 }
 
 fn row(visit: &Visit, line: LedgerLine) -> (String, String, String, String, i64) {
@@ -40,7 +46,13 @@ fn row(visit: &Visit, line: LedgerLine) -> (String, String, String, String, i64)
     (show::instant(&line.at, visit.at.zone), line.who, what, line.note.unwrap_or_default(), line.act)
 }
 
-fn container_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcome {
+fn container_page(
+    status: u16,
+    visit: &Visit,
+    id: i64,
+    failed: Option<Form>,
+    unobserved: Option<Form>,
+) -> Outcome {
     let (container, events) = visit
         .read(|reader| Ok((store::container::get(reader, id)?, store::container::events(reader, id)?)))?;
     let is_destroyed = container.event.as_deref() == Some(Event::Destroyed.words());
@@ -52,7 +64,13 @@ fn container_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> 
     let mut shell = Shell::of(visit, &format!("Container {}", container.label))
         .crumb("/studies", "Studies")
         .crumb(format!("/studies/{}", container.study), container.study_number.clone());
-    if let Some(form) = &form {
+    let is_followed = container.purpose == Purpose::FollowThrough.words();
+    let observe = match unobserved {
+        Some(failed) => Some(failed),
+        None if is_followed && container.event.is_none() => observe_form(visit, id)?,
+        None => None,
+    };
+    for form in form.iter().chain(&observe).filter(|form| form.has_errors()) {
         shell = shell.with_errors(form);
     }
     let where_it_is = match (&container.event, &container.chamber_code) {
@@ -60,8 +78,9 @@ fn container_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> 
         (None, Some(chamber)) => format!("in chamber {chamber}"),
         (None, None) => "kept by the user's conditions".to_string(),
     };
+    let followed = if is_followed { Some(Followed::of(visit, id)?) } else { None };
     let rows = events.into_iter().map(|line| row(visit, line)).collect();
-    page_with(status, &ContainerPage { shell, container, where_it_is, rows, form })
+    page_with(status, &ContainerPage { shell, container, where_it_is, rows, form, followed, observe })
 }
 
 fn event_form(visit: &Visit, id: i64) -> Result<Form, Failure> {
@@ -92,6 +111,23 @@ fn record(visit: &Visit) -> Outcome {
         },
         |actor, new| acts::container::record(visit.db(), actor, id, &new),
         |()| format!("/containers/{id}"),
-        |status, form| container_page(status, visit, id, Some(form)),
+        |status, form| container_page(status, visit, id, Some(form), None),
+    )
+}
+
+/// Weight, heights and photo of a container that is never opened.
+fn observe(visit: &Visit) -> Outcome {
+    let id = visit.id("id")?;
+    visit.read(|reader| store::container::get(reader, id))?;
+    let Some(form) = observe_form(visit, id)? else { return Err(Failure::Denied(Act::RecordContainer)) };
+    let upload = visit.uploads.iter().find(|upload| upload.field == "photo" && !upload.bytes.is_empty());
+    let photo = upload.map(|upload| (upload.file_name.as_str(), upload.bytes.as_slice()));
+    form::submit(
+        visit,
+        form,
+        typed,
+        |actor, new| acts::follow_through::observe(visit.db(), &visit.app.folder, actor, id, &new, photo),
+        |()| format!("/containers/{id}"),
+        |status, form| container_page(status, visit, id, None, Some(form)),
     )
 }

@@ -17,6 +17,7 @@ pub mod evaluation;
 pub mod failure;
 pub mod field;
 pub mod find;
+pub mod follow_through;
 pub mod form;
 pub mod formulation;
 pub mod guard;

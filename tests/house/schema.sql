@@ -12,6 +12,8 @@ CREATE INDEX container_event_by_container on container_event (container);
 
 CREATE INDEX container_event_by_pull on container_event (pull) where pull is not null;
 
+CREATE INDEX container_observation_by_container on container_observation (container, pull);
+
 CREATE INDEX deviation_by_lot on deviation (lot) where lot is not null;
 
 CREATE INDEX deviation_entry_by_deviation on deviation_entry (deviation);
@@ -272,6 +274,19 @@ CREATE TABLE container_event (
     pull integer references pull (id),
     witness integer references account (id),
     note text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE container_observation (
+    id integer primary key,
+    container integer not null references container (id),
+    pull integer references pull (id),      -- the pull whose age it belongs to; null: at loading
+    weight_g text not null,                 -- exact decimals
+    bed_top_mm text,                        -- height of the sediment above the base
+    fill_line_mm text,                      -- height of the liquid above the base
+    attachment integer references attachment (id),
+    note text,
+    supersedes integer unique references container_observation (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -1215,6 +1230,11 @@ when exists (select 1 from packaging_entry e join trail_act a on a.id = e.act
     where e.item = new.item and a.account = new.account)
 begin select raise(abort, 'who counted does not check'); end;
 
+CREATE TRIGGER guard_follow_through_is_never_opened before insert on container_event
+when new.kind in ('pulled', 'partial pull', 're-pull', 'investigation')
+    and (select purpose from container where id = new.container) = 'follow-through'
+begin select raise(abort, 'a follow-through container is never opened'); end;
+
 CREATE TRIGGER guard_formulation_version before update on formulation_version
 when exists (select 1 from signature where kind = 'formulation_version' and subject = old.id)
 begin select raise(abort, 'a signed version is frozen'); end;
@@ -1226,6 +1246,10 @@ begin select raise(abort, 'a later status of a material lot is signed'); end;
 CREATE TRIGGER guard_method_version before update on method_version
 when exists (select 1 from signature where kind = 'method_version' and subject = old.id)
 begin select raise(abort, 'a signed version is frozen'); end;
+
+CREATE TRIGGER guard_only_follow_through_is_observed before insert on container_observation
+when (select purpose from container where id = new.container) <> 'follow-through'
+begin select raise(abort, 'only a follow-through container is observed'); end;
 
 CREATE TRIGGER guard_protocol_version before update on protocol_version
 when exists (select 1 from signature where kind = 'protocol_version' and subject = old.id)

@@ -18,6 +18,7 @@ mod demos;
 mod deviations;
 mod equipments;
 mod evaluations;
+mod follow_throughs;
 mod formulations;
 mod hostile_texts;
 mod imports;

@@ -22,10 +22,18 @@ pub struct ProtocolContent {
     /// Containers kept beyond those the pulls need, per arm.
     pub spare_containers: u32,
     pub retain_containers: u32,
+    /// Containers per arm that are never opened and followed through all ages (decision A3).
+    #[serde(default, skip_serializing_if = "is_none")]
+    pub follow_through_containers: u32,
     /// Why a 25 °C/60 % RH protocol has no contingent intermediate arm (decision A16).
     pub why_no_intermediate: Option<String>,
     /// For a routine study in one orientation: which was the worst and why (requirement C11).
     pub worst_orientation: Option<String>,
+}
+
+/// Left out of the document, so that versions from before the field stay the same text.
+fn is_none(count: &u32) -> bool {
+    *count == 0
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]

@@ -281,6 +281,7 @@ mod tests {
             }],
             spare_containers: 2,
             retain_containers: 1,
+            follow_through_containers: 0,
             why_no_intermediate: None,
             worst_orientation: None,
         }

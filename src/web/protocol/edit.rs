@@ -95,6 +95,11 @@ fn arms_form(visit: &Visit, id: i64, loaded: &Loaded) -> Result<Form, Failure> {
         .field(count("spare", "Spare containers in each arm", content.spare_containers))
         .field(count("retain", "Retained containers in each arm", content.retain_containers))
         .field(
+            count("follow_through", "Followed unopened in each arm", content.follow_through_containers).hint(
+                "Weighed at loading, then weighed, measured and photographed at each age; never opened.",
+            ),
+        )
+        .field(
             Field::new("why_no_intermediate", "Why there is no contingent intermediate arm", Entry::Text)
                 .value(content.why_no_intermediate.clone().unwrap_or_default())
                 .hint("Only for long-term 25/60 without one."),
@@ -202,6 +207,7 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
         .collect();
     let spare = typed.count("spare", 0, 200);
     let retain = typed.count("retain", 0, 200);
+    let follow_through = typed.count("follow_through", 0, 200);
     let why_no_intermediate = typed.maybe_text("why_no_intermediate", 300);
     let worst_orientation = typed.maybe_text("worst_orientation", 300);
     Some(ProtocolContent {
@@ -211,6 +217,7 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
         tests: tests?,
         spare_containers: u32::try_from(spare?).ok()?,
         retain_containers: u32::try_from(retain?).ok()?,
+        follow_through_containers: u32::try_from(follow_through?).ok()?,
         why_no_intermediate: why_no_intermediate?,
         worst_orientation: worst_orientation?,
     })

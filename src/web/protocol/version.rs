@@ -107,7 +107,9 @@ impl Loaded {
                 minutes: minutes_words(one.minutes),
             });
         }
-        let kept = self.content.spare_containers + self.content.retain_containers;
+        let kept = self.content.spare_containers
+            + self.content.retain_containers
+            + self.content.follow_through_containers;
         let containers = total.containers + kept;
         ArmView { words, side: side_words(arm), rows, containers, minutes: minutes_words(total.minutes) }
     }
@@ -144,6 +146,7 @@ struct VersionPage {
     specification_version: i64,
     spare: u32,
     retain: u32,
+    followed: u32,
     why_no_intermediate: Option<String>,
     worst_orientation: Option<String>,
     tests: Vec<(String, bool)>,
@@ -188,6 +191,7 @@ fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Ou
         specification_version: content.specification_version,
         spare: content.spare_containers,
         retain: content.retain_containers,
+        followed: content.follow_through_containers,
         why_no_intermediate: content.why_no_intermediate.clone(),
         worst_orientation: content.worst_orientation.clone(),
         tests: content.tests.iter().map(|test| (test.title.clone(), test.is_information)).collect(),

@@ -35,6 +35,7 @@ struct StudyPage {
     arms: Vec<ArmRow>,
     charts: Vec<Drawn>,
     ledger: Vec<LedgerRow>,
+    followed: Vec<store::follow_through::Followed>,
     warnings: Vec<String>,
     /// Version, words, when, who and why of each amendment.
     amendments: Vec<AmendmentRow>,
@@ -236,6 +237,7 @@ fn study_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outc
         ages,
         charts: of_arms(&study.lot_number, &points, true),
         ledger: ledger_rows(visit, &arms, ledger),
+        followed: visit.read(|reader| store::follow_through::of_study(reader, id))?,
         warnings,
         amendments: amendments.into_iter().map(|one| amendment_row(visit, one)).collect(),
         may_amend: newer && visit.may(Act::AmendStudy),
