@@ -6,6 +6,7 @@ pub mod attachment;
 pub mod backup;
 pub mod chamber;
 pub mod check;
+pub mod completeness;
 pub mod conclusion;
 pub mod condition;
 pub mod container;

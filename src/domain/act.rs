@@ -95,6 +95,9 @@ acts! {
     KeepRetain, "recorded a retain", Roles(&[ProductionOperator, Analyst, LabManager]);
     RecordRetainEvent, "recorded a retain event", Roles(&[Analyst, LabManager, QaReviewer]);
 
+    StateCompleteness, "stated an item of a lot's record", Roles(&[ProductionOperator, LabManager, QaReviewer]);
+    StateRecordElsewhere, "stated where a lot's record is kept", Roles(&[LabManager, QaReviewer]);
+
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
     RecordDistribution, "recorded the distribution of a lot", Roles(&[QaReviewer]);
     DecideLot, "decided on a lot", Roles(&[QaReviewer]);

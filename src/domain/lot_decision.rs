@@ -43,6 +43,10 @@ pub struct DecisionFacts {
     pub not_conforming: Vec<String>,
     /// Numbers of investigations over results of the lot that have no conclusion.
     pub open_investigations: Vec<i64>,
+    /// Numbers of deviations of the lot, or of its bulk lot, that are not closed.
+    pub open_deviations: Vec<i64>,
+    /// The items of 21 CFR 211.188 (b) that are missing.
+    pub missing_items: Vec<String>,
     /// The last day of use by the assigned shelf life; `None` where none is assigned for the day it was made.
     pub expires_on: Option<NaiveDate>,
 }
@@ -69,6 +73,14 @@ pub enum DecisionRefusal {
     ReleaseNotConforming(String),
     #[error("These investigations are open: {0}. Conclude them first.")]
     InvestigationOpen(String),
+    #[error("These deviations are open: {0}. QA closes them first.")]
+    DeviationOpen(String),
+    #[error("The record of {lot} lacks: {items}. Its page of completeness says how to mend it.")]
+    RecordIncomplete { lot: String, items: String },
+    #[error("Look through the corrections and the history of the lot, then tick that you did.")]
+    TrailNotReviewed,
+    #[error("Something was recorded on {0} since this page was shown. Look at it again, then decide.")]
+    ChangedSinceShown(String),
     #[error(
         "No shelf life is assigned for a lot of this presentation made on that day, so there is no expiry. \
          QA assigns one on the page of the presentation."
@@ -80,7 +92,11 @@ pub enum DecisionRefusal {
 
 impl NamedReason for DecisionRefusal {
     fn field(&self) -> Option<String> {
-        matches!(self, DecisionRefusal::ReasonTooShort).then(|| "reason".to_string())
+        match self {
+            DecisionRefusal::ReasonTooShort => Some("reason".to_string()),
+            DecisionRefusal::TrailNotReviewed => Some("is_reviewed".to_string()),
+            _ => None,
+        }
     }
 }
 
@@ -89,7 +105,7 @@ pub const SHORTEST_REASON: usize = 20;
 
 /// Whether the lot may be released. Refuses in this order: imported, formulation not approved, released already,
 /// rejected, no release sample, tests missing, not complete, not reviewed, not conforming, open investigation,
-/// no shelf life.
+/// open deviation, record incomplete, no shelf life.
 pub fn may_release(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
     let lot = || facts.lot_number.clone();
     if facts.is_imported {
@@ -122,6 +138,13 @@ pub fn may_release(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
         let numbers: Vec<String> = facts.open_investigations.iter().map(i64::to_string).collect();
         return Err(DecisionRefusal::InvestigationOpen(numbers.join(", ")));
     }
+    if !facts.open_deviations.is_empty() {
+        let numbers: Vec<String> = facts.open_deviations.iter().map(i64::to_string).collect();
+        return Err(DecisionRefusal::DeviationOpen(numbers.join(", ")));
+    }
+    if !facts.missing_items.is_empty() {
+        return Err(DecisionRefusal::RecordIncomplete { lot: lot(), items: facts.missing_items.join("; ") });
+    }
     facts.expires_on.map(|_| ()).ok_or(DecisionRefusal::ShelfLifeMissing)
 }
 
@@ -138,6 +161,26 @@ fn samples_in(facts: &DecisionFacts, states: &[SampleState]) -> Option<String> {
 fn unsigned(facts: &DecisionFacts) -> Option<String> {
     let open = [SampleState::WaitingForReview, SampleState::ChangedAfterSigning, SampleState::Imported];
     samples_in(facts, &open)
+}
+
+/// What the person who releases has looked at.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Looked {
+    /// The newest entry of the lot's history when the page was shown.
+    pub up_to_act: i64,
+    /// Ticked: corrections and history were looked through (req_I6).
+    pub is_reviewed: bool,
+}
+
+/// Whether what was looked at is what stands now. Refuses in this order: not ticked, changed since.
+pub fn has_looked(looked: Looked, newest_act: i64, lot: &str) -> Result<(), DecisionRefusal> {
+    if !looked.is_reviewed {
+        return Err(DecisionRefusal::TrailNotReviewed);
+    }
+    if looked.up_to_act != newest_act {
+        return Err(DecisionRefusal::ChangedSinceShown(lot.to_string()));
+    }
+    Ok(())
 }
 
 /// Whether the lot may be rejected. Refuses in this order: imported, rejected already, the reason.
@@ -174,6 +217,8 @@ mod tests {
             tests_missing: Vec::new(),
             not_conforming: Vec::new(),
             open_investigations: Vec::new(),
+            open_deviations: Vec::new(),
+            missing_items: Vec::new(),
             expires_on: NaiveDate::from_ymd_opt(2028, 12, 31),
         }
     }
@@ -224,12 +269,29 @@ mod tests {
                 DecisionFacts { open_investigations: vec![3, 7], ..good() },
                 Err(DecisionRefusal::InvestigationOpen("3, 7".to_string())),
             ),
+            (
+                DecisionFacts { open_deviations: vec![2], missing_items: vec!["x".into()], ..good() },
+                Err(DecisionRefusal::DeviationOpen("2".to_string())),
+            ),
+            (
+                DecisionFacts { missing_items: vec!["(1) dates".into()], expires_on: None, ..good() },
+                Err(DecisionRefusal::RecordIncomplete { lot: lot(), items: "(1) dates".to_string() }),
+            ),
             (DecisionFacts { expires_on: None, ..good() }, Err(DecisionRefusal::ShelfLifeMissing)),
             (good(), Ok(())),
         ];
         for (facts, expected) in table {
             assert_eq!(may_release(&facts), expected, "{facts:?}");
         }
+    }
+
+    #[test]
+    fn a_release_is_signed_over_what_was_looked_at() {
+        let looked = |up_to_act, is_reviewed| Looked { up_to_act, is_reviewed };
+        assert_eq!(has_looked(looked(7, true), 7, "TW-104"), Ok(()));
+        assert_eq!(has_looked(looked(6, false), 7, "TW-104"), Err(DecisionRefusal::TrailNotReviewed));
+        let changed = DecisionRefusal::ChangedSinceShown("TW-104".to_string());
+        assert_eq!(has_looked(looked(6, true), 7, "TW-104"), Err(changed));
     }
 
     #[test]

@@ -8,6 +8,7 @@ pub mod amendment;
 pub mod attachment;
 pub mod chamber;
 pub mod check;
+pub mod completeness;
 pub mod conclusion;
 pub mod condition;
 pub mod container;

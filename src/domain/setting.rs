@@ -64,7 +64,17 @@ pub const POOLING_PERCENT: Setting = Setting {
     most: 50,
 };
 
-pub const ALL: [Setting; 8] = [
+/// Days from production to release up to which the shelf life starts with the release (req_L11).
+pub const LIFE_FROM_RELEASE_DAYS: Setting = Setting {
+    name: "expiry.release-days",
+    label: "Shelf life counts from the release up to so many days after production, days",
+    hint: "30 by EMA CPMP/QWP/072/96; later releases count from production. 0: always from production.",
+    default: 30,
+    least: 0,
+    most: 30,
+};
+
+pub const ALL: [Setting; 9] = [
     IDLE_MINUTES,
     BENCH_IDLE_MINUTES,
     WINDOWS[0],
@@ -73,6 +83,7 @@ pub const ALL: [Setting; 8] = [
     WINDOWS[3],
     WINDOWS[4],
     POOLING_PERCENT,
+    LIFE_FROM_RELEASE_DAYS,
 ];
 
 #[derive(Debug, PartialEq, Eq, thiserror::Error)]

@@ -64,6 +64,31 @@ pub fn expiry(made_on: NaiveDate, months: u32, format: ExpiryFormat) -> NaiveDat
     }
 }
 
+/// From which day the shelf life counts, and by which rule.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct LifeStart {
+    pub on: NaiveDate,
+    pub rule: String,
+}
+
+/// The start of the shelf life of a lot that is released on a day: the release, or the production where more than
+/// `most_days` passed between them (EMA CPMP/QWP/072/96: 30 days). With 0 days it is always the production.
+pub fn life_start(made_on: NaiveDate, released_on: NaiveDate, most_days: i64) -> LifeStart {
+    let days = (released_on - made_on).num_days();
+    let after = if days == 1 { "1 day after it".to_string() } else { format!("{days} days after it") };
+    let made = |rule: String| LifeStart { on: made_on, rule };
+    match (most_days, days) {
+        (0, _) => made("from the day it was made, by the site's setting".to_string()),
+        (most, days) if days > most => made(format!(
+            "from the day it was made, because the release comes {after}, later than {most} days"
+        )),
+        (most, _) => LifeStart {
+            on: released_on,
+            rule: format!("from the release, which comes {after} was made, within {most} days"),
+        },
+    }
+}
+
 fn month_end(date: NaiveDate) -> NaiveDate {
     let first = plus_days(date, 1 - i64::from(date.day()));
     plus_days(plus_months(first, 1), -1)
@@ -176,6 +201,22 @@ mod tests {
             );
             assert_eq!(expiry(day(made), months, ExpiryFormat::MonthEnd), day(end), "{made} + {months}, end");
         }
+    }
+
+    /// req_L11: the release starts the shelf life, the production where more than 30 days passed; the 31-day case.
+    #[test]
+    fn the_shelf_life_starts_at_the_release_or_after_30_days_at_the_production() {
+        let table = [
+            ("2026-11-01", "2026-11-01", 30, "2026-11-01"),
+            ("2026-11-01", "2026-12-01", 30, "2026-12-01"),
+            ("2026-11-01", "2026-12-02", 30, "2026-11-01"),
+            ("2026-11-01", "2026-11-20", 0, "2026-11-01"),
+        ];
+        for (made, released, most, expected) in table {
+            assert_eq!(life_start(day(made), day(released), most).on, day(expected), "{made} {released}");
+        }
+        let rule = life_start(day("2026-11-01"), day("2026-12-02"), 30).rule;
+        assert!(rule.contains("31 days after it, later than 30 days"), "{rule}");
     }
 
     proptest! {

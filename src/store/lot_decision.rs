@@ -4,6 +4,7 @@ use chrono::NaiveDate;
 use rusqlite::{Row, named_params};
 
 use super::door::Change;
+use super::lot_review::LotReview;
 use super::review::facts::ReviewSample;
 use super::{Answer, Day, Reader};
 use crate::domain::specification::Limit;
@@ -75,7 +76,14 @@ pub fn insert(change: &Change<'_>, new: &NewDecision, signature: i64) -> Answer<
 
 /// The text of a decision that is signed: the lot, what was decided, the expiry with the assignment it comes
 /// from, the reason, and each release sample with the digest that its reviewer signed, as of an act.
-pub fn canonical(reader: &Reader<'_>, new: &NewDecision, up_to_act: i64) -> Answer<String> {
+///
+/// A release is signed over what was looked through as well.
+pub fn canonical(
+    reader: &Reader<'_>,
+    new: &NewDecision,
+    review: Option<&LotReview>,
+    up_to_act: i64,
+) -> Answer<String> {
     let (number, digest) = reader.one(
         "lot with this number",
         "select number, formulation_digest from lot where id = :lot",
@@ -97,6 +105,9 @@ pub fn canonical(reader: &Reader<'_>, new: &NewDecision, up_to_act: i64) -> Answ
         |row| Ok(serde_json::json!(["reviewed", row.get::<_, String>(0)?, row.get::<_, String>(1)?])),
     )?;
     lines.extend(signed);
+    lines.extend(
+        review.map(|one| serde_json::json!(["looked through", one.up_to_act, one.corrections, one.digest])),
+    );
     Ok(lines.iter().map(|line| format!("{line}\n")).collect())
 }
 
@@ -117,7 +128,8 @@ pub fn canonical_of_signature(reader: &Reader<'_>, signature: i64) -> Answer<Opt
         expires_on: found.expires_on,
         statement: found.statement,
     };
-    canonical(reader, &new, found.act).map(Some)
+    let review = super::lot_review::under(reader, signature)?;
+    canonical(reader, &new, review.as_ref(), found.act).map(Some)
 }
 
 /// The release samples of a lot with the facts of their review.

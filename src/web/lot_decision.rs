@@ -2,13 +2,16 @@
 
 use askama::Template;
 
+use super::completeness::Items;
 use super::field::{Entry, Field};
 use super::form::{self, Form};
+use super::lot_parts::deviations_table;
 use super::page::Shell;
 use super::part::{Signatures, Trail};
 use super::reply::{Outcome, page_with};
 use super::route::{Route, get, post};
 use super::show;
+use super::table::Table;
 use super::visit::Visit;
 use crate::acts;
 use crate::acts::lot_decision::{Grounds, grounds};
@@ -16,12 +19,14 @@ use crate::acts::signature::{Rejection, Release};
 use crate::domain::act::Act;
 use crate::domain::digest::sha256_hex;
 use crate::domain::failure::Failure;
-use crate::domain::lot_decision::{Decision, SHORTEST_REASON, may_release};
+use crate::domain::lot_decision::{Decision, Looked, SHORTEST_REASON, may_release};
 use crate::domain::moment::date_shown;
+use crate::domain::retain::records_kept_until;
 use crate::domain::role::Role;
 use crate::domain::signature::Meaning;
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
+use crate::store::lot_review::Correction;
 
 pub const ROUTES: &[Route] = &[
     get("/lots/{id}/decision", decision),
@@ -37,6 +42,9 @@ struct DecisionPage {
     lead: String,
     facts: Vec<(&'static str, String)>,
     results: Vec<ResultRow>,
+    items: Items,
+    deviations: Table,
+    corrections: Vec<(Correction, String)>,
     /// Why the lot cannot be released now; empty where it can.
     why_not: String,
     release: Option<Form>,
@@ -63,7 +71,7 @@ fn decision_page(status: u16, visit: &Visit, failed: Option<Form>) -> Outcome {
     let id = visit.id("id")?;
     let (found, signatures, lines) = visit.read(|reader| {
         Ok((
-            grounds(reader, id)?,
+            grounds(reader, id, visit.at.date())?,
             signatures(reader, id, visit)?,
             store::trail::of_subject(reader, Subject::new(Kind::Lot, id))?,
         ))
@@ -73,7 +81,8 @@ fn decision_page(status: u16, visit: &Visit, failed: Option<Form>) -> Outcome {
     let mut shell =
         Shell::of(visit, &title).crumb("/lots", "Lots").crumb(format!("/lots/{id}"), &found.lot.number);
     let may_decide = visit.may(Act::DecideLot) && !found.facts.is_imported;
-    let mut release = if may_decide && refusal.is_none() { Some(release_form(visit, id)?) } else { None };
+    let mut release =
+        if may_decide && refusal.is_none() { Some(release_form(visit, id, found.newest_act)?) } else { None };
     if let Some(failed) = failed {
         shell = shell.with_errors(&failed);
         release = Some(failed);
@@ -82,6 +91,9 @@ fn decision_page(status: u16, visit: &Visit, failed: Option<Form>) -> Outcome {
         lead: lead(&found),
         facts: facts(&found),
         results: rows(&found),
+        items: Items::of(&found.items),
+        deviations: deviations_table(&found.deviations),
+        corrections: corrections(&found, visit),
         why_not: refusal.map(|refusal| refusal.to_string()).unwrap_or_default(),
         release,
         may_reject: may_decide && found.facts.decided != Some(Decision::Rejected),
@@ -141,10 +153,19 @@ fn facts(found: &Grounds) -> Vec<(&'static str, String)> {
         facts.push(("Storage", assigned.storage_statement.clone()));
         let expiry = found.facts.expires_on.map_or("not computed".to_string(), date_shown);
         let rule = assigned.expiry_format.words();
-        facts.push(("Expiry", format!("{expiry} ({} months after it was made; {rule})", assigned.months)));
+        let start = found.life_start.as_ref().map(|start| start.rule.as_str()).unwrap_or_default();
+        facts.push(("Expiry", format!("{expiry} ({} months {start}; {rule})", assigned.months)));
+        let released = found.facts.decided == Some(Decision::Released);
+        let kept = records_kept_until(found.facts.expires_on, found.released_on());
+        if let Some(kept) = kept.filter(|_| released) {
+            let rule = "the later of expiry + 1 year and release + 5 years";
+            facts.push(("Records kept until", format!("{} ({rule})", date_shown(kept))));
+        }
     }
     let open: Vec<String> = found.facts.open_investigations.iter().map(i64::to_string).collect();
     facts.push(("Open investigations", if open.is_empty() { "none".to_string() } else { open.join(", ") }));
+    let open: Vec<String> = found.facts.open_deviations.iter().map(i64::to_string).collect();
+    facts.push(("Open deviations", if open.is_empty() { "none".to_string() } else { open.join(", ") }));
     facts
 }
 
@@ -164,8 +185,18 @@ fn rows(found: &Grounds) -> Vec<ResultRow> {
     found.results.iter().map(row).collect()
 }
 
-fn release_form(visit: &Visit, id: i64) -> Result<Form, Failure> {
+fn corrections(found: &Grounds, visit: &Visit) -> Vec<(Correction, String)> {
+    let shown = |one: &Correction| (one.clone(), show::instant(&one.at, visit.at.zone));
+    found.corrections.iter().map(shown).collect()
+}
+
+fn release_form(visit: &Visit, id: i64, newest_act: i64) -> Result<Form, Failure> {
     Ok(Form::new(visit, &format!("/lots/{id}/release"), "Release this lot")?
+        .hide("up_to_act", newest_act.to_string())
+        .field(
+            Field::new("is_reviewed", "I looked through the corrections and the history below", Entry::Tick)
+                .hint("Both are part of what is signed, up to the newest entry that is shown."),
+        )
         .signature(Meaning::Release.words()))
 }
 
@@ -192,13 +223,18 @@ fn reject_page(visit: &Visit) -> Outcome {
 fn release(visit: &Visit) -> Outcome {
     let id = visit.id("id")?;
     let (db, secrets) = (visit.db(), &visit.app.secrets);
+    let newest_act = visit.read(|reader| store::lot_review::newest_act(reader, id))?;
     form::submit(
         visit,
-        release_form(visit, id)?,
-        |typed| Some((typed.raw("user_name"), typed.visit.form.get("password")?.to_string())),
-        |actor, (user_name, password)| {
+        release_form(visit, id, newest_act)?,
+        |typed| {
+            let up_to_act = typed.raw("up_to_act").parse().unwrap_or_default();
+            let looked = Looked { up_to_act, is_reviewed: typed.tick("is_reviewed") };
+            Some((looked, typed.raw("user_name"), typed.visit.form.get("password")?.to_string()))
+        },
+        |actor, (looked, user_name, password)| {
             let signed = acts::signature::authenticate::<Release>(db, secrets, actor, &user_name, &password)?;
-            acts::lot_decision::release(db, actor, id, &signed)
+            acts::lot_decision::release(db, actor, id, looked, &signed)
         },
         |()| format!("/lots/{id}/decision"),
         |status, form| decision_page(status, visit, Some(form)),

@@ -79,6 +79,7 @@ pub fn all() -> Vec<Route> {
         super::deviation::ROUTES,
         super::packaging::ROUTES,
         super::retain::ROUTES,
+        super::completeness::ROUTES,
         super::label::ROUTES,
         super::qualification::ROUTES,
         super::stop::ROUTES,

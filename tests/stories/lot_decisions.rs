@@ -4,7 +4,7 @@ use chrono::NaiveDate;
 use supernate::domain::sample::Purpose;
 
 use crate::support::samples::Bench;
-use crate::support::{Lab, PASSWORD};
+use crate::support::{Lab, PASSWORD, world};
 
 /// A bench with an assigned shelf life and a lot made the day after, on the third day.
 fn bench_and_lot(lab: &Lab) -> (Bench<'_>, i64) {
@@ -12,8 +12,12 @@ fn bench_and_lot(lab: &Lab) -> (Bench<'_>, i64) {
     bench.assigns_shelf_life();
     lab.later_days(2);
     let lot = bench.lot_made_on("TW-104-0640", NaiveDate::from_ymd_opt(2026, 12, 2).unwrap());
+    world::record_elsewhere(lab, lot);
     (bench, lot)
 }
+
+/// The tick that corrections and history were looked through.
+const LOOKED: [(&str, &str); 1] = [("is_reviewed", "yes")];
 
 fn reviewed(bench: &Bench<'_>, lot: i64) -> i64 {
     let sample = bench.ready(lot, Purpose::Release);
@@ -33,11 +37,11 @@ fn a_lot_is_released_on_reviewed_results_with_the_expiry_of_the_assigned_shelf_l
     qa.sees(&page, "Release is not possible now. No sample of TW-104-0640 was received for release");
     reviewed(&bench, lot);
     let seen =
-        qa.sees(&page, "30 Nov 2028 (24 months after it was made; month: never later than the exact date)");
+        qa.sees(&page, "30 Nov 2028 (24 months from the release, which comes 1 day after it was made, within 30 days; month: never");
     for words in ["Assay", "99.9", "conforms", "are decisions of the authorised person"] {
         assert!(seen.text().contains(words), "{words}: {}", seen.text());
     }
-    let released = qa.signs(&page, &format!("/lots/{lot}/release"), &[]);
+    let released = qa.signs(&page, &format!("/lots/{lot}/release"), &LOOKED);
     assert!(released.text().contains("TW-104-0640 is released."), "{}", released.text());
     assert!(released.text().contains("Released by me as the authorised person"), "{}", released.text());
     assert!(!released.text().contains("does not match"), "{}", released.text());
@@ -52,7 +56,7 @@ fn a_released_lot_is_distributed_from_a_day_on() {
     let (bench, lot) = bench_and_lot(&lab);
     reviewed(&bench, lot);
     let qa = lab.reviewer();
-    qa.signs(&format!("/lots/{lot}/decision"), &format!("/lots/{lot}/release"), &[]);
+    qa.signs(&format!("/lots/{lot}/decision"), &format!("/lots/{lot}/release"), &LOOKED);
     let (page, action) = (format!("/lots/{lot}"), format!("/lots/{lot}/distribution"));
     let none = qa.submits(&page, &action, &[("first_on", "yesterday"), ("markets", "")]);
     assert_eq!(none.status, 422, "{}", none.text());
@@ -118,6 +122,7 @@ fn without_an_assigned_shelf_life_there_is_no_expiry_and_no_release() {
     let lab = Lab::new();
     let bench = Bench::new(&lab);
     let lot = bench.lot("TW-104-0640");
+    world::record_elsewhere(&lab, lot);
     reviewed(&bench, lot);
     lab.reviewer()
         .sees(&format!("/lots/{lot}/decision"), "No shelf life is assigned for a lot of this presentation");

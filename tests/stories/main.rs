@@ -11,6 +11,7 @@ mod attachments;
 mod backups;
 mod benches;
 mod checks;
+mod completeness;
 mod conflicts;
 mod daily;
 mod definitions;

@@ -72,6 +72,7 @@ fn nobody_signs_or_decides_on_a_lot_they_tested() {
     bench.assigns_shelf_life();
     lab.later_days(2);
     let lot = bench.lot_made_on("TW-104-0640", "2026-12-02".parse().unwrap());
+    crate::support::world::record_elsewhere(&lab, lot);
     let sample = bench.ready(lot, Purpose::Release);
     let (qa, page) = (lab.reviewer(), format!("/review/{sample}"));
     qa.does(&page, &format!("{page}/agree"), &[]);
@@ -88,7 +89,7 @@ fn nobody_signs_or_decides_on_a_lot_they_tested() {
     is_noted(&lab, "DecideLot", "You read or checked something of TW-104-0640");
     qa.sees(&decision, "TW-104-0640 is not decided on.");
     qa.sees(&decision, "decided on a lot — refused");
-    qa.signs(&decision, &format!("/lots/{lot}/release"), &[]);
+    qa.signs(&decision, &format!("/lots/{lot}/release"), &[("is_reviewed", "yes")]);
 }
 
 #[test]

@@ -134,7 +134,41 @@ fn where_something_is_open(lab: &Lab) -> Vec<Open> {
     let held = crate::imports::upload(&lab.manager(), "zno.csv", &crate::imports::zno()).location.unwrap();
     let held = held.split('?').next().unwrap().to_string();
     open.push(("/imports/held/{digest}", held, Vec::new()));
+    open.extend(what_a_lot_is_made_from(lab));
     open
+}
+
+/// A delivery, a vessel, a deviation, a counted label and a retain, each open.
+fn what_a_lot_is_made_from(lab: &Lab) -> Vec<Open> {
+    let material = world::material(lab, "M-77", "kaolin", "suspending agent");
+    let delivery = world::material_lot(lab, material, "ML-0077", "25", "2028-12-01");
+    let vessel = world::clean_equipment(lab, "V-77", "mixing vessel");
+    let what = [("title", "Seal broken"), ("described", "One drum came with a broken seal today.")];
+    let page = format!("/deviations/new?material_lot={delivery}");
+    let deviation = lab.operator().does(&page, "/deviations/new", &what).location.unwrap();
+    let lot = lab.app.db.read(|reader| supernate::store::study::get(reader, 1)).unwrap().lot;
+    let page = format!("/lots/{lot}/packaging");
+    let item = lab.operator().does(&page, &page, &[("kind", "label"), ("name", "label 3")]).location.unwrap();
+    let page = format!("/lots/{lot}/retains/new");
+    let kept = [
+        ("containers", "4"),
+        ("quantity", "800"),
+        ("unit", "mL"),
+        ("test_quantity", "400"),
+        ("location", "retain room"),
+    ];
+    let retain = lab.operator().does(&page, &page, &kept).location.unwrap();
+    let at = |route: &'static str, path: String| (route, path, Vec::new());
+    vec![
+        at("/material-lots/{id}/status", format!("/material-lots/{delivery}/status")),
+        at("/material-lots/{id}/assay", format!("/material-lots/{delivery}/assay")),
+        at("/material-lots/{id}/stock", format!("/material-lots/{delivery}/stock")),
+        at("/equipment/{id}/{event}", format!("/equipment/{vessel}/cleaned")),
+        at("/deviations/{id}/entries", format!("{deviation}/entries")),
+        at("/packaging/{id}/counts", format!("{item}/counts")),
+        at("/packaging/{id}/check", format!("{item}/check")),
+        at("/retains/{id}/events", format!("{retain}/events")),
+    ]
 }
 
 /// sec_S53: a field that the form does not have is refused, whoever sends it, and nothing is written.

@@ -51,7 +51,7 @@ fn wildcards_are_letters_like_others_and_nothing_found_says_what_was_searched() 
     assert!(found(&lab, "50 %").text().contains("M-014"));
     let nothing = found(&lab, "9%9").text();
     assert!(nothing.contains("Nothing found for “9%9”."), "{nothing}");
-    assert!(nothing.contains("Searched: the numbers of lots, studies and samples"));
+    assert!(nothing.contains("Searched: the numbers of lots, material lots, studies and samples"));
     for empty in ["", "  ", "-", "_", "\\"] {
         assert_eq!(found(&lab, empty).status, 200, "{empty:?}");
         assert!(!found(&lab, empty).text().contains("M-014"), "{empty:?}");

@@ -40,12 +40,13 @@ fn a_changed_sample_lot_decision_or_version_breaks_its_signature_on_its_page() {
     bench.assigns_shelf_life();
     lab.later_days(2);
     let lot = bench.lot_made_on("TW-104-0640", "2026-12-02".parse().unwrap());
+    crate::support::world::record_elsewhere(&lab, lot);
     let other = bench.lot_made_on("TW-104-0641", "2026-12-02".parse().unwrap());
     let sample = bench.ready(lot, Purpose::Release);
     let (qa, page) = (lab.reviewer(), format!("/review/{sample}"));
     qa.does(&page, &format!("{page}/agree"), &[]);
     qa.signs("/review/sign", "/review/sign", &[]);
-    qa.signs(&format!("/lots/{lot}/decision"), &format!("/lots/{lot}/release"), &[]);
+    qa.signs(&format!("/lots/{lot}/decision"), &format!("/lots/{lot}/release"), &[("is_reviewed", "yes")]);
     let reject = format!("/lots/{other}/reject");
     qa.signs(&reject, &reject, &[("reason", "the bulk tank was left open over night")]);
     each_is_told_and_named(

@@ -546,3 +546,13 @@ pub fn clean_equipment(lab: &Lab, code: &str, class: &str) -> i64 {
     }
     id
 }
+
+/// States that the executed record of a lot is kept on paper.
+pub fn record_elsewhere(lab: &Lab, lot: i64) {
+    let new = supernate::domain::completeness::statement::NewElsewhere {
+        reference: "BR-2026-011".to_string(),
+        place: "paper archive, room 2".to_string(),
+        why: "carried out on paper before this program".to_string(),
+    };
+    acts::completeness::refer(&lab.app.db, &lab.actor("maren.oddy"), lot, &new).unwrap();
+}

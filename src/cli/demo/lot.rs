@@ -4,8 +4,10 @@ use super::bench::Twist;
 use super::player::{Player, Scene, working_day};
 use crate::acts;
 use crate::acts::signature::{Rejection, Release};
+use crate::domain::completeness::statement::NewElsewhere;
 use crate::domain::failure::Failure;
 use crate::domain::lot::{NewDistribution, NewLot, Scale};
+use crate::domain::lot_decision::Looked;
 use crate::domain::moment::plus_days;
 use crate::domain::protocol::ProtocolContent;
 use crate::domain::sample::{NewSample, Purpose};
@@ -87,7 +89,10 @@ impl Player<'_> {
             return acts::lot_decision::reject(self.db, &actor, lot, &signed.stating(why));
         }
         let signed = self.sign::<Release>(&actor)?;
-        acts::lot_decision::release(self.db, &actor, lot, &signed)?;
+        self.refer_to_record(lot, &row.number)?;
+        let newest_act = self.db.read(|reader| store::lot_review::newest_act(reader, lot))?;
+        let looked = Looked { up_to_act: newest_act, is_reviewed: true };
+        acts::lot_decision::release(self.db, &actor, lot, looked, &signed)?;
         let today = self.now.date();
         let actor = self.person("ada.whitlock")?;
         let new = NewDistribution { first_on: today, markets: "UK".to_string() };
@@ -96,6 +101,19 @@ impl Player<'_> {
             self.plan(working_day(plus_days(today, 5)), 9, 0, Scene::StartStudy(at));
         }
         Ok(())
+    }
+
+    /// A lot that was not carried out here says where its executed record is kept.
+    fn refer_to_record(&mut self, lot: i64, number: &str) -> Result<(), Failure> {
+        if self.db.read(|reader| store::completeness::evidence(reader, lot))?.record.is_some() {
+            return Ok(());
+        }
+        let new = NewElsewhere {
+            reference: format!("BR-{number}"),
+            place: "paper archive, room 2".to_string(),
+            why: "carried out on paper before this program was in use".to_string(),
+        };
+        acts::completeness::refer(self.db, &self.person("maren.oddy")?, lot, &new)
     }
 
     pub fn start_study(&mut self, at: usize) -> Result<(), Failure> {
