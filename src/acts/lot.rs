@@ -16,26 +16,32 @@ use crate::store::door::{Change, Db};
 /// Refuses in the order of [`lot::may_make`].
 pub fn make(db: &Db, actor: &Actor, new: &NewLot) -> Result<i64, Failure> {
     db.change(actor, Act::MakeLot, &Reason::none(), |change| {
-        let version = store::version::get(change, Versioned::Formulation, new.formulation_version)?;
-        let facts = LotFacts {
-            is_number_taken: store::lot::by_number(change, &new.number)?.is_some(),
-            version_state: version.state,
-            version_product: store::lot::product_of_formulation(change, version.parent)?,
-            presentation_product: store::lot::product_of_presentation(change, new.presentation)?,
-            today: actor.at.date(),
-            bulk: bulk_facts(change, new.bulk_lot)?,
-        };
-        lot::may_make(new, &facts)?;
-        let id = store::lot::insert(change, new, &sha256_hex(version.content.as_bytes()))?;
-        change.concerns(Kind::Lot, id)?;
-        change.concerns(Kind::Presentation, new.presentation)?;
-        change.concerns(Kind::FormulationVersion, new.formulation_version)?;
-        if let Some(bulk) = new.bulk_lot {
-            change.concerns(Kind::Lot, bulk)?;
-        }
+        let id = make_inside(change, new)?;
         change.tell(format!("{}, made on {}", new.number, crate::domain::moment::date_shown(new.made_on)));
         Ok(id)
     })
+}
+
+/// [`make`] as part of a larger act, such as starting the record of a lot.
+pub(in crate::acts) fn make_inside(change: &mut Change<'_>, new: &NewLot) -> Result<i64, Failure> {
+    let version = store::version::get(change, Versioned::Formulation, new.formulation_version)?;
+    let facts = LotFacts {
+        is_number_taken: store::lot::by_number(change, &new.number)?.is_some(),
+        version_state: version.state,
+        version_product: store::lot::product_of_formulation(change, version.parent)?,
+        presentation_product: store::lot::product_of_presentation(change, new.presentation)?,
+        today: change.actor().at.date(),
+        bulk: bulk_facts(change, new.bulk_lot)?,
+    };
+    lot::may_make(new, &facts)?;
+    let id = store::lot::insert(change, new, &sha256_hex(version.content.as_bytes()))?;
+    change.concerns(Kind::Lot, id)?;
+    change.concerns(Kind::Presentation, new.presentation)?;
+    change.concerns(Kind::FormulationVersion, new.formulation_version)?;
+    if let Some(bulk) = new.bulk_lot {
+        change.concerns(Kind::Lot, bulk)?;
+    }
+    Ok(id)
 }
 
 fn bulk_facts(change: &Change<'_>, bulk: Option<i64>) -> Result<Option<BulkFacts>, Failure> {

@@ -4,6 +4,7 @@ pub mod account;
 pub mod amendment;
 pub mod attachment;
 pub mod backup;
+pub mod batch;
 pub mod chamber;
 pub mod check;
 pub mod completeness;

@@ -99,6 +99,16 @@ acts! {
     StateRecordElsewhere, "stated where a lot's record is kept", Roles(&[LabManager, QaReviewer]);
 
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
+    StartBatchRecord, "started a batch record", Roles(&[ProductionOperator, LabManager]);
+    RecordStep, "recorded a step", Roles(&[ProductionOperator, LabManager]);
+    CorrectStep, "corrected an entry of a step", Roles(&[ProductionOperator, LabManager]);
+    CheckStep, "checked a step", Roles(&[ProductionOperator, LabManager]);
+    SkipStep, "skipped a step", Roles(&[ProductionOperator, LabManager]);
+    RepeatStep, "repeated a step", Roles(&[ProductionOperator, LabManager]);
+    RecordYield, "recorded a yield", Roles(&[ProductionOperator, LabManager]);
+    CheckYield, "checked a yield", Roles(&[ProductionOperator, LabManager]);
+    CloseBatchRecord, "closed a batch record", Roles(&[ProductionOperator, LabManager]);
+    ReopenBatchRecord, "opened a batch record again", Roles(&[QaReviewer]);
     RecordDistribution, "recorded the distribution of a lot", Roles(&[QaReviewer]);
     DecideLot, "decided on a lot", Roles(&[QaReviewer]);
     ReceiveSample, "received a sample", Roles(&[Analyst, LabManager, ProductionOperator]);

@@ -150,6 +150,8 @@ fn may_be_filled_from(new: &NewLot, bulk: &BulkFacts) -> Result<(), LotRefusal> 
 /// Where a lot stands; read from rows, never a column.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum LotState {
+    /// Its record is open.
+    InMaking,
     Made,
     OnStudy,
     Released,
@@ -160,6 +162,7 @@ pub enum LotState {
 impl LotState {
     pub fn words(self) -> &'static str {
         match self {
+            LotState::InMaking => "in the making",
             LotState::Made => "made, not decided on",
             LotState::OnStudy => "on study, not decided on",
             LotState::Released => "released",

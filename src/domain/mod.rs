@@ -6,6 +6,7 @@ pub mod actor;
 pub mod age;
 pub mod amendment;
 pub mod attachment;
+pub mod batch;
 pub mod chamber;
 pub mod check;
 pub mod completeness;

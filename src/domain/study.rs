@@ -115,7 +115,8 @@ fn may_be_studied(facts: &StudyFacts) -> Result<(), StudyRefusal> {
     match facts.lot_state {
         LotState::Imported => return Err(StudyRefusal::LotImported),
         LotState::Rejected => return Err(StudyRefusal::LotRejected),
-        LotState::Made | LotState::OnStudy | LotState::Released => {}
+        // A bulk hold is a study of a lot that is still being made.
+        LotState::InMaking | LotState::Made | LotState::OnStudy | LotState::Released => {}
     }
     if facts.protocol_state != VersionState::Approved {
         return Err(StudyRefusal::ProtocolNotApproved(facts.protocol_state.words()));

@@ -21,6 +21,7 @@ pub enum Kind {
     Equipment,
     Deviation,
     Lot,
+    BatchRecord,
     Condition,
     Chamber,
     Protocol,
@@ -35,7 +36,7 @@ pub enum Kind {
 }
 
 impl Kind {
-    pub const ALL: [Kind; 29] = [
+    pub const ALL: [Kind; 30] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -54,6 +55,7 @@ impl Kind {
         Kind::Equipment,
         Kind::Deviation,
         Kind::Lot,
+        Kind::BatchRecord,
         Kind::Condition,
         Kind::Chamber,
         Kind::Protocol,
@@ -88,6 +90,7 @@ impl Kind {
             Kind::Equipment => "equipment",
             Kind::Deviation => "deviation",
             Kind::Lot => "lot",
+            Kind::BatchRecord => "batch_record",
             Kind::Condition => "condition",
             Kind::Chamber => "chamber",
             Kind::Protocol => "protocol",

@@ -40,12 +40,17 @@ pub struct Lot {
     pub decision: Option<String>,
     pub expires_on: Option<NaiveDate>,
     pub has_study: bool,
+    /// Its record is open: it is still being made.
+    pub is_in_making: bool,
     pub act: i64,
 }
 
 impl Lot {
     pub fn state(&self) -> LotState {
-        LotState::of(self.decision.as_deref(), self.has_study, self.imported.is_some())
+        match LotState::of(self.decision.as_deref(), self.has_study, self.imported.is_some()) {
+            LotState::Made | LotState::OnStudy if self.is_in_making => LotState::InMaking,
+            state => state,
+        }
     }
 }
 
@@ -55,7 +60,8 @@ const SELECT: &str = "select l.id, l.number, p.id, p.code, p.strength || ', ' ||
         (select number from lot where id = l.bulk_lot), l.imported,
         (select decision from lot_decision where lot = l.id order by id desc limit 1),
         (select expires_on from lot_decision where lot = l.id order by id desc limit 1),
-        exists (select 1 from study where lot = l.id), l.act
+        exists (select 1 from study where lot = l.id),
+        exists (select 1 from batch_record r join open_batch o on o.record = r.id where r.lot = l.id), l.act
     from lot l
     join presentation p on p.id = l.presentation
     join product d on d.id = p.product
@@ -93,7 +99,8 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<Lot> {
         decision: row.get(25)?,
         expires_on: day(row.get(26)?),
         has_study: row.get(27)?,
-        act: row.get(28)?,
+        is_in_making: row.get(28)?,
+        act: row.get(29)?,
     })
 }
 

@@ -3,6 +3,7 @@
 pub mod account;
 pub mod amendment;
 pub mod attachment;
+pub mod batch;
 pub mod bench;
 pub mod bulk;
 pub mod chamber;

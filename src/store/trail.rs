@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 17] = [
+pub const TECHNICAL_TABLES: [&str; 18] = [
     "trail_act",
     "trail_change",
     "trail_seal",
@@ -29,6 +29,7 @@ pub const TECHNICAL_TABLES: [&str; 17] = [
     "arm_stock",
     "open_sample",
     "open_check",
+    "open_batch",
 ];
 
 /// Trailed tables whose rows may be updated: accounts and codes, and versions until they are signed.
@@ -288,7 +289,9 @@ pub fn of_subject_before(
 pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
     let table = subject.kind.code();
     let column = match subject.kind {
-        Kind::Lot | Kind::Study | Kind::Sample | Kind::MaterialLot | Kind::Deviation => "number",
+        Kind::Lot | Kind::BatchRecord | Kind::Study | Kind::Sample | Kind::MaterialLot | Kind::Deviation => {
+            "number"
+        }
         Kind::Customer
         | Kind::Product
         | Kind::Presentation

@@ -32,10 +32,11 @@ pub const ROUTES: &[Route] = &[
 ];
 
 /// The records that take files, with the address of their pages.
-const OF: [(Kind, &str); 5] = [
+const OF: [(Kind, &str); 6] = [
     (Kind::Sample, "/samples"),
     (Kind::Investigation, "/investigations"),
     (Kind::Lot, "/lots"),
+    (Kind::BatchRecord, "/batches"),
     (Kind::Deviation, "/deviations"),
     (Kind::Pull, "/pulls"),
 ];
@@ -88,6 +89,7 @@ fn subject(visit: &Visit) -> Result<(Subject, &'static str), Failure> {
         Kind::Sample => store::bench::sample(reader, id).map(|_| ()),
         Kind::Investigation => store::investigation::get(reader, id).map(|_| ()),
         Kind::Lot => store::lot::get(reader, id).map(|_| ()),
+        Kind::BatchRecord => store::batch::get(reader, id).map(|_| ()),
         Kind::Deviation => store::deviation::get(reader, id).map(|_| ()),
         _ => store::attachment::has_pull(reader, id),
     });

@@ -16,7 +16,7 @@ fn home(visit: &Visit) -> Outcome {
         (Role::Analyst, "/bench"),
         (Role::Formulator, "/formulations"),
         (Role::Auditor, "/lots"),
-        (Role::ProductionOperator, "/lots"),
+        (Role::ProductionOperator, "/batches"),
     ];
     see(start.iter().find(|(role, _)| actor.holds(*role)).map_or("/history", |(_, path)| *path))
 }

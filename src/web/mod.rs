@@ -4,6 +4,7 @@ pub mod account;
 pub mod amendment;
 pub mod app;
 pub mod attachment;
+pub mod batch;
 pub mod bench;
 pub mod chamber;
 pub mod check;

@@ -46,10 +46,11 @@ pub struct Shell {
 }
 
 /// The sections of the main navigation, in the order of the work.
-const SECTIONS: [(&str, &str); 9] = [
+const SECTIONS: [(&str, &str); 10] = [
     ("/week", "Week"),
     ("/bench", "Bench"),
     ("/review", "Review"),
+    ("/batches", "Batches"),
     ("/lots", "Lots"),
     ("/studies", "Studies"),
     ("/evaluations", "Evaluation"),

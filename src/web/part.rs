@@ -26,6 +26,11 @@ impl StatusMark {
         StatusMark { slug: slug(status), words: Cow::Borrowed(status.words()) }
     }
 
+    /// What is done and asks for nothing more, in the words of its work: "Done", "Skipped".
+    pub fn settled(words: &str) -> StatusMark {
+        StatusMark { slug: slug(Status::Signed), words: words.to_string().into() }
+    }
+
     /// "Out of specification: 1 of 7 tests".
     pub fn counting(status: Status, count: usize, of: usize, things: &str) -> StatusMark {
         let words = format!("{}: {count} of {of} {things}", status.words());

@@ -84,6 +84,7 @@ pub fn all() -> Vec<Route> {
         super::qualification::ROUTES,
         super::stop::ROUTES,
         super::lot::ROUTES,
+        super::batch::ROUTES,
         super::lot_decision::ROUTES,
         super::condition::ROUTES,
         super::chamber::ROUTES,

@@ -6,6 +6,8 @@ CREATE INDEX arm_trigger_by_arm on arm_trigger (study_arm);
 
 CREATE INDEX attachment_by_subject on attachment (kind, subject);
 
+CREATE INDEX batch_event_by_record on batch_event (record);
+
 CREATE INDEX completeness_answer_by_lot on completeness_answer (lot, item);
 
 CREATE INDEX container_event_by_container on container_event (container);
@@ -66,6 +68,8 @@ CREATE INDEX packaging_entry_by_item on packaging_entry (item);
 
 CREATE INDEX packaging_item_by_lot on packaging_item (lot);
 
+CREATE INDEX phase_yield_by_record on phase_yield (record, phase);
+
 CREATE INDEX photo_mark_by_attachment on photo_mark (attachment);
 
 CREATE INDEX presentation_by_product on presentation (product);
@@ -107,6 +111,12 @@ CREATE INDEX signature_by_subject on signature (kind, subject, meaning);
 CREATE INDEX specification_by_presentation on specification (presentation);
 
 CREATE INDEX stage_loss_by_sample on stage_loss (sample);
+
+CREATE INDEX step_entry_by_deviation on step_entry (deviation) where deviation is not null;
+
+CREATE INDEX step_entry_by_material_lot on step_entry (material_lot) where material_lot is not null;
+
+CREATE INDEX step_entry_by_record on step_entry (record, step, run);
 
 CREATE INDEX stock_entry_by_lot on stock_entry (lot) where lot is not null;
 
@@ -187,6 +197,26 @@ CREATE TABLE attachment (
     size_bytes integer not null check (size_bytes > 0),
     sha256 text not null,
     about text,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE batch_event (
+    id integer primary key,
+    record integer not null references batch_record (id),
+    kind text not null check (kind in ('closed', 'reopened')),
+    why text,
+    signature integer references signature (id),
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE batch_record (
+    id integer primary key,
+    uuid blob not null unique,
+    number text not null collate nocase unique,
+    lot integer not null unique references lot (id),
+    content text not null,
+    digest text not null,
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -599,6 +629,10 @@ CREATE TABLE method_version (
     unique (method, number)
 ) strict;
 
+CREATE TABLE open_batch (
+    record integer primary key references batch_record (id)
+) strict;
+
 CREATE TABLE open_check (
     sample_test integer primary key references sample_test (id)
 ) strict;
@@ -672,6 +706,32 @@ CREATE TABLE packaging_item (
     material_lot integer references material_lot (id),
     least_percent text not null,            -- accounted for, of what was issued
     most_percent text not null,
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE phase_yield (
+    id integer primary key,
+    record integer not null references batch_record (id),
+    phase integer not null check (phase > 0),
+    actual text not null,
+    samples text not null,
+    rejects text not null,
+    waste text not null,
+    unit text not null,
+    theoretical text not null,
+    percent text not null,                  -- 100 actual ÷ theoretical, two decimals
+    accountable_percent text not null,      -- with samples, rejects and known waste
+    verdict text not null check (verdict in ('within limits', 'outside limits')),
+    limits text not null,
+    deviation integer references deviation (id),
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE phase_yield_check (
+    id integer primary key,
+    phase_yield integer not null unique references phase_yield (id),
+    account integer not null references account (id),
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
@@ -1004,6 +1064,33 @@ CREATE TABLE stage_loss (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE step_entry (
+    id integer primary key,
+    record integer not null references batch_record (id),
+    step integer not null check (step > 0),
+    run integer not null check (run > 0),
+    kind text not null check (kind in ('started', 'weighing', 'second weighing', 'value', 'stopped', 'resumed', 'note',
+        'ended', 'checked', 'skipped', 'repeated', 'answered')),
+    name text not null default '',          -- of a value: as the step names it
+    point text not null default '',         -- when filling: start, middle, end, after stop n
+    typed text not null default '',         -- as typed
+    value text,                             -- exact decimal
+    unit text not null default '',
+    verdict text not null check (verdict in ('within limits', 'outside limits', 'no limit')),
+    limits text not null default '',        -- what it was judged by, in words
+    detail text not null default '{}',      -- JSON: gross, tare and net, the balance's check, the corrected target
+    material_lot integer references material_lot (id),
+    stock_entry integer references stock_entry (id),
+    equipment integer references equipment (id),
+    instrument integer references instrument (id),
+    deviation integer references deviation (id),
+    answers integer references step_entry (id),     -- the entry this one speaks of
+    happened_at text,                       -- when it was done, if not at the act itself (late entry)
+    supersedes integer unique references step_entry (id),
+    account integer not null references account (id),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
 CREATE TABLE stock_entry (
     id integer primary key,
     material_lot integer not null references material_lot (id),
@@ -1271,6 +1358,24 @@ CREATE TRIGGER guard_specification_version before update on specification_versio
 when exists (select 1 from signature where kind = 'specification_version' and subject = old.id)
 begin select raise(abort, 'a signed version is frozen'); end;
 
+CREATE TRIGGER guard_step_checker_is_not_doer before insert on step_entry
+when new.kind in ('checked', 'second weighing') and exists (
+    select 1 from step_entry
+    where record = new.record and step = new.step and run = new.run and account = new.account
+        and kind in ('started', 'weighing', 'value', 'stopped', 'resumed', 'ended'))
+begin select raise(abort, 'the checker is a doer of the step'); end;
+
+CREATE TRIGGER guard_step_doer_is_not_checker before insert on step_entry
+when new.kind in ('started', 'weighing', 'value', 'stopped', 'resumed', 'ended') and exists (
+    select 1 from step_entry
+    where record = new.record and step = new.step and run = new.run and account = new.account
+        and kind in ('checked', 'second weighing'))
+begin select raise(abort, 'the doer is a checker of the step'); end;
+
+CREATE TRIGGER guard_step_of_closed_record before insert on step_entry
+when (select kind from batch_event where record = new.record order by id desc limit 1) = 'closed'
+begin select raise(abort, 'the record is closed'); end;
+
 CREATE TRIGGER guard_stock_direction before insert on stock_entry
 when (new.kind in ('received', 'returned') and cast(new.quantity as real) <= 0)
     or (new.kind in ('dispensed', 'destroyed') and cast(new.quantity as real) >= 0)
@@ -1313,6 +1418,36 @@ CREATE TRIGGER guard_transcriber_does_not_verify before insert on blank_sheet_ev
 when new.kind = 'verified' and exists (select 1 from blank_sheet_event
     where blank_sheet = new.blank_sheet and kind = 'transcribed' and account = new.account)
 begin select raise(abort, 'who transcribed does not verify'); end;
+
+CREATE TRIGGER guard_yield_checker_is_another before insert on phase_yield_check
+when exists (select 1 from phase_yield where id = new.phase_yield and account = new.account)
+begin select raise(abort, 'who worked out the yield does not check it'); end;
+
+CREATE TRIGGER guard_yield_of_closed_record before insert on phase_yield
+when (select kind from batch_event where record = new.record order by id desc limit 1) = 'closed'
+begin select raise(abort, 'the record is closed'); end;
+
+CREATE TRIGGER open_batch_closed after insert on batch_event
+when new.kind = 'closed'
+begin
+    delete from open_batch where record = new.record;
+end;
+
+CREATE TRIGGER open_batch_decided after insert on lot_decision
+begin
+    delete from open_batch where record = (select id from batch_record where lot = new.lot);
+end;
+
+CREATE TRIGGER open_batch_reopened after insert on batch_event
+when new.kind = 'reopened'
+begin
+    insert or ignore into open_batch (record) values (new.record);
+end;
+
+CREATE TRIGGER open_batch_started after insert on batch_record
+begin
+    insert or ignore into open_batch (record) values (new.id);
+end;
 
 CREATE TRIGGER open_check_answered after insert on result_check
 begin

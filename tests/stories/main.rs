@@ -9,6 +9,7 @@ mod amendments;
 mod appearances;
 mod attachments;
 mod backups;
+mod batches;
 mod benches;
 mod checks;
 mod completeness;

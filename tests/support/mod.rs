@@ -4,6 +4,7 @@
 #![allow(dead_code)]
 
 pub mod aged;
+pub mod batches;
 pub mod samples;
 pub mod trends;
 pub mod world;

@@ -6,8 +6,8 @@ use crate::domain::subject::Kind;
 use crate::domain::version::Versioned;
 use crate::store::signature::Signature;
 use crate::store::{
-    Answer, Reader, conclusion, condition, deviation, investigation, lot_decision, material_lot, review,
-    shelf_life, signature, stop, trend, version,
+    Answer, Reader, batch, conclusion, condition, deviation, investigation, lot_decision, material_lot,
+    review, shelf_life, signature, stop, trend, version,
 };
 
 pub(super) fn verify(reader: &Reader<'_>, check: &mut Check<'_>) -> Answer<()> {
@@ -42,6 +42,7 @@ fn canonical(reader: &Reader<'_>, signed: &Signature) -> Answer<Option<String>> 
         Kind::SpecificationVersion => of_version(Versioned::Specification),
         Kind::ProtocolVersion => of_version(Versioned::Protocol),
         Kind::Sample => review::canonical(reader, signed.subject.id, Some(signed.act)).map(Some),
+        Kind::BatchRecord => batch::canonical(reader, signed.subject.id, Some(signed.act)).map(Some),
         Kind::Lot => lot_decision::canonical_of_signature(reader, signed.id),
         Kind::ShelfLife => Ok(Some(shelf_life::get(reader, signed.subject.id)?.assigned.canonical())),
         Kind::Condition => condition::canonical_of(reader, signed.subject.id),
