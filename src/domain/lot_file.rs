@@ -17,6 +17,8 @@ pub struct LotFile {
     pub tables: Vec<Table>,
     /// Points for the charts: arm, and what stands on it.
     pub series: Vec<(ArmWords, Vec<SeriesPoint>)>,
+    /// Sample and grade of the liquid above its sediment, for the drawn cylinders.
+    pub clarities: Vec<(i64, u8)>,
 }
 
 /// The records of one kind. Column names are those of the files; `id` and `act` come first where they exist.

@@ -4,6 +4,8 @@
 use askama::Template;
 use rust_decimal::Decimal;
 
+use crate::domain::series::SeriesPoint;
+
 /// Picture heights: the floor, and the units that F 1.00 takes.
 const FLOOR: i64 = 164;
 const WHOLE: i64 = 140;
@@ -67,6 +69,34 @@ impl Cylinder {
             inversions: self.inversions.clone(),
             is_small: self.is_small,
         }
+    }
+}
+
+/// The product drawn at each age of one arm: sediment, clarity and inversions as they were reported. Ages at which
+/// nothing of it was read are left out.
+pub fn of_points(points: &[SeriesPoint], clarities: &[(i64, u8)], is_small: bool) -> Vec<Cylinder> {
+    let settled = |point: &&SeriesPoint| point.test == "sedimentation" && !point.is_missed;
+    let cylinder = |point: &SeriesPoint| {
+        let inversions = points.iter().find(|other| {
+            other.sample == point.sample && other.test == "redispersibility" && other.value.is_some()
+        });
+        Cylinder {
+            age: point.age.clone(),
+            ratio: point.value,
+            clarity: clarities.iter().find(|(id, _)| *id == point.sample).map(|(_, grade)| *grade),
+            inversions: inversions.map(inversion_words).unwrap_or_default(),
+            is_small,
+        }
+    };
+    let seen = |cylinder: &Cylinder| cylinder.ratio.is_some() || !cylinder.inversions.is_empty();
+    points.iter().filter(settled).map(cylinder).filter(seen).collect()
+}
+
+fn inversion_words(point: &SeriesPoint) -> String {
+    if point.shown.contains("inversion") {
+        point.shown.clone()
+    } else {
+        format!("{} inversions", point.shown)
     }
 }
 

@@ -7,5 +7,6 @@ pub mod cylinder;
 pub mod evaluation;
 pub mod export;
 pub mod lot_file;
+pub mod settling;
 pub mod table;
 pub mod zip;

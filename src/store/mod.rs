@@ -46,6 +46,7 @@ pub mod sample;
 pub mod series;
 pub mod session;
 pub mod setting;
+pub mod settling;
 pub mod shelf_life;
 pub mod signature;
 pub mod site;

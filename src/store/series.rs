@@ -172,20 +172,32 @@ fn age(row: &Row<'_>, at: usize) -> rusqlite::Result<Decimal> {
 /// The clarity of the liquid at the last reading of each sample's sedimentation test: sample and grade 0 to 3.
 pub fn clarities(reader: &Reader<'_>, key: &SeriesKey) -> Answer<Vec<(i64, u8)>> {
     let rows = reader.all(
-        "select s.id, r.typed, max(cast(substr(r.field, 9) as integer))
-         from study st
-         join study_arm a on a.study = st.id
-         join pull p on p.study_arm = a.id
-         join sample s on s.pull = p.id
-         join sample_test t on t.sample = s.id
-         join reading r on r.sample_test = t.id
-         where st.lot = :lot and a.condition = :condition and a.orientation = :orientation
-         and r.field like 'clarity@%' and r.qualifier <> 'not read'
-         and not exists (select 1 from reading later where later.supersedes = r.id)
-         group by s.id",
+        &format!("{CLARITY} and a.condition = :condition and a.orientation = :orientation group by s.id"),
         named_params! { ":lot": key.lot, ":condition": key.condition, ":orientation": key.orientation },
         |row| Ok((row.get(0)?, row.get::<_, String>(1)?)),
     )?;
+    Ok(graded(rows))
+}
+
+/// The same for every sample on the lot's studies.
+pub fn clarities_of_lot(reader: &Reader<'_>, lot: i64) -> Answer<Vec<(i64, u8)>> {
+    let sql = format!("{CLARITY} group by s.id");
+    let row = |row: &Row<'_>| Ok((row.get(0)?, row.get::<_, String>(1)?));
+    Ok(graded(reader.all(&sql, named_params! { ":lot": lot }, row)?))
+}
+
+const CLARITY: &str = "
+    select s.id, r.typed, max(cast(substr(r.field, 9) as integer))
+    from study st
+    join study_arm a on a.study = st.id
+    join pull p on p.study_arm = a.id
+    join sample s on s.pull = p.id
+    join sample_test t on t.sample = s.id
+    join reading r on r.sample_test = t.id
+    where st.lot = :lot and r.field like 'clarity@%' and r.qualifier <> 'not read'
+    and not exists (select 1 from reading later where later.supersedes = r.id)";
+
+fn graded(rows: Vec<(i64, String)>) -> Vec<(i64, u8)> {
     let grade = |text: String| text.trim().parse::<u8>().ok().filter(|grade| *grade <= 3);
-    Ok(rows.into_iter().filter_map(|(sample, text)| Some((sample, grade(text)?))).collect())
+    rows.into_iter().filter_map(|(sample, text)| Some((sample, grade(text)?))).collect()
 }

@@ -20,6 +20,7 @@ use crate::domain::moment::date_shown;
 use crate::domain::role::Role;
 use crate::domain::subject::{Kind, Subject};
 use crate::domain::typed::NumberRule;
+use crate::report::cylinder::Strip;
 use crate::store;
 use crate::store::lot::Lot;
 
@@ -187,6 +188,10 @@ struct LotPage {
     /// Path, test and place, what the early warning says.
     warnings: Vec<(String, String, String)>,
     suggestions: Option<Suggestions>,
+    /// The cylinders of each arm over its ages.
+    strips: Vec<(String, Strip)>,
+    /// Signed conclusions on it: address and words.
+    conclusions: Vec<(String, String)>,
     distribution: Option<Form>,
     trail: Trail,
 }
@@ -221,7 +226,10 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
     if let Some(form) = &distribution {
         shell = shell.with_errors(form);
     }
+    let (strips, conclusions) = seen_of(visit, id)?;
     let page = LotPage {
+        strips,
+        conclusions,
         shell,
         made_on: made_on(&lot),
         size: match (&lot.size, &lot.size_unit) {
@@ -252,9 +260,28 @@ fn started(study: store::lot::StudyLine) -> (store::lot::StudyLine, String) {
     (study, started_on)
 }
 
+/// Cylinder strips by arm, and links to conclusions with their words.
+type SeenOf = (Vec<(String, Strip)>, Vec<(String, String)>);
+
+/// What was seen of the lot over its ages, and what was concluded from it.
+fn seen_of(visit: &Visit, id: i64) -> Result<SeenOf, Failure> {
+    let (arms, clarities, concluded) = visit.read(|reader| {
+        Ok((
+            super::settling::arms_of_lot(reader, id)?,
+            store::series::clarities_of_lot(reader, id)?,
+            store::conclusion::of_lot(reader, id)?,
+        ))
+    })?;
+    let words = |(id, months, condition): (i64, u32, String)| {
+        (format!("/conclusions/{id}"), format!("Conclusion {id}: {months} months proposed, {condition}"))
+    };
+    Ok((super::settling::strips(&arms, &clarities), concluded.into_iter().map(words).collect()))
+}
+
 /// What this person can do from here.
 fn links(visit: &Visit, id: i64, state: LotState) -> Vec<(String, &'static str)> {
-    let mut links = vec![(format!("/lots/{id}/file"), "Lot file")];
+    let mut links =
+        vec![(format!("/lots/{id}/file"), "Lot file"), (format!("/lots/{id}/settling"), "How it settles")];
     if state == LotState::Imported {
         return links;
     }

@@ -62,6 +62,7 @@ pub mod sedimentation;
 pub mod serve;
 pub mod session;
 pub mod setting;
+pub mod settling;
 pub mod shelf_life;
 pub mod show;
 pub mod specification;

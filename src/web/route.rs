@@ -86,6 +86,7 @@ pub fn all() -> Vec<Route> {
         super::lot::ROUTES,
         super::batch::ROUTES,
         super::lot_decision::ROUTES,
+        super::settling::ROUTES,
         super::condition::ROUTES,
         super::chamber::ROUTES,
         super::protocol::ROUTES,

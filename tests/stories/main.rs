@@ -44,6 +44,7 @@ mod retains;
 mod reviews;
 mod searches;
 mod sedimentations;
+mod settlings;
 mod signatures;
 mod specifications;
 mod studies;

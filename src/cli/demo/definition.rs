@@ -149,6 +149,7 @@ impl Player<'_> {
                 particle_size_d50_um: row.particle_um,
                 vehicle_density_g_per_ml: row.vehicle_density,
                 vehicle_low_shear_viscosity_mpa_s: row.vehicle_viscosity,
+                dissolved_percent: None,
             },
             master: None,
         };

@@ -79,6 +79,9 @@ pub struct PhysicalData {
     pub particle_size_d50_um: Option<Decimal>,
     pub vehicle_density_g_per_ml: Option<Decimal>,
     pub vehicle_low_shear_viscosity_mpa_s: Option<Decimal>,
+    /// Share of the active that is dissolved in the vehicle; versions from before do not state it.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub dissolved_percent: Option<Decimal>,
 }
 
 /// A formulation about to be added; its first version is written after it.
@@ -142,31 +145,34 @@ impl NamedReason for FormulationRefusal {
 }
 
 /// The physical data by their field and their label with its unit.
-pub const PHYSICAL: [(&str, &str); 4] = [
+pub const PHYSICAL: [(&str, &str); 5] = [
     ("solids_density", "Density of the solids, g/mL"),
     ("particle_size", "Particle size D50, µm"),
     ("vehicle_density", "Density of the vehicle, g/mL"),
     ("vehicle_viscosity", "Low-shear viscosity of the vehicle, mPa·s"),
+    ("dissolved", "Active dissolved in the vehicle, % of the label"),
 ];
 
 impl PhysicalData {
     /// The values in the order of [`PHYSICAL`].
-    pub fn values(&self) -> [Option<Decimal>; 4] {
+    pub fn values(&self) -> [Option<Decimal>; 5] {
         [
             self.solids_density_g_per_ml,
             self.particle_size_d50_um,
             self.vehicle_density_g_per_ml,
             self.vehicle_low_shear_viscosity_mpa_s,
+            self.dissolved_percent,
         ]
     }
 
     /// The reverse of [`PhysicalData::values`].
-    pub fn from_values(values: [Option<Decimal>; 4]) -> PhysicalData {
+    pub fn from_values(values: [Option<Decimal>; 5]) -> PhysicalData {
         PhysicalData {
             solids_density_g_per_ml: values[0],
             particle_size_d50_um: values[1],
             vehicle_density_g_per_ml: values[2],
             vehicle_low_shear_viscosity_mpa_s: values[3],
+            dissolved_percent: values[4],
         }
     }
 }

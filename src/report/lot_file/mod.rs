@@ -6,6 +6,7 @@ mod words;
 use askama::Template;
 
 use super::chart::Drawn;
+use super::cylinder::Strip;
 use crate::domain::lot_file::{Export, LotFile};
 
 /// A document of sections, embedded in a page or in an exported file.
@@ -27,6 +28,8 @@ pub struct Section {
     pub lead: String,
     pub facts: Vec<(String, String)>,
     pub charts: Vec<Drawn>,
+    /// The cylinders of each arm over its ages.
+    pub strips: Vec<(String, Strip)>,
     pub grids: Vec<Grid>,
 }
 

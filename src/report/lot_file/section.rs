@@ -4,7 +4,9 @@ use super::words::{flat, head, shown};
 use super::{Document, Entry, Grid, Line, Place, Section};
 use crate::domain::lot_file::{Cell, LotFile, Table};
 use crate::domain::moment::Moment;
+use crate::domain::series::{ArmWords, SeriesPoint};
 use crate::report::chart::from_series::of_arms;
+use crate::report::cylinder::{Strip, of_points};
 
 /// Columns that stand elsewhere in the line, or only in the data files.
 const NOT_SHOWN: [&str; 19] = [
@@ -49,6 +51,15 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
     ));
     maker.versions(&mut sections, "protocols", "Protocols", "protocol_versions");
     maker.versions(&mut sections, "specifications", "Specifications", "specification_versions");
+    sections.push(Section {
+        strips: strips(file),
+        ..maker.tables(
+            "cylinders",
+            "Cylinders over the ages",
+            "Sediment, liquid above it and inversions to uniform, drawn to scale.",
+            &[],
+        )
+    });
     sections.push(Section {
         charts: of_arms(&file.number, &file.series, false),
         ..maker.tables("charts", "Charts", "", &[])
@@ -102,6 +113,16 @@ pub fn by_time(file: &LotFile, place: Place, person: Option<&str>, day: Option<&
         section.grids = vec![maker.grid(table, &rows, &NOT_SHOWN)];
     }
     Document { sections: vec![section] }
+}
+
+/// The drawn cylinders of each arm where any was read.
+fn strips(file: &LotFile) -> Vec<(String, Strip)> {
+    let arms = file.series.iter();
+    let strip = |(words, points): &(ArmWords, Vec<SeriesPoint>)| {
+        let cylinders = of_points(points, &file.clarities, true);
+        (!cylinders.is_empty()).then(|| (words.condition.clone(), Strip::of(&cylinders)))
+    };
+    arms.filter_map(strip).collect()
 }
 
 struct Maker<'a> {

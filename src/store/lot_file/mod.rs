@@ -61,6 +61,7 @@ pub fn load(reader: &Reader<'_>, id: i64) -> Answer<LotFile> {
         site: site.as_ref().map(|site| site.name.clone()).unwrap_or_default(),
         zone: site.map_or(chrono_tz::UTC, |site| site.zone),
         series: charted(reader, id)?,
+        clarities: series::clarities_of_lot(reader, id)?,
         tables,
     })
 }

@@ -195,7 +195,7 @@ fn typed_draft(
             at.push(row);
         }
     }
-    let mut values = [None; 4];
+    let mut values = [None; 5];
     for (value, read) in values.iter_mut().zip(physical) {
         *value = read?.map(|number| number.value);
     }

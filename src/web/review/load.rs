@@ -8,7 +8,7 @@ use crate::domain::specification::{LimitSet, SpecificationContent};
 use crate::domain::subject::{Kind, Subject};
 use crate::report::chart::Chart;
 use crate::report::chart::from_series::{About, charts};
-use crate::report::cylinder::Cylinder;
+use crate::report::cylinder::{Cylinder, of_points};
 use crate::store;
 use crate::store::review::decision::AnswerLine;
 use crate::store::review::facts::{Head, ReviewSample};
@@ -128,30 +128,6 @@ impl Loaded {
 
     /// The product drawn at each age: sediment, clarity, inversions.
     pub fn cylinders(&self) -> Vec<Cylinder> {
-        let mut cylinders: Vec<(i64, Cylinder)> = Vec::new();
-        let settled = |point: &&SeriesPoint| point.test == "sedimentation" && !point.is_missed;
-        for point in self.points.iter().filter(settled) {
-            let inversions = self.points.iter().find(|other| {
-                other.sample == point.sample && other.test == "redispersibility" && other.value.is_some()
-            });
-            let cylinder = Cylinder {
-                age: point.age.clone(),
-                ratio: point.value,
-                clarity: self.clarities.iter().find(|(id, _)| *id == point.sample).map(|(_, grade)| *grade),
-                inversions: inversions.map(inversion_words).unwrap_or_default(),
-                is_small: false,
-            };
-            cylinders.push((point.sample, cylinder));
-        }
-        let seen = |cylinder: &Cylinder| cylinder.ratio.is_some() || !cylinder.inversions.is_empty();
-        cylinders.into_iter().map(|(_, cylinder)| cylinder).filter(seen).collect()
-    }
-}
-
-fn inversion_words(point: &SeriesPoint) -> String {
-    if point.shown.contains("inversion") {
-        point.shown.clone()
-    } else {
-        format!("{} inversions", point.shown)
+        of_points(&self.points, &self.clarities, false)
     }
 }
