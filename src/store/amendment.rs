@@ -73,6 +73,24 @@ pub fn superseded(reader: &Reader<'_>, study: i64) -> Answer<Vec<i64>> {
     )
 }
 
+/// The pull that was planned in place of another one: its id and number.
+pub fn successor(reader: &Reader<'_>, pull: i64) -> Answer<Option<(i64, String)>> {
+    reader.maybe(
+        "select p.id, s.number from pull p join sample s on s.pull = p.id where p.supersedes = :pull",
+        named_params! { ":pull": pull },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}
+
+/// The pull in whose place this one was planned.
+pub fn predecessor(reader: &Reader<'_>, pull: i64) -> Answer<Option<(i64, String)>> {
+    reader.maybe(
+        "select p.supersedes, s.number from pull p join sample s on s.pull = p.supersedes where p.id = :pull",
+        named_params! { ":pull": pull },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}
+
 /// The pulls of a study as they stand, with their tests; superseded ones are left out.
 pub fn standing(reader: &Reader<'_>, study: i64) -> Answer<Vec<StandingPull>> {
     let mut tests: Vec<(i64, String, i64)> = reader.all(

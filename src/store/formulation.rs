@@ -104,3 +104,15 @@ pub fn lots(reader: &Reader<'_>, formulation: i64) -> Answer<Vec<Lot>> {
         },
     )
 }
+
+/// The import that brought a formulation version: its number and file name.
+pub fn import_of(reader: &Reader<'_>, version: i64) -> Answer<Option<(i64, String)>> {
+    reader.maybe(
+        "select i.id, i.file_name
+         from formulation_version v
+         join import i on i.id = v.imported
+         where v.id = :version",
+        named_params! { ":version": version },
+        |row| Ok((row.get(0)?, row.get(1)?)),
+    )
+}

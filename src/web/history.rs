@@ -10,6 +10,7 @@ use super::show;
 use super::visit::Visit;
 use crate::domain::failure::Failure;
 use crate::domain::subject::{Kind, Subject};
+use crate::domain::version::parts_that_differ;
 use crate::store;
 use crate::store::trail::ChangeLine;
 
@@ -79,7 +80,45 @@ struct ActPage {
     shell: Shell,
     line: TrailLine,
     digest: String,
-    changes: Vec<ChangeLine>,
+    changes: Vec<ChangeView>,
+}
+
+/// A changed record: its fields as was and is.
+struct ChangeView {
+    record: String,
+    row: i64,
+    kind: String,
+    digest: String,
+    fields: Vec<(String, String, String)>,
+}
+
+impl ChangeView {
+    fn of(line: ChangeLine) -> ChangeView {
+        let fields = line.changes.as_deref().map(fields).unwrap_or_default();
+        let digest = line.digest.chars().take(16).collect();
+        ChangeView { record: line.record.replace('_', " "), row: line.row, kind: line.kind, digest, fields }
+    }
+}
+
+/// Field, was and is of each changed field, as the trail keeps them.
+fn fields(text: &str) -> Vec<(String, String, String)> {
+    let Ok(serde_json::Value::Object(fields)) = serde_json::from_str(text) else { return Vec::new() };
+    let words = |value: Option<&serde_json::Value>| match value {
+        None | Some(serde_json::Value::Null) => "nothing".to_string(),
+        Some(serde_json::Value::String(text)) => text.clone(),
+        Some(other) => other.to_string(),
+    };
+    fields
+        .into_iter()
+        .flat_map(|(name, pair)| {
+            let (was, is) = (words(pair.get(0)), words(pair.get(1)));
+            match parts_that_differ(&was, &is) {
+                // A version's document: only the places that differ, not the whole text twice.
+                Some(parts) if was.starts_with('{') => parts,
+                _ => vec![(name.replace('_', " "), was, is)],
+            }
+        })
+        .collect()
 }
 
 fn act(visit: &Visit) -> Outcome {
@@ -89,5 +128,6 @@ fn act(visit: &Visit) -> Outcome {
     let digest = show::digest(&found.digest);
     let line = trail_line(&found, visit.at.zone);
     let shell = Shell::of(visit, &format!("Entry {number}")).crumb("/history", "History");
+    let changes = changes.into_iter().map(ChangeView::of).collect();
     page(&ActPage { shell, line, digest, changes })
 }

@@ -124,12 +124,18 @@ const EVENTS: [(&str, EventKind, &str); 4] = [
     ("in-service", EventKind::InService, "Put back into service"),
 ];
 
+/// Events that the page shows at first, and in its list of all.
+const NEWEST_EVENTS: i64 = 20;
+const MOST_EVENTS: i64 = 2000;
+
 fn instrument(visit: &Visit) -> Outcome {
+    visit.knows_query(&["events"])?;
     let id = visit.id("id")?;
-    let (facts, events, overrides, lines) = visit.read(|reader| {
+    let shows_all = visit.query.get("events") == Some("all");
+    let (facts, mut events, overrides, lines) = visit.read(|reader| {
         Ok((
             store::instrument::facts(reader, id, visit.at.date())?,
-            store::instrument::events(reader, id, 100)?,
+            store::instrument::events(reader, id, if shows_all { MOST_EVENTS } else { NEWEST_EVENTS } + 1)?,
             store::stop::of_instrument(reader, id)?,
             store::trail::of_subject(reader, Subject::new(Kind::Instrument, id))?,
         ))
@@ -150,8 +156,11 @@ fn instrument(visit: &Visit) -> Outcome {
         record = record.link_if(may, format!("/instruments/{id}/{slug}"), words);
     }
     let path = format!("/overrides/new?instrument={id}");
+    let is_cut = events.len() as i64 > NEWEST_EVENTS && !shows_all;
+    events.truncate(if shows_all { MOST_EVENTS } else { NEWEST_EVENTS } as usize);
+    let caption = format!("The newest {} events", events.len());
     let table = Table::new(
-        "Newest first",
+        if is_cut { &caption } else { "Newest first" },
         &["Event", "On", "Due", "What was recorded", "By"],
         "Nothing is recorded yet. Record its calibration, so that readings can name it.",
     )
@@ -166,6 +175,7 @@ fn instrument(visit: &Visit) -> Outcome {
     }));
     record
         .quiet_link_if(visit.may(Act::OverrideStop), path, "Lift a stop for a day")
+        .quiet_link_if(is_cut, format!("/instruments/{id}?events=all"), "All calibrations and checks")
         .table("Calibrations and checks", table)
         .table("Stops lifted by QA", super::stop::table(&overrides, visit))
         .trail(Trail::of(&lines, visit.at.zone))

@@ -31,6 +31,8 @@ struct LotFilePage {
     people: Vec<(String, String, bool)>,
     day: String,
     document: Document,
+    /// The system behind the records, under the sections.
+    systems: Vec<(String, String)>,
     form: Option<Form>,
     /// Digest and name of a lot file that was just made.
     made: Option<(String, String)>,
@@ -52,8 +54,10 @@ fn file_page(status: u16, visit: &Visit, form: Option<Form>) -> Outcome {
     let asked = |name: &str| visit.query.get(name).map(str::trim).filter(|text| !text.is_empty());
     let is_by_time = asked("order") == Some("time");
     let day = asked("day").and_then(|text| crate::domain::typed::date(text, "Day").ok());
-    let (file, head) =
-        visit.read(|reader| Ok((store::lot_file::load(reader, lot)?, store::trail::head(reader)?)))?;
+    let (file, head, systems) = visit.read(|reader| {
+        let systems = store::lot_file::system::facts_at_hand(reader, visit.at.zone)?;
+        Ok((store::lot_file::load(reader, lot)?, store::trail::head(reader)?, systems))
+    })?;
     let document = if is_by_time {
         by_time(&file, Place::Page, asked("person"), day.map(|day| day.to_string()).as_deref())
     } else {
@@ -79,6 +83,7 @@ fn file_page(status: u16, visit: &Visit, form: Option<Form>) -> Outcome {
             people: people(&file, asked("person")),
             day: day.map(crate::domain::moment::date_shown).unwrap_or_default(),
             document,
+            systems: if is_by_time { Vec::new() } else { systems },
             form,
             made: made.map(|digest| (digest.to_string(), show::digest(digest))),
         },

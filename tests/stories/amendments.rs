@@ -119,3 +119,31 @@ fn an_amendment_is_refused_for_other_arms_and_for_rows_that_changed() {
     assert_eq!(refused.status, 409);
     assert!(refused.text().contains("The new version has other arms than the study"), "{}", refused.text());
 }
+
+/// An amended study verifies, its lot file holds both plans, and a pull leads to the one planned in its place.
+#[test]
+fn an_amended_study_verifies_and_stands_in_the_lot_file() {
+    let lab = Lab::new();
+    let study = world::study(&lab, "TW-104-0640", &KINDS);
+    let old = world::pull(&lab, study, 1, "12 months");
+    let amend = format!("/studies/{study}/amend");
+    approve(&lab, next_version(&lab, 1, changes));
+    lab.manager().does(&amend, &amend, &[("reason", "the customer asked for 30 months")]);
+    let (new, number) =
+        lab.app.db.read(|reader| store::amendment::successor(reader, old.id)).unwrap().expect("a successor");
+    let page = lab.analyst().sees(&format!("/pulls/{}", old.id), &format!("planned {number} in its place"));
+    assert!(page.links().contains(&format!("/pulls/{new}")), "{:?}", page.links());
+    lab.analyst().sees(&format!("/pulls/{new}"), &format!("in place of {}", old.number));
+
+    assert_eq!(super::verification::verify(&lab.folder.0, None).findings, []);
+    let lot = lab.app.db.read(|reader| store::study::get(reader, study)).unwrap().lot;
+    let file = lab.auditor().sees(&format!("/lots/{lot}/file"), "the customer asked for 30 months");
+    for words in [old.number.as_str(), number.as_str(), "Systems", "SQLite 3."] {
+        assert!(file.text().contains(words), "{words}");
+    }
+    let made = acts::lot_file::make(&lab.app.db, &lab.actor("ines.caro"), lot, &lab.folder.0, false).unwrap();
+    let archive = lab.folder.0.join("lot.zip");
+    std::fs::write(&archive, &made.bytes).unwrap();
+    let checked = acts::lot_file::check(&archive, Some(&made.digest)).unwrap();
+    assert!(checked.files > 10 && checked.findings.is_empty(), "{checked:?}");
+}

@@ -176,3 +176,20 @@ fn only_a_lab_manager_imports_and_a_form_without_a_file_says_so() {
     assert_eq!(lab.manager().get(&elsewhere).status, 404);
     assert_eq!(lab.manager().get("/imports/held/..%2Fserver.key").status, 404);
 }
+
+/// The page of an imported formulation says what it is and what cannot rest on it (decision B17).
+#[test]
+fn an_imported_formulation_says_what_it_is() {
+    let lab = Lab::new();
+    lab.manager();
+    supernate::acts::import::import(&lab.app.db, &lab.actor("maren.oddy"), "zno.csv", &zno()).unwrap();
+    let seen =
+        lab.auditor().sees("/formulation-versions/1", "as the imported file names it, not observed here");
+    for words in ["zno.csv", "Its imported lots", "No lot, protocol, release or conclusion can rest on it"] {
+        assert!(seen.text().contains(words), "{words}: {}", seen.text());
+    }
+    for absent in ["Ingredients", "Physical data"] {
+        assert!(!seen.text().contains(absent), "{absent}: {}", seen.text());
+    }
+    assert!(seen.links().contains(&"/imports/1".to_string()), "{:?}", seen.links());
+}

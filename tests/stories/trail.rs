@@ -108,3 +108,20 @@ fn a_long_history_is_cut_on_the_page_and_whole_on_its_own() {
     assert_eq!(lab.auditor().get("/history/of/lot/999").status, 404);
     assert_eq!(lab.auditor().get("/history/of/nothing/1").status, 404);
 }
+
+/// The page of an act shows each changed field as was and is, no raw document.
+#[test]
+fn the_page_of_an_act_shows_was_and_is_of_each_field() {
+    let lab = Lab::new();
+    let named = [("code", "M-PH"), ("name", "pH")];
+    let made = lab.manager().does("/methods/new?kind=ph", "/methods/new", &named).location.unwrap();
+    let edit = format!("{made}/edit");
+    lab.manager().does(&edit, &edit, &[("reason", "three readings agree better"), ("replicates", "3")]);
+    let act = lab.app.db.read(supernate::store::trail::head).unwrap().unwrap().0;
+    lab.auditor().get("/history");
+    let seen = lab.auditor().sees(&format!("/history/{act}"), "method version 1");
+    let html = seen.html();
+    assert!(html.contains("class=\"was\">2<") && html.contains("class=\"is\">3<"), "{html}");
+    assert!(seen.text().contains("three readings agree better"), "{}", seen.text());
+    assert!(!seen.text().contains('{'), "no raw document: {}", seen.text());
+}

@@ -149,7 +149,8 @@ impl Canvas {
                 self.shape("axis", circle(x, y, "11"));
             }
             if point.is_asked || point.bound != Bound::Equal {
-                self.text("", x + Decimal::from(13), y - Decimal::from(6), "start", point.shown.clone());
+                let beside = self.beside(chart, y);
+                self.text("", x + Decimal::from(13), beside, "start", point.shown.clone());
             }
         }
         let last = series.points.iter().rev().find_map(|point| Some((point, point.value?)));
@@ -158,6 +159,14 @@ impl Canvas {
             let (_, y) = self.place(point, value);
             self.ends.push((y, series.label.clone()));
         }
+    }
+
+    /// Where the words beside a point stand: above it, or below where a limit would run through them.
+    fn beside(&self, chart: &Chart, y: Decimal) -> Decimal {
+        let above = y - Decimal::from(6);
+        let limits = [chart.lower, chart.upper].into_iter().flatten().map(|limit| self.y.at(limit));
+        let runs_through = |at: Decimal| above - Decimal::from(16) < at && at < above + Decimal::from(4);
+        if limits.into_iter().any(runs_through) { y + Decimal::from(18) } else { above }
     }
 
     /// The computed curves of one kind; a stroke ends where it leaves the picture.

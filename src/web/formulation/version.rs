@@ -125,6 +125,9 @@ fn version_page(status: u16, visit: &Visit, version: &Version, form: Option<Form
             store::trail::of_subject(reader, Subject::new(Kind::FormulationVersion, version.id))?,
         ))
     })?;
+    if version.state == VersionState::Imported {
+        return imported_page(status, visit, version, &owner, (&lots, Trail::of(&lines, visit.at.zone)));
+    }
     let content: FormulationContent = version.read()?;
     let title = format!("{} version {}", owner.code, version.number);
     let mut shell = Shell::of(visit, &title)
@@ -153,6 +156,37 @@ fn version_page(status: u16, visit: &Visit, version: &Version, form: Option<Form
         .table("Lots made to this version", made_to(&lots, version))
         .trail(Trail::of(&lines, visit.at.zone))
         .show_with(status)
+}
+
+/// What an imported formulation is: a name under which results stand, and nothing more.
+fn imported_page(
+    status: u16,
+    visit: &Visit,
+    version: &Version,
+    owner: &Formulation,
+    (lots, trail): (&[Lot], Trail),
+) -> Outcome {
+    let from = visit.read(|reader| store::formulation::import_of(reader, version.id))?;
+    let shell = Shell::of(visit, &format!("{} (imported)", owner.code))
+        .crumb("/formulations", "Formulations")
+        .crumb(format!("/formulations/{}", owner.id), owner.code.as_str());
+    let lead = "A formulation as the imported file names it, not observed here. Its recipe is not recorded and nobody \
+         signed it here; its results can be read and charted. No lot, protocol, release or conclusion can rest on it.";
+    let mut record = Record::new(shell, lead.to_string()).fact("Name in the file", &owner.name).fact(
+        "Imported by",
+        format!("{}, {}", version.author_name, show::instant(&version.written_at, visit.at.zone)),
+    );
+    if let Some((import, file)) = from {
+        record = record.fact("File", &file).quiet_link_if(true, format!("/imports/{import}"), "The import");
+    }
+    let rows = lots.iter().filter(|lot| lot.formulation_version == version.id).map(|lot| {
+        vec![
+            Cell::link(format!("/lots/{}", lot.id), &lot.number),
+            Cell::or_missing(lot.made_on.map(date_shown), "not stated"),
+        ]
+    });
+    let table = Table::new("As the file names them", &["Lot", "Made on"], "No lot came with it.").rows(rows);
+    record.table("Its imported lots", table).trail(trail).show_with(status)
 }
 
 fn signing_note(visit: &Visit, version: &Version) -> Result<&'static str, Failure> {

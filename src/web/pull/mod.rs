@@ -49,6 +49,9 @@ struct PullPage {
     trend: Table,
     is_at_bench: bool,
     forms: Vec<PullForm>,
+    /// Planned in its place, and the one in whose place it was planned, by an amendment.
+    successor: Option<(i64, String)>,
+    predecessor: Option<(i64, String)>,
     trail: Trail,
 }
 
@@ -109,6 +112,9 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
         let verdicts = store::trend::verdict::of_sample(reader, pull.sample)?;
         Ok((pull, containers, tests, verdicts, lines))
     })?;
+    let (successor, predecessor) = visit.read(|reader| {
+        Ok((store::amendment::successor(reader, id)?, store::amendment::predecessor(reader, id)?))
+    })?;
     let today = visit.at.date();
     let mut forms = forms(visit, &pull)?;
     let mut shell = Shell::of(visit, &format!("Pull {}", pull.number))
@@ -132,6 +138,8 @@ fn pull_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outco
         trend: super::trend::table(&verdicts),
         is_at_bench: pull.facts.event == Some(Event::Pulled) || pull.facts.is_imported,
         forms,
+        successor,
+        predecessor,
         trail: Trail::of(&lines, visit.at.zone),
         pull,
     };
