@@ -124,12 +124,13 @@ fn new_form(visit: &Visit) -> Result<Form, Failure> {
         .field(
             Field::new("bulk_lot", "Filled from bulk lot", Entry::Select)
                 .choices(bulk)
+                .value(visit.query.get("bulk").unwrap_or_default())
                 .hint("For a packed lot; leave it open otherwise."),
         ))
 }
 
 fn new_page(visit: &Visit) -> Outcome {
-    visit.knows_query(&["presentation"])?;
+    visit.knows_query(&["presentation", "bulk"])?;
     form::show(visit, "New lot", LEAD, new_form(visit)?)
 }
 
@@ -215,6 +216,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
             ))
         })?;
     let state = lot.state();
+    let record = visit.read(|reader| store::batch::id_of_lot(reader, id))?;
     let distribution = match failed {
         Some(failed) => Some(failed),
         None if state == LotState::Released && visit.may(Act::RecordDistribution) => {
@@ -245,7 +247,7 @@ fn lot_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Outcom
         samples,
         studies: studies.into_iter().map(started).collect(),
         made_with: super::lot_parts::Parts::of(visit, id)?,
-        links: links(visit, id, state),
+        links: with_record(record, links(visit, id, state)),
         suggestions,
         warnings: warnings.into_iter().map(super::trend::warning).collect(),
         distribution,
@@ -301,6 +303,14 @@ fn links(visit: &Visit, id: i64, state: LotState) -> Vec<(String, &'static str)>
     }
     if visit.may(Act::DecideLot) {
         links.push((format!("/lots/{id}/decision"), "Release or reject"));
+    }
+    links
+}
+
+/// The way to the lot's batch record comes first, where it was made here.
+fn with_record(record: Option<i64>, mut links: Vec<(String, &'static str)>) -> Vec<(String, &'static str)> {
+    if let Some(record) = record {
+        links.insert(0, (format!("/batches/{record}"), "Batch record"));
     }
     links
 }

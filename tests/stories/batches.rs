@@ -33,7 +33,7 @@ fn a_lot_is_made_from_start_to_closed_record() {
 
     let page = lab.auditor().sees(&record, "The record is closed. QA reviews it with the lot.");
     assert!(page.text().contains("Written by me and complete"));
-    lab.auditor().sees("/batches", "BR-TW-104-0720");
+    lab.auditor().sees("/batches", "TW-104-0720");
     let whole = lab.auditor().sees(&format!("{record}/record"), "No value was changed");
     let text = whole.text().replace('\u{202f}', " ");
     for words in ["41.44 kg", "balance BAL-7", "98.60 %", "1350 rpm", "in MV-2", "weight set W-3"] {

@@ -153,6 +153,7 @@ impl Player<'_> {
             },
             master: None,
         };
+        let content = FormulationContent { master: Some(self.master(&row.code, &content)?), ..content };
         let formulation = self.number(&format!("formulation {}", row.code))?;
         let actor = self.person(FORMULATOR)?;
         let id = acts::formulation::draft(self.db, &actor, formulation, &first.reason, &content)?;
@@ -292,12 +293,13 @@ impl Player<'_> {
             let id = acts::instrument::add(self.db, &actor, &new)?;
             self.made.insert(format!("instrument {kind}"), id);
         }
+        self.make_equipment()?;
         self.yearly_care()
     }
 
     /// Calibrations for the next thirteen months.
     pub fn yearly_care(&mut self) -> Result<(), Failure> {
-        for kind in [PH_METER, "viscometer", "balance", "cylinder"] {
+        for kind in [PH_METER, "viscometer", "balance", "cylinder", "floor balance"] {
             let instrument = self.number(&format!("instrument {kind}"))?;
             let actor = self.person(MANAGER)?;
             let detail = EventDetail {

@@ -6,7 +6,7 @@ use crate::acts;
 use crate::acts::signature::{Rejection, Release};
 use crate::domain::completeness::statement::NewElsewhere;
 use crate::domain::failure::Failure;
-use crate::domain::lot::{NewDistribution, NewLot, Scale};
+use crate::domain::lot::NewDistribution;
 use crate::domain::lot_decision::Looked;
 use crate::domain::moment::plus_days;
 use crate::domain::protocol::ProtocolContent;
@@ -26,21 +26,12 @@ impl Player<'_> {
             self.write_version(product, row.version)?;
         }
         let made_on = self.now.date();
-        let actor = self.person("bea.skelton")?;
-        let new = NewLot {
-            number: row.number.clone(),
-            presentation: self.number(&product.presentation)?,
-            formulation_version: self.number(&version)?,
-            made_on,
-            size: Some(row.size),
-            size_unit: Some(row.size_unit.clone()),
-            scale: Scale::Production,
-            container_closure: product.pack.clone(),
-            bulk_lot: None,
-        };
-        let lot = acts::lot::make(self.db, &actor, &new)?;
+        let (presentation, version) = (self.number(&product.presentation)?, self.number(&version)?);
+        let lot = self.carry_out(row, presentation, version, &product.pack)?;
         self.made.insert(row.number.clone(), lot);
-        if !row.decision.is_empty() {
+        if row.making == "low yield" {
+            self.plan_low_yield(at);
+        } else if !row.decision.is_empty() {
             self.plan(working_day(plus_days(made_on, 4)), 9, 10, Scene::TestRelease(at));
         }
         Ok(())
@@ -85,7 +76,12 @@ impl Player<'_> {
         let actor = self.person("per.lindqvist")?;
         if row.decision == "rejected" {
             let signed = self.sign::<Rejection>(&actor)?;
-            let why = "Viscosity below the release limit: the bentonite was hydrated too short.";
+            let why = match row.making.as_str() {
+                "low yield" => {
+                    "Yield 91.3 % of theory: the bulk ran out through a worn valve and stood open."
+                }
+                _ => "Viscosity below the release limit: the bentonite was hydrated too short.",
+            };
             return acts::lot_decision::reject(self.db, &actor, lot, &signed.stating(why));
         }
         let signed = self.sign::<Release>(&actor)?;

@@ -3,11 +3,14 @@
 mod bench;
 mod definition;
 mod lot;
+mod making;
+mod master;
 mod method;
 mod player;
 mod pull;
 mod reading;
 pub mod seed;
+mod stock;
 
 use std::net::SocketAddr;
 use std::path::PathBuf;
@@ -117,7 +120,9 @@ fn play(opened: &folder::Folder, seed: &Seed, now: Moment) -> Result<(), Failure
     player.begin(player.days_ago(FIRST_DAY_DAYS_AGO));
     player.make_definitions()?;
     for (at, lot) in seed.lots.iter().enumerate() {
-        player.plan(player.days_ago(lot.made_days_ago), 7, 30, Scene::MakeLot(at));
+        // The early shift; the lot that is still in the making was begun late.
+        let hour = if lot.making == "half" { 16 } else { 4 };
+        player.plan(player.days_ago(lot.made_days_ago), hour, 30, Scene::MakeLot(at));
     }
     for year in 1..=3 {
         player.plan(player.days_ago(FIRST_DAY_DAYS_AGO - 365 * year), 8, 0, Scene::YearlyCare);
@@ -125,6 +130,7 @@ fn play(opened: &folder::Folder, seed: &Seed, now: Moment) -> Result<(), Failure
     player.play()?;
     // Today's checks are done, so that readings can begin.
     player.now = now.plus_minutes(-5);
+    player.check_floor_balance()?;
     player.daily_checks("rafe.tolland")
 }
 

@@ -92,6 +92,78 @@ pub struct LotRow {
     pub scale: String,
     pub study: String,
     pub decision: String,
+    /// `whole`, `low yield`, or `half`: still in the making.
+    pub making: String,
+}
+
+/// How a material is weighed.
+#[derive(Clone, Debug, Deserialize)]
+pub struct WeighingRow {
+    pub material: String,
+    pub unit: String,
+    #[serde(deserialize_with = "as_written")]
+    pub step: Option<Decimal>,
+    pub below: Option<Decimal>,
+    pub above: Option<Decimal>,
+    pub overage: Option<Decimal>,
+    pub corrected: String,
+    pub solid: String,
+}
+
+/// A step of a product's master record.
+#[derive(Clone, Debug, Deserialize)]
+pub struct StepRow {
+    pub product: String,
+    pub phase: String,
+    pub any_order: String,
+    pub kind: String,
+    pub title: String,
+    pub instruction: String,
+    pub material: String,
+    pub equipment: String,
+    pub least_minutes: Option<u32>,
+    pub most_minutes: Option<u32>,
+    pub stop_minutes: Option<u32>,
+    pub check: String,
+    pub blind: Option<Decimal>,
+    pub repeat: String,
+    pub skip: String,
+}
+
+/// A value of a step with what is usually read.
+#[derive(Clone, Debug, Deserialize)]
+pub struct ValueRow {
+    pub product: String,
+    pub step: String,
+    pub name: String,
+    pub unit: String,
+    #[serde(deserialize_with = "as_written")]
+    pub least: Option<Decimal>,
+    #[serde(deserialize_with = "as_written")]
+    pub most: Option<Decimal>,
+    pub check: String,
+    pub words: String,
+    pub typical: String,
+}
+
+/// The theoretical yield of a phase, and the percent that is usually reached.
+#[derive(Clone, Debug, Deserialize)]
+pub struct YieldRow {
+    pub product: String,
+    pub phase: String,
+    pub unit: String,
+    pub per_size_unit: Decimal,
+    pub least: Decimal,
+    pub most: Decimal,
+    pub typical: Decimal,
+}
+
+#[derive(Clone, Debug, Deserialize)]
+pub struct EquipmentRow {
+    pub code: String,
+    pub name: String,
+    pub class: String,
+    pub location: String,
 }
 
 #[derive(Clone, Debug, Deserialize)]
@@ -138,6 +210,11 @@ pub struct Seed {
     pub lots: Vec<LotRow>,
     pub trends: Vec<TrendRow>,
     pub events: Vec<EventRow>,
+    pub weighing: Vec<WeighingRow>,
+    pub steps: Vec<StepRow>,
+    pub values: Vec<ValueRow>,
+    pub yields: Vec<YieldRow>,
+    pub equipment: Vec<EquipmentRow>,
 }
 
 impl Seed {
@@ -151,6 +228,11 @@ impl Seed {
             lots: rows(include_str!("../../../seed-demo/lots.csv"))?,
             trends: rows(include_str!("../../../seed-demo/trends.csv"))?,
             events: rows(include_str!("../../../seed-demo/events.csv"))?,
+            weighing: rows(include_str!("../../../seed-demo/weighing.csv"))?,
+            steps: rows(include_str!("../../../seed-demo/steps.csv"))?,
+            values: rows(include_str!("../../../seed-demo/values.csv"))?,
+            yields: rows(include_str!("../../../seed-demo/yields.csv"))?,
+            equipment: rows(include_str!("../../../seed-demo/equipment.csv"))?,
         })
     }
 

@@ -251,6 +251,9 @@ impl Entry {
             EntryKind::Weighing | EntryKind::SecondWeighing => &self.weighed.material_lot,
             _ => &self.name,
         };
+        if self.kind == EntryKind::SecondWeighing {
+            return format!("{name}, second weighing");
+        }
         match (name.is_empty(), self.point.is_empty()) {
             (true, _) => self.kind.words().to_string(),
             (false, true) => name.clone(),

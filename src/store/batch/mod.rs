@@ -119,8 +119,6 @@ pub fn open(reader: &Reader<'_>) -> Answer<Vec<OpenBatch>> {
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct BatchLine {
     pub id: i64,
-    pub number: String,
-    pub lot: i64,
     pub lot_number: String,
     pub product: String,
     pub made_on: Option<NaiveDate>,
@@ -131,7 +129,7 @@ pub struct BatchLine {
 /// Records not in the making, newest first, those before `before`: paging by key.
 pub fn settled_before(reader: &Reader<'_>, before: Option<i64>, limit: i64) -> Answer<Vec<BatchLine>> {
     reader.all(
-        "select r.id, r.number, l.id, l.number, d.code || ' ' || d.name, l.made_on,
+        "select r.id, l.number, d.code || ' ' || d.name, l.made_on,
              (select decision from lot_decision where lot = l.id order by id desc limit 1),
              (select count(*) from deviation where lot = l.id)
          from batch_record r
@@ -145,13 +143,11 @@ pub fn settled_before(reader: &Reader<'_>, before: Option<i64>, limit: i64) -> A
         |row| {
             Ok(BatchLine {
                 id: row.get(0)?,
-                number: row.get(1)?,
-                lot: row.get(2)?,
-                lot_number: row.get(3)?,
-                product: row.get(4)?,
-                made_on: row.get::<_, Option<Day>>(5)?.map(|day| day.0),
-                decision: row.get(6)?,
-                deviations: row.get(7)?,
+                lot_number: row.get(1)?,
+                product: row.get(2)?,
+                made_on: row.get::<_, Option<Day>>(3)?.map(|day| day.0),
+                decision: row.get(4)?,
+                deviations: row.get(5)?,
             })
         },
     )

@@ -92,8 +92,7 @@ fn open_row(one: &OpenBatch) -> Row {
 
 fn settled_row(one: BatchLine) -> Vec<Cell> {
     vec![
-        Cell::link(format!("/batches/{}", one.id), &one.number),
-        Cell::link(format!("/lots/{}", one.lot), &one.lot_number),
+        Cell::link(format!("/batches/{}", one.id), &one.lot_number),
         Cell::text(one.product),
         Cell::text(one.made_on.map(date_shown).unwrap_or_default()),
         Cell::number(one.deviations.to_string()),
@@ -114,7 +113,7 @@ fn list(visit: &Visit) -> Outcome {
         0 => "No lot is in the making.".to_string(),
         count => format!("{} in the making.", show::counted(count, "lot is", "lots are")),
     };
-    let heads = ["Record", "Lot", "Product", "Made on", "Deviations#", "Decision"];
+    let heads = ["Record of lot", "Product", "Made on", "Deviations#", "Decision"];
     let empty =
         "No record is closed yet. One is started from an approved master record and closed when all is done.";
     page(&BatchesPage {

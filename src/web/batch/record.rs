@@ -22,32 +22,61 @@ pub fn settled(content: &RecordContent, entries: &[Entry], yields: &[PhaseYield]
     states(content, entries, yields).into_iter().filter(|state| state.is_settled()).count()
 }
 
-/// What is next, in one sentence.
-pub fn next_words(content: &RecordContent, entries: &[Entry], yields: &[PhaseYield]) -> String {
+/// Where the record goes on.
+enum Next {
+    Running(usize),
+    Check(usize),
+    Ready(usize),
+    Yield(usize),
+    YieldCheck(usize),
+    Nothing,
+}
+
+/// The first thing to go on with: what runs, what waits for a second person, what may begin, then the yields.
+fn next(content: &RecordContent, entries: &[Entry], yields: &[PhaseYield]) -> Next {
     let states = states(content, entries, yields);
-    let steps = content.steps();
-    let find = |wanted: StepState| {
-        steps.iter().zip(&states).find(|(_, state)| **state == wanted).map(|(one, _)| one)
-    };
-    if let Some(one) = find(StepState::InProgress) {
-        return format!("In progress: {}.", one.words());
+    let find = |wanted: StepState| states.iter().position(|state| *state == wanted).map(|at| at + 1);
+    let running = find(StepState::InProgress).map(Next::Running);
+    let step = running
+        .or(find(StepState::WaitingForCheck).map(Next::Check))
+        .or(find(StepState::Ready).map(Next::Ready));
+    if let Some(step) = step {
+        return step;
     }
-    if let Some(one) = find(StepState::WaitingForCheck) {
-        return format!("Waiting for a second person: {}.", one.words());
-    }
-    if let Some(one) = find(StepState::Ready) {
-        return format!("Next: {}.", one.words());
-    }
-    for (at, phase) in content.master.phases.iter().enumerate().filter(|(_, phase)| phase.theory.is_some()) {
+    for (at, _) in content.master.phases.iter().enumerate().filter(|(_, phase)| phase.theory.is_some()) {
         match yield_of(yields, at) {
-            None => return format!("Next: the yield of “{}”.", phase.name),
-            Some(found) if found.checked.is_none() => {
-                return format!("Waiting for a second person: the yield of “{}”.", phase.name);
-            }
+            None => return Next::Yield(at),
+            Some(found) if found.checked.is_none() => return Next::YieldCheck(at),
             Some(_) => {}
         }
     }
-    "All steps are done. The record can be closed.".to_string()
+    Next::Nothing
+}
+
+/// What is next, in one sentence.
+pub fn next_words(content: &RecordContent, entries: &[Entry], yields: &[PhaseYield]) -> String {
+    let step = |number: usize| content.step(number).map(|one| one.words()).unwrap_or_default();
+    let phase = |at: usize| content.phase(at).map(|phase| phase.name.clone()).unwrap_or_default();
+    match next(content, entries, yields) {
+        Next::Running(number) => format!("In progress: {}.", step(number)),
+        Next::Check(number) => format!("Waiting for a second person: {}.", step(number)),
+        Next::Ready(number) => format!("Next: {}.", step(number)),
+        Next::Yield(at) => format!("Next: the yield of “{}”.", phase(at)),
+        Next::YieldCheck(at) => format!("Waiting for a second person: the yield of “{}”.", phase(at)),
+        Next::Nothing => "All steps are done. The record can be closed.".to_string(),
+    }
+}
+
+/// The end of the address at which the record goes on.
+fn next_path(loaded: &Loaded) -> Option<String> {
+    if loaded.record.is_closed || loaded.record.lot_decision.is_some() {
+        return None;
+    }
+    match next(&loaded.record.content, &loaded.entries, &loaded.yields) {
+        Next::Running(number) | Next::Check(number) | Next::Ready(number) => Some(format!("steps/{number}")),
+        Next::Yield(at) | Next::YieldCheck(at) => Some(format!("yields/{}", at + 1)),
+        Next::Nothing => None,
+    }
 }
 
 struct Task {
@@ -79,6 +108,7 @@ struct RecordPage {
     reopen: Option<Form>,
     signatures: Signatures,
     packs: bool,
+    next: Option<String>,
     trail: Trail,
 }
 
@@ -222,6 +252,7 @@ pub fn record_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) ->
         close_note,
         reopen,
         signatures: Signatures::of(&signed, &sha256_hex(canonical.as_bytes()), visit.at.zone),
+        next: next_path(&loaded),
         packs: visit.may(crate::domain::act::Act::MakeLot) && loaded.record.lot_decision.is_none(),
         trail: Trail::of(&lines, visit.at.zone),
     };

@@ -54,6 +54,8 @@ struct StepPage {
     late: LateWords,
     late_told: String,
     may_be_late: bool,
+    /// A material lot can still be looked at for this step.
+    may_weigh: bool,
     next: Option<usize>,
 }
 
@@ -245,6 +247,7 @@ pub fn step_page(
         lot_words: lot_words(visit, &facts, &scanned)?,
         scanned,
         may_be_late: !sections.is_empty(),
+        may_weigh: matches!(facts.state(), StepState::Ready | StepState::InProgress) && !sections.is_empty(),
         sections,
         rows: entries.map(|one| row(visit, &facts, loaded.record.id, one, hides)).collect(),
         late_told: late.told(),
