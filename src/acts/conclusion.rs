@@ -79,7 +79,14 @@ pub fn prepare(reader: &Reader<'_>, arm: i64, proposal: &Proposal) -> Result<Pre
     let cap = proposal.answers.cap(found.covered());
     let mut content = found.content(&cap);
     (content.specification, content.alpha_percent) = (specification, alpha_percent);
+    let on_study = store::evaluation::lots_on_study(reader, group.key.presentation)?;
     content.suggested = accelerated.sentences("accelerated");
+    if on_study > store::evaluation::NEWEST_LOTS {
+        let newest = store::evaluation::NEWEST_LOTS;
+        content
+            .suggested
+            .push(format!("Only the newest {newest} of {on_study} lots on study were looked at."));
+    }
     content.suggested.extend(intermediate.sentences("intermediate"));
     let facts = found.facts(&cap, &content, (&accelerated, &intermediate));
     let lots = found.lots();

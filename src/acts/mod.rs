@@ -31,6 +31,7 @@ pub mod protocol;
 pub mod pull;
 pub mod qualification;
 pub mod question;
+pub mod rack;
 pub mod reading;
 pub mod result;
 pub mod retain;

@@ -145,6 +145,8 @@ acts! {
     DeclareAlike, "declared versions one history", Roles(&[QaReviewer]);
     LeaveOutOfTrend, "decided on a result in the history", Roles(&[QaReviewer]);
     SealForecast, "sealed forecasts", System;
+    StartRack, "put up a rack", Roles(&[Formulator]);
+    PutOnRack, "put a lot on a rack", Roles(&[Formulator]);
     ConcludeEvaluation, "concluded an evaluation", Roles(&[LabManager, QaReviewer]);
 
     ExportLotFile, "exported a lot file", Roles(&[Formulator, LabManager, QaReviewer, Auditor]);

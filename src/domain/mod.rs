@@ -45,6 +45,7 @@ pub mod product;
 pub mod protocol;
 pub mod pull;
 pub mod qualification;
+pub mod rack;
 pub mod reading;
 pub mod reason;
 pub mod refusal;

@@ -33,10 +33,11 @@ pub enum Kind {
     Import,
     TrendEquivalence,
     Conclusion,
+    Rack,
 }
 
 impl Kind {
-    pub const ALL: [Kind; 30] = [
+    pub const ALL: [Kind; 31] = [
         Kind::Site,
         Kind::Account,
         Kind::Customer,
@@ -67,6 +68,7 @@ impl Kind {
         Kind::Import,
         Kind::TrendEquivalence,
         Kind::Conclusion,
+        Kind::Rack,
     ];
 
     /// The table of the record, and the word stored beside its number.
@@ -102,6 +104,7 @@ impl Kind {
             Kind::Import => "import",
             Kind::TrendEquivalence => "trend_equivalence",
             Kind::Conclusion => "evaluation_conclusion",
+            Kind::Rack => "rack",
         }
     }
 

@@ -19,6 +19,7 @@ pub fn charts(arm: i64, words: &str, curves: &[&Curve]) -> Vec<Chart> {
             test: "Sediment volume after shaking".to_string(),
             unit: "share of the total volume".to_string(),
             condition: words.to_string(),
+            is_of_readings: true,
             series: curves.iter().map(|curve| series(curve)).collect(),
             ..Chart::default()
         })
@@ -85,15 +86,15 @@ pub fn poured(found: &Poured, dissolved_stated: bool, stored_f: &str) -> Vec<Str
         "nothing dissolved, since the formulation states no share: the worst"
     };
     let mut sentences = vec![format!(
-        "Never shaken, at worst the first doses hold {} of the label and the last ones {}: a bound from the as-stored \
-         ratio {stored_f} and {dissolved}, not a forecast.",
+        "Never shaken, at worst the first doses hold {} of the label and the last ones {}: a bound from the \
+         as-stored ratio {stored_f} and {dissolved}, not a forecast.",
         percent(found.first_dose),
         percent(found.last_dose)
     )];
     sentences.push(match found.seconds_to_dose {
         Some(seconds) => format!(
-            "After shaking, about {} pass until the top half has lost 5 %: a bound from the first fall of the interface \
-             in the cylinder (0.05 of the height by its rate, common practice).",
+            "After shaking, about {} pass until the top half has lost 5 %: a bound from the first fall of the \
+             interface in the cylinder (0.05 of the height by its rate, common practice).",
             seconds_words(seconds)
         ),
         None => "After shaking the interface was not seen to fall, so no time to dose is stated.".to_string(),

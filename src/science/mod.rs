@@ -34,6 +34,7 @@ pub mod tolerance;
 pub mod transform;
 pub mod trend;
 pub mod uniformity;
+pub mod version_difference;
 pub mod viscosity;
 pub mod warning_rules;
 pub mod yields;

@@ -89,19 +89,31 @@ impl Pooling {
         for lot in lots {
             sums.push(Sums::of(lot)?);
         }
-        let all = total(&sums)?;
-        let mut own_sse = Vec::with_capacity(lots.len());
-        let (mut within_sxx, mut within_sxy, mut lots_with_slope) = (0.0, 0.0, 0);
-        for (lot, s) in lots.iter().zip(&mut sums) {
-            if s.has_slope() {
-                lots_with_slope += 1;
-            } else {
-                (s.sxx, s.sxy) = (0.0, 0.0);
-            }
-            within_sxx += s.sxx;
-            within_sxy += s.sxy;
-            own_sse.push(super::regression::residual_sum(lot, s, slope_of(s).unwrap_or(0.0)));
+        let own = |(lot, sums): (&&[Point], &mut Sums)| {
+            forget_one_age(sums);
+            super::regression::residual_sum(lot, sums, slope_of(sums).unwrap_or(0.0))
+        };
+        let own_sse = lots.iter().zip(&mut sums).map(own).collect();
+        Self::of_parts(sums, own_sse, alpha)
+    }
+
+    /// The same from the sums of each lot alone, its points not kept: for whole data sets in one pass. Residuals come
+    /// as Syy − Sxy²/Sxx, with fewer digits where they are small beside Syy.
+    pub fn of_sums(mut sums: Vec<Sums>, alpha: f64) -> Result<Self, NoLine> {
+        if sums.iter().any(|lot| lot.n == 0) {
+            return Err(NoLine::NoPoints);
         }
+        sums.iter_mut().for_each(forget_one_age);
+        let own = |lot: &Sums| (lot.syy - slope_of(lot).unwrap_or(0.0) * lot.sxy).max(0.0);
+        let own_sse = sums.iter().map(own).collect();
+        Self::of_parts(sums, own_sse, alpha)
+    }
+
+    fn of_parts(sums: Vec<Sums>, own_sse: Vec<f64>, alpha: f64) -> Result<Self, NoLine> {
+        let all = total(&sums)?;
+        let lots_with_slope = sums.iter().filter(|lot| lot.has_slope()).count();
+        let within_sxx = sums.iter().map(|lot| lot.sxx).sum::<f64>();
+        let within_sxy = sums.iter().map(|lot| lot.sxy).sum::<f64>();
         let common_slope = (within_sxx > 0.0).then(|| within_sxy / within_sxx);
         let mut pooling = Self {
             all,
@@ -248,6 +260,13 @@ impl Pooling {
     /// The residual sum of squares of each lot about its own line.
     pub fn own_sse(&self) -> &[f64] {
         &self.own_sse
+    }
+}
+
+/// Ages that differ by rounding alone count as one, and carry no slope.
+fn forget_one_age(sums: &mut Sums) {
+    if !sums.has_slope() {
+        (sums.sxx, sums.sxy) = (0.0, 0.0);
     }
 }
 

@@ -88,6 +88,43 @@ impl Sums {
         }
     }
 
+    /// Sums of no point yet, to be filled one point at a time.
+    pub const NONE: Self =
+        Self { n: 0, mean_x: 0.0, mean_y: 0.0, sxx: 0.0, sxy: 0.0, syy: 0.0, largest_y: 0.0 };
+
+    /// Takes one more point in, without keeping it.
+    ///
+    /// Source: Welford, Technometrics 4 (1962) 419; products alike. Less exact than [`Sums::of`] by rounding of each
+    /// step; for whole data sets in one pass.
+    pub fn add(&mut self, point: Point) {
+        self.n += 1;
+        let share = 1.0 / self.n as f64;
+        let (dx, dy) = (point.x - self.mean_x, point.y - self.mean_y);
+        self.mean_x += dx * share;
+        self.mean_y += dy * share;
+        let (rest_x, rest_y) = (point.x - self.mean_x, point.y - self.mean_y);
+        self.sxx += dx * rest_x;
+        self.sxy += dx * rest_y;
+        self.syy += dy * rest_y;
+        self.largest_y = self.largest_y.max(point.y.abs());
+    }
+
+    /// Takes a point out again that was taken in before: a value that a later version replaces.
+    pub fn take_out(&mut self, point: Point) {
+        if self.n < 2 {
+            *self = Self::NONE;
+            return;
+        }
+        let count = self.n as f64;
+        let (old_x, old_y) = (self.mean_x, self.mean_y);
+        self.mean_x = (count * old_x - point.x) / (count - 1.0);
+        self.mean_y = (count * old_y - point.y) / (count - 1.0);
+        self.sxx = (self.sxx - (point.x - old_x) * (point.x - self.mean_x)).max(0.0);
+        self.sxy -= (point.x - old_x) * (point.y - self.mean_y);
+        self.syy = (self.syy - (point.y - old_y) * (point.y - self.mean_y)).max(0.0);
+        self.n -= 1;
+    }
+
     /// Whether there are two ages. Ages that differ by rounding alone count as one.
     pub fn has_slope(&self) -> bool {
         let noise = 8.0 * f64::EPSILON * self.mean_x.abs();

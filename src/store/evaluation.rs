@@ -84,7 +84,8 @@ const OWN: usize = 12;
 /// The select of a series point with the lot, formulation, method and containers before it.
 fn select() -> String {
     let own = "select l.id, l.number, l.formulation_version, f.code || ' version ' || fv.number,
-        st.programme = 'development', t.method_version, m.kind, r.id, r.version, a.id,
+        st.programme = 'development' or exists (select 1 from rack_lot k where k.lot = l.id), 
+        t.method_version, m.kind, r.id, r.version, a.id,
         (select group_concat(coalesce(v.container, 0) || ':' || v.value, ' ') from reading v
             where v.sample_test = t.id and v.field in ('value', 'inversions') and v.value is not null
             and v.qualifier = '=' and r.imported is null and r.component = ''
@@ -140,10 +141,28 @@ fn containers(readings: &str) -> Vec<Decimal> {
     found.into_iter().map(|(_, sum, count)| sum / Decimal::from(count)).collect()
 }
 
-/// All records of one group, of every test.
+/// So many lots of a presentation are looked at, the newest; pages say when there are more.
+pub const NEWEST_LOTS: i64 = 60;
+
+/// How many lots of a presentation are on study.
+pub fn lots_on_study(reader: &Reader<'_>, presentation: i64) -> Answer<i64> {
+    reader.one(
+        "presentation with this number",
+        "select count(*) from lot l
+         where l.presentation = :presentation and exists (select 1 from study where lot = l.id)",
+        named_params! { ":presentation": presentation },
+        |row| row.get(0),
+    )
+}
+
+const NEWEST: &str = "l.id in (
+    select o.id from lot o where o.presentation = :presentation and exists (select 1 from study where lot = o.id)
+    order by o.id desc limit 60)";
+
+/// All records of one group, of every test, of the newest lots.
 pub fn records(reader: &Reader<'_>, key: &GroupKey) -> Answer<Vec<Record>> {
     let sql = format!(
-        "{} where l.presentation = :presentation and a.condition = :condition and a.orientation = :orientation
+        "{} where {NEWEST} and a.condition = :condition and a.orientation = :orientation
          and coalesce(a.container_text, '') = :pack and {HAPPENED} order by l.number, t.id, r.component",
         select()
     );
@@ -159,12 +178,9 @@ pub fn records(reader: &Reader<'_>, key: &GroupKey) -> Answer<Vec<Record>> {
     )
 }
 
-/// All records of a presentation, of every group.
+/// All records of a presentation, of every group, of the newest lots.
 pub fn records_of_presentation(reader: &Reader<'_>, presentation: i64) -> Answer<Vec<Record>> {
-    let sql = format!(
-        "{} where l.presentation = :presentation and {HAPPENED} order by l.number, t.id, r.component",
-        select()
-    );
+    let sql = format!("{} where {NEWEST} and {HAPPENED} order by l.number, t.id, r.component", select());
     reader.all(&sql, named_params! { ":presentation": presentation }, record)
 }
 

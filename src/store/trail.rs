@@ -303,6 +303,7 @@ pub fn name_of(reader: &Reader<'_>, subject: Subject) -> Answer<String> {
         | Kind::Equipment
         | Kind::Condition
         | Kind::Chamber
+        | Kind::Rack
         | Kind::Protocol => "code",
         Kind::Account => "full_name",
         _ => return Ok(subject.id.to_string()),

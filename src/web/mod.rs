@@ -49,6 +49,7 @@ pub mod product;
 pub mod protocol;
 pub mod pull;
 pub mod qualification;
+pub mod rack;
 pub mod reading;
 pub mod record;
 pub mod reply;

@@ -69,6 +69,7 @@ pub fn all() -> Vec<Route> {
         super::product::ROUTES,
         super::material::ROUTES,
         super::formulation::ROUTES,
+        super::rack::ROUTES,
         super::master::ROUTES,
         super::method::ROUTES,
         super::specification::ROUTES,

@@ -179,8 +179,8 @@ fn flow_table(readings: &[SpeedReading], spindle: &str, speeds: usize) -> Table 
         .map(|index| format!("; thinning index {index:.2} (slow against ten times faster)"))
         .unwrap_or_default();
     let caption = format!(
-        "Flow at {age}, spindle {spindle}, {speeds} speeds{thinning}. R² is of the stress, so models compare; the speed \
-         stands for the shear rate"
+        "Flow at {age}, spindle {spindle}, {speeds} speeds{thinning}. R² is of the stress, so models \
+         compare; the speed stands for the shear rate"
     );
     let heads = ["Model", "R²#", "Flow index#", "Yield, share of the lowest stress#", "To know"];
     match flow::fits(readings) {

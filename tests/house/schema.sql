@@ -841,6 +841,24 @@ CREATE TABLE qualification (
     act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
 ) strict;
 
+CREATE TABLE rack (
+    id integer primary key,
+    uuid blob not null unique,
+    code text not null collate nocase unique,
+    title text not null,
+    started_on text not null,               -- time zero of every lot on it
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred
+) strict;
+
+CREATE TABLE rack_lot (
+    id integer primary key,
+    rack integer not null references rack (id),
+    lot integer not null unique references lot (id),
+    position integer not null check (position between 1 and 12),
+    act integer not null default (current_act()) references trail_act (id) deferrable initially deferred,
+    unique (rack, position)
+) strict;
+
 CREATE TABLE reading (
     id integer primary key,
     sample_test integer not null references sample_test (id),

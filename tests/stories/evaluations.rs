@@ -237,3 +237,78 @@ fn a_conclusion_is_refused_with_the_reason_that_stands_in_the_way() {
     assert_eq!(manager.get("/conclusions/9").status, 404);
     assert_eq!(lab.analyst().get(&asked(arm, &every, &[])).status, 403);
 }
+
+/// A second version of the bench's formulation, and a lot made to it.
+fn lot_of_second_version(lab: &Lab, number: &str) -> i64 {
+    use supernate::acts;
+    use supernate::domain::lot::{NewLot, Scale};
+    use supernate::domain::version::Versioned;
+    use supernate::store;
+    let db = &lab.app.db;
+    let known = db.read(store::lot::approved_formulations).unwrap();
+    let version = if known.len() > 1 {
+        known.iter().map(|(id, _)| *id).max().unwrap()
+    } else {
+        let first =
+            db.read(|reader| store::version::get(reader, Versioned::Formulation, known[0].0)).unwrap();
+        let mut content: supernate::domain::formulation::FormulationContent =
+            serde_json::from_str(&first.content).unwrap();
+        content.ingredients[1].quantity = "0.55".parse().unwrap();
+        let author = lab.actor("tomas.reyle");
+        let id = acts::formulation::draft(db, &author, first.parent, "more gum against settling", &content)
+            .unwrap();
+        crate::support::world::approve(lab, Versioned::Formulation, id, "tomas.reyle", "ada.whitlock");
+        id
+    };
+    let lot = db.read(|reader| store::lot::before(reader, None, 1)).unwrap().remove(0);
+    let new = NewLot {
+        number: number.to_string(),
+        presentation: lot.presentation,
+        formulation_version: version,
+        made_on: lot.made_on.unwrap(),
+        size: None,
+        size_unit: None,
+        scale: Scale::Production,
+        container_closure: "PET bottle, PP cap".to_string(),
+        bulk_lot: None,
+    };
+    acts::lot::make(db, &lab.actor("bea.skelton"), &new).unwrap()
+}
+
+#[test]
+fn a_formulation_version_is_compared_with_another_on_stability() {
+    let lab = Lab::new();
+    let mut aged = Aged::new(&lab, &["TW-104-0640", "TW-104-0641"]);
+    for number in ["TW-104-0701", "TW-104-0702"] {
+        let lot = lot_of_second_version(&lab, number);
+        aged.studies.push((number.to_string(), crate::support::world::study_of(&lab, lot, &[])));
+    }
+    let arm = aged.arm("TW-104-0640", 1);
+    let rows: [Series<'_>; 4] = [
+        ("TW-104-0640", &["100.1", "99.6", "99.1", "98.4"]),
+        ("TW-104-0641", &["100.0", "99.5", "98.9", "98.5"]),
+        ("TW-104-0701", &["100.0", "99.9", "99.8", "99.9"]),
+        ("TW-104-0702", &["100.2", "100.1", "99.9", "99.9"]),
+    ];
+    for (place, (age, day)) in DAYS.iter().enumerate().take(4) {
+        lab.clock(day);
+        for (number, values) in rows {
+            aged.reads(number, 1, age, values[place]);
+        }
+    }
+    let page = format!("/evaluations/{arm}/assay");
+    let formulator = lab.formulator();
+    let one = formulator.sees(&page, "lots of several formulation versions stand together");
+    let path = format!("{page}/versions");
+    assert!(one.links().contains(&path), "{:?}", one.links());
+    let seen = formulator.sees(&path, "F-1 version 2 against F-1 version 1. They change at another rate");
+    for words in
+        ["Rate of change per month", "Level at time zero", "Each version by itself", "95 % confidence"]
+    {
+        assert!(seen.text().contains(words), "{words}: {}", seen.text());
+    }
+    assert_eq!(formulator.get(&format!("{path}?one=99")).status, 404);
+    let alone = formulator.sees(&format!("{page}?version=1"), "The data support");
+    assert!(alone.text().contains("made to F-1 version 2"), "what is left out is named: {}", alone.text());
+    formulator.sees("/evaluations/1/density/versions", "F-1 version 2 against F-1 version 1");
+}

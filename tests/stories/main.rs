@@ -38,6 +38,7 @@ mod own_work;
 mod packagings;
 mod people;
 mod protocols;
+mod racks;
 mod redispersions;
 mod requests;
 mod retains;

@@ -133,7 +133,7 @@ impl Answers {
             steps.push(format!("Intermediate: {}.", words(&INTERMEDIATE, &self.intermediate)));
         }
         if self.accelerated == "none" {
-            let little = if self.is_little_change { "little or no" } else { "some" };
+            let little = if self.is_little_change { "Little or no" } else { "Some" };
             steps.push(format!("{little} change and variability at both conditions, as answered."));
         }
         let yes = |is: bool| if is { "yes" } else { "no" };

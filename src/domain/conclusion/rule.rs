@@ -225,11 +225,8 @@ mod tests {
         let table: Vec<(&str, Facts)> = vec![
             ("Imported", Facts { is_imported: true, is_long_term: false, ..good() }),
             ("NotLongTerm", Facts { is_long_term: false, chosen: 0, ..good() }),
-            ("NoLotChosen", Facts { chosen: 0, development: vec!["D".to_string()], ..good() }),
-            (
-                "DevelopmentBarred",
-                Facts { development: vec!["D".to_string()], accelerated: none(), ..good() },
-            ),
+            ("DevelopmentBarred", Facts { development: vec!["D".to_string()], chosen: 0, ..good() }),
+            ("NoLotChosen", Facts { chosen: 0, accelerated: none(), ..good() }),
             ("LotWithoutReason", Facts { without_reason: vec![(7, "A".to_string())], ..good() }),
             (
                 "AcceleratedUnexplained",

@@ -12,6 +12,7 @@ pub mod record;
 pub mod series;
 pub mod table;
 pub mod trend;
+pub mod versions;
 
 use std::fmt;
 

@@ -35,6 +35,8 @@ pub struct Chart {
     pub has_fit: bool,
     /// Drawn at 420 × 230 instead of 720 × 320.
     pub is_small: bool,
+    /// Readings within one test, not pulls: no word of signatures or limits.
+    pub is_of_readings: bool,
     /// Several lots on one picture: points are not joined and single readings stand in the table only.
     pub is_group: bool,
     /// Computed curves: fitted lines, confidence limits, prediction bands.

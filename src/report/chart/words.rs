@@ -26,9 +26,10 @@ pub fn finding(chart: &Chart) -> String {
         text.push_str(&format!(", {span}"));
     }
     text.push('.');
-    if let (1, Some(last)) = (chart.series.len(), chart.valued().map(|(_, point)| point).last()) {
+    let is_alone = chart.series.len() == 1 && !chart.is_of_readings;
+    if let (true, Some(last)) = (is_alone, chart.valued().map(|(_, point)| point).last()) {
         text.push_str(&format!(" Last {}, {}.", last.shown, limits(chart)));
-    } else if count > 0 {
+    } else if count > 0 && !chart.is_of_readings {
         text.push_str(&format!(" {}.", capital(&limits(chart))));
     }
     for mark in [Mark::OutOfSpecification, Mark::OutOfTrend, Mark::SetAside] {
@@ -51,7 +52,8 @@ pub fn finding(chart: &Chart) -> String {
 }
 
 fn counted(chart: &Chart, count: usize) -> String {
-    let pulls = if count == 1 { "1 pull".to_string() } else { format!("{count} pulls") };
+    let things = if chart.is_of_readings { "reading" } else { "pull" };
+    let pulls = if count == 1 { format!("1 {things}") } else { format!("{count} {things}s") };
     match chart.series.len() {
         lots if chart.is_group && lots > 1 => format!("{pulls} of {lots} lots"),
         _ => pulls,
@@ -102,7 +104,10 @@ pub fn limits(chart: &Chart) -> String {
 pub fn key(chart: &Chart) -> String {
     let has = |test: &dyn Fn(&Point) -> bool| chart.valued().any(|(_, point)| test(point));
     let table: [(bool, &str); 9] = [
-        (has(&|point| point.mark == Mark::None && point.is_signed), "filled: signed"),
+        (
+            !chart.is_of_readings && has(&|point| point.mark == Mark::None && point.is_signed),
+            "filled: signed",
+        ),
         (has(&|point| point.mark == Mark::None && !point.is_signed), "open ring: not signed yet"),
         (!chart.is_group && has(&|point| !point.replicates.is_empty()), "small open: single readings"),
         (has(&|point| point.mark == Mark::OutOfSpecification), "triangle: out of specification"),

@@ -51,25 +51,19 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
     ));
     maker.versions(&mut sections, "protocols", "Protocols", "protocol_versions");
     maker.versions(&mut sections, "specifications", "Specifications", "specification_versions");
-    sections.push(Section {
-        strips: strips(file),
-        ..maker.tables(
-            "cylinders",
-            "Cylinders over the ages",
-            "Sediment, liquid above it and inversions to uniform, drawn to scale.",
-            &[],
-        )
-    });
-    sections.push(Section {
-        charts: of_arms(&file.number, &file.series, false),
-        ..maker.tables("charts", "Charts", "", &[])
-    });
+    maker.drawings(&mut sections);
     sections.push(maker.tables(
         "trend",
         "Trend",
         "Each result against a forecast made before it was measured. Forecasts stand here once their readings are \
          recorded.",
         &["trend_verdicts", "trend_forecasts", "trend_exclusions"],
+    ));
+    sections.push(maker.tables(
+        "conclusions",
+        "Conclusions on shelf life",
+        "What was proposed from this lot among others. A shelf life is assigned, never taken from a computation.",
+        &["evaluation_conclusions"],
     ));
     sections.push(maker.tables("containers", "Containers", "", &["containers", "container_events"]));
     sections.push(maker.tables(
@@ -142,6 +136,23 @@ impl Maker<'_> {
             grids: grids.collect(),
             ..Section::default()
         }
+    }
+
+    /// Cylinders and charts over the ages.
+    fn drawings(&self, sections: &mut Vec<Section>) {
+        sections.push(Section {
+            strips: strips(self.file),
+            ..self.tables(
+                "cylinders",
+                "Cylinders over the ages",
+                "Sediment, liquid above it and inversions to uniform, drawn to scale.",
+                &[],
+            )
+        });
+        sections.push(Section {
+            charts: of_arms(&self.file.number, &self.file.series, false),
+            ..self.tables("charts", "Charts", "", &[])
+        });
     }
 
     /// A table with its lines; columns that are empty in every line are left out.

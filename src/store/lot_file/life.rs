@@ -19,6 +19,23 @@ pub(super) const QUERIES: &[Query] = &[
         ),
     },
     Query {
+        name: "evaluation_conclusions",
+        title: "Conclusions on shelf life",
+        numeric: &["proposed_months"],
+        sql: of_family!(
+            "select c.id, l.number as lot, c.months as proposed_months,
+                 json_extract(c.content, '$.condition') as condition,
+                 json_extract(c.content, '$.binds') as binds, coalesce(m.left_out_because, 'chosen') as part,
+                 c.inputs_digest, a.full_name as concluded_by, a.at as concluded_at, c.act
+             from evaluation_conclusion_lot m
+             join evaluation_conclusion c on c.id = m.conclusion
+             join lot l on l.id = m.lot
+             join trail_act a on a.id = c.act
+             where m.lot in (select id from family)
+             order by c.id"
+        ),
+    },
+    Query {
         name: "lot_distributions",
         title: "Distribution",
         numeric: &[],

@@ -269,6 +269,8 @@ pub(super) const QUERIES: &[Query] = &[
                      join sample_test t on t.id = r.sample_test
                      join sample x on x.id = t.sample
                      where x.lot in (select id from family)))
+                 or (g.kind = 'evaluation_conclusion' and g.subject in (
+                     select conclusion from evaluation_conclusion_lot where lot in (select id from family)))
              order by g.id"
         ),
     },

@@ -153,7 +153,10 @@ fn tests(found: &Prepared) -> Table {
                 Cell::number(test.inputs.len().to_string()),
                 Cell::text(outcome),
                 Cell::number_or_missing(test.months.clone().map(four), "none"),
-                Cell::or_missing(test.lot.clone(), "all lots alike"),
+                Cell::or_missing(
+                    test.lot.clone(),
+                    if test.months.is_some() { "all lots alike" } else { "none" },
+                ),
             ]
         };
     Table::new("Every test of this condition, with the lots chosen", &heads, "No test has a result yet.")

@@ -85,7 +85,7 @@ fn tests(content: &Content, arm: i64) -> Table {
             Cell::text(test.model.replace('_', " ")),
             Cell::text(test.status.replace('_', " ")),
             Cell::number_or_missing(test.months.clone().map(four), "none"),
-            Cell::or_missing(test.lot.clone(), "all lots alike"),
+            Cell::or_missing(test.lot.clone(), if test.months.is_some() { "all lots alike" } else { "none" }),
         ]
     });
     Table::new("As computed when it was signed", &heads, "No test.").rows(rows)
@@ -102,7 +102,7 @@ fn lots(content: &Content) -> Table {
     let out = |lot: &LeftOutLot| {
         vec![
             Cell::link(format!("/lots/{}", lot.id), lot.number.clone()),
-            Cell::Missing(String::new()),
+            Cell::Missing("not of this conclusion".to_string()),
             Cell::text(format!("left out: {}", lot.why)),
         ]
     };

@@ -52,7 +52,12 @@ pub fn list(visit: &Visit) -> Outcome {
     let presentations = known
         .into_iter()
         .map(|(id, code, words, lots)| {
-            let lots = show::counted(lots as usize, "lot on study", "lots on study");
+            let mut words_of_lots = show::counted(lots as usize, "lot on study", "lots on study");
+            if lots > store::evaluation::NEWEST_LOTS {
+                let newest = store::evaluation::NEWEST_LOTS;
+                words_of_lots.push_str(&format!(", of which the newest {newest} take part here"));
+            }
+            let lots = words_of_lots;
             (format!("/evaluations?presentation={id}"), code, words, lots, Some(id) == chosen)
         })
         .collect();

@@ -18,18 +18,21 @@ pub struct Loaded {
     /// "SP-104 version 2"; says so where studies are bound to others.
     pub specification: String,
     pub other_specifications: Vec<String>,
+    /// More lots are on study than take part.
+    pub lots_on_study: i64,
 }
 
 /// The group of an arm with everything its evaluation rests on.
 pub fn group_of(visit: &Visit, arm: i64) -> Result<Loaded, Failure> {
-    let (group, records, bindings) = visit.read(|reader| {
+    let (group, records, bindings, lots_on_study) = visit.read(|reader| {
         let group = store::evaluation::group_of_arm(reader, arm)?;
         let records = store::evaluation::records(reader, &group.key)?;
         let bindings = store::evaluation::specifications(reader, group.key.presentation)?;
-        Ok((group, records, bindings))
+        let lots_on_study = store::evaluation::lots_on_study(reader, group.key.presentation)?;
+        Ok((group, records, bindings, lots_on_study))
     })?;
     let (limits, specification, other_specifications) = newest(bindings);
-    Ok(Loaded { group, records, limits, specification, other_specifications })
+    Ok(Loaded { group, records, limits, specification, other_specifications, lots_on_study })
 }
 
 /// The newest specification that binds a study, its words, and the words of the others.

@@ -4,6 +4,7 @@ use askama::Template;
 
 use super::super::field::{Entry, Field};
 use super::super::page::Shell;
+use super::super::pairs::encoded;
 use super::super::reply::{Outcome, page};
 use super::super::table::{Cell, Table};
 use super::super::visit::Visit;
@@ -12,9 +13,9 @@ use super::path;
 use crate::domain::evaluation::Replicates;
 use crate::domain::evaluation::group::{self, Computed, Wishes};
 use crate::domain::evaluation::record::{self, Record, SCALES, scale_code, usual_scale};
-use crate::domain::failure::Failure;
 use crate::report::chart::Drawn;
 use crate::report::evaluation::{self, About, Sheet, words};
+use crate::store;
 
 #[derive(Template)]
 #[template(path = "evaluation/one.html")]
@@ -32,17 +33,15 @@ struct OnePage {
     choices: Vec<Field>,
     here: String,
     component: String,
+    /// Where two formulation versions are compared, if two have results.
+    versions: Option<String>,
 }
 
 pub fn one(visit: &Visit) -> Outcome {
     visit.knows_query(&["component", "replicates", "scale", "version"])?;
     let loaded = load::group_of(visit, visit.id("arm")?)?;
     let wishes = load::wishes(visit)?;
-    let test = visit.param("test")?.to_string();
-    let component = visit.query.get("component").unwrap_or_default().to_string();
-    if !record::series_of(&loaded.records).contains(&(test.clone(), component.clone())) {
-        return Err(Failure::missing("test with results at this condition"));
-    }
+    let (test, component) = super::asked(visit, &loaded)?;
     let usual = Wishes { alpha: wishes.alpha, ..Wishes::default() };
     let all = group::compute_all(&loaded.group, &loaded.records, &loaded.limits, &usual);
     let computed =
@@ -77,6 +76,13 @@ fn shown(
     let mut notes = sheet.as_ref().map(|sheet| sheet.notes.clone()).unwrap_or_default();
     notes.extend(own_notes(loaded, computed, sheet.is_some()));
     let chosen = choices(loaded, computed, wishes);
+    let has_versions = chosen.iter().any(|field| field.name == "version");
+    let query = if computed.component.is_empty() {
+        String::new()
+    } else {
+        format!("?component={}", encoded(&computed.component))
+    };
+    let versions = format!("{}/versions{query}", path(group.arm, &computed.test, ""));
     OnePage {
         shell,
         lead: lead(computed, sheet.as_ref(), &loaded.records),
@@ -91,6 +97,7 @@ fn shown(
         choices: chosen,
         here: path(group.arm, &computed.test, ""),
         component: computed.component.clone(),
+        versions: has_versions.then_some(versions),
     }
 }
 
@@ -142,6 +149,10 @@ fn own_notes(loaded: &Loaded, computed: &Computed, is_computed: bool) -> Vec<Str
     }
     if computed.built.records().any(|one| one.point.is_imported) {
         notes.push("imported results, not observed here: no signed conclusion can rest on them".to_string());
+    }
+    if loaded.lots_on_study > store::evaluation::NEWEST_LOTS {
+        let (newest, all) = (store::evaluation::NEWEST_LOTS, loaded.lots_on_study);
+        notes.push(format!("only the newest {newest} of {all} lots on study take part"));
     }
     if !loaded.other_specifications.is_empty() {
         let others = loaded.other_specifications.join(", ");
@@ -217,8 +228,8 @@ fn tests(arm: i64, all: &[Computed], here: &Computed) -> Table {
         vec![
             Cell::Link { path, words, note: note.to_string() },
             Cell::text(short),
-            Cell::number_or_missing(exact, "none"),
-            Cell::or_missing(lot, "all lots alike"),
+            Cell::number_or_missing(exact.clone(), "none"),
+            Cell::or_missing(lot, if exact.is_some() { "all lots alike" } else { "none" }),
         ]
     };
     let heads = ["Test", "Shelf life", "Exactly, months#", "Lot that binds"];

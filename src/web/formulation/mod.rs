@@ -76,6 +76,7 @@ fn list(visit: &Visit) -> Outcome {
     Record::new(Shell::of(visit, "Formulations"), lead)
         .link_if(visit.may(Act::AddFormulation), "/formulations/new", "Add a formulation")
         .quiet_link_if(true, "/materials", "Materials")
+        .quiet_link_if(true, "/rack", "Rack")
         .table("", table)
         .show()
 }
