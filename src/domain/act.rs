@@ -98,6 +98,8 @@ acts! {
     StateCompleteness, "stated an item of a lot's record", Roles(&[ProductionOperator, LabManager, QaReviewer]);
     StateRecordElsewhere, "stated where a lot's record is kept", Roles(&[LabManager, QaReviewer]);
 
+    SignCertificate, "signed a certificate of analysis", Roles(&[QaReviewer]);
+
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);
     StartBatchRecord, "started a batch record", Roles(&[ProductionOperator, LabManager]);
     RecordStep, "recorded a step", Roles(&[ProductionOperator, LabManager]);

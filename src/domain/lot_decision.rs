@@ -119,18 +119,7 @@ pub fn may_release(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
         Some(Decision::Rejected) => return Err(DecisionRefusal::LotRejected(lot())),
         None => {}
     }
-    if facts.release.is_empty() {
-        return Err(DecisionRefusal::NoReleaseSample(lot()));
-    }
-    if !facts.tests_missing.is_empty() {
-        return Err(DecisionRefusal::ReleaseTestsMissing(facts.tests_missing.join(", ")));
-    }
-    if let Some(numbers) = samples_in(facts, &[SampleState::InWork, SampleState::WaitingForCheck]) {
-        return Err(DecisionRefusal::ReleaseNotComplete(numbers));
-    }
-    if let Some(numbers) = unsigned(facts) {
-        return Err(DecisionRefusal::ReleaseNotReviewed(numbers));
-    }
+    results_stand(facts)?;
     if !facts.not_conforming.is_empty() {
         return Err(DecisionRefusal::ReleaseNotConforming(facts.not_conforming.join("; ")));
     }
@@ -146,6 +135,25 @@ pub fn may_release(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
         return Err(DecisionRefusal::RecordIncomplete { lot: lot(), items: facts.missing_items.join("; ") });
     }
     facts.expires_on.map(|_| ()).ok_or(DecisionRefusal::ShelfLifeMissing)
+}
+
+/// Whether the release results are all in, checked, reviewed and signed: what a release and a certificate rest on.
+///
+/// Refuses in this order: no release sample, tests missing, not complete, not reviewed.
+pub fn results_stand(facts: &DecisionFacts) -> Result<(), DecisionRefusal> {
+    if facts.release.is_empty() {
+        return Err(DecisionRefusal::NoReleaseSample(facts.lot_number.clone()));
+    }
+    if !facts.tests_missing.is_empty() {
+        return Err(DecisionRefusal::ReleaseTestsMissing(facts.tests_missing.join(", ")));
+    }
+    if let Some(numbers) = samples_in(facts, &[SampleState::InWork, SampleState::WaitingForCheck]) {
+        return Err(DecisionRefusal::ReleaseNotComplete(numbers));
+    }
+    match unsigned(facts) {
+        Some(numbers) => Err(DecisionRefusal::ReleaseNotReviewed(numbers)),
+        None => Ok(()),
+    }
 }
 
 fn samples_in(facts: &DecisionFacts, states: &[SampleState]) -> Option<String> {

@@ -118,7 +118,7 @@ pub fn canonical_of_signature(reader: &Reader<'_>, signature: i64) -> Answer<Opt
         named_params! { ":signature": signature },
         from_row,
     )?;
-    let Some(found) = found else { return Ok(None) };
+    let Some(found) = found else { return super::certificate::canonical_of_signature(reader, signature) };
     let decision = if found.decision == "released" { "released" } else { "rejected" };
     let new = NewDecision {
         lot: found.lot,

@@ -294,6 +294,7 @@ fn links(visit: &Visit, id: i64, state: LotState) -> Vec<(String, &'static str)>
         links.push((format!("/studies/new?lot={id}"), "Start a study"));
     }
     links.push((format!("/lots/{id}/completeness"), "Completeness"));
+    links.push((format!("/lots/{id}/certificate"), "Certificate of analysis"));
     links.push((format!("/lots/{id}/packaging"), "Containers and labels"));
     if visit.may(Act::KeepRetain) {
         links.push((format!("/lots/{id}/retains/new"), "Record a retain"));

@@ -81,6 +81,7 @@ pub fn all() -> Vec<Route> {
         super::packaging::ROUTES,
         super::retain::ROUTES,
         super::completeness::ROUTES,
+        super::certificate::ROUTES,
         super::label::ROUTES,
         super::qualification::ROUTES,
         super::stop::ROUTES,

@@ -11,6 +11,7 @@ mod attachments;
 mod backups;
 mod batches;
 mod benches;
+mod certificates;
 mod checks;
 mod completeness;
 mod conflicts;
