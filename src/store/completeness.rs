@@ -4,10 +4,13 @@ use rusqlite::named_params;
 
 use super::door::Change;
 use super::{Answer, Reader};
+use crate::domain::batch::{Entry, EntryKind, standing, yield_of};
 use crate::domain::completeness::statement::{NewAnswer, NewElsewhere};
 use crate::domain::completeness::{
-    Answer as Statement, AnswerKind, Elsewhere, Evidence, Packed, Proof, Settled,
+    Answer as Statement, AnswerKind, Elsewhere, Evidence, ExecutedRecord, Packed, Proof, Settled,
 };
+use crate::domain::master::StepKind;
+use crate::domain::moment::{date_from_stored, date_shown};
 use crate::domain::packaging::LABEL;
 use crate::domain::review::SampleState;
 
@@ -15,7 +18,8 @@ use crate::domain::review::SampleState;
 /// counts as its own.
 pub fn evidence(reader: &Reader<'_>, lot: i64) -> Answer<Evidence> {
     let found = super::lot::get(reader, lot)?;
-    let lots: Vec<i64> = found.bulk_lot.into_iter().chain([lot]).collect();
+    let bulk_lot = found.bulk_lot;
+    let lots: Vec<i64> = bulk_lot.into_iter().chain([lot]).collect();
     let mut evidence = Evidence {
         lot_path: format!("/lots/{lot}"),
         is_decided: found.decision.is_some(),
@@ -39,7 +43,59 @@ pub fn evidence(reader: &Reader<'_>, lot: i64) -> Answer<Evidence> {
             evidence.material_lots.push(Proof::new(words, format!("/material-lots/{}", one.material_lot)));
         }
     }
+    evidence.record = match executed(reader, lot)? {
+        None => bulk_lot.map(|bulk| executed(reader, bulk)).transpose()?.flatten(),
+        own => own,
+    };
     Ok(evidence)
+}
+
+/// What the executed record of a lot holds, where it was carried out here.
+fn executed(reader: &Reader<'_>, lot: i64) -> Answer<Option<ExecutedRecord>> {
+    let Some(record) = super::batch::of_lot(reader, lot)? else { return Ok(None) };
+    let entries = super::batch::entry::of_record(reader, record.id)?;
+    let yields = super::batch::yields::of_record(reader, record.id)?;
+    let steps = record.content.steps();
+    let standing = standing(&entries);
+    let kind_of = |number: usize| steps.iter().find(|one| one.number == number).map(|one| one.step.kind);
+    let ended = |kind: StepKind| {
+        let done = |one: &&&Entry| one.kind == EntryKind::Ended && kind_of(one.step) == Some(kind);
+        standing.iter().filter(done).count()
+    };
+    let of_kind = |kind: EntryKind| standing.iter().filter(|one| one.kind == kind).count();
+    let phases: Vec<usize> = (0..record.content.master.phases.len())
+        .filter(|at| record.content.phase(*at).is_some_and(|phase| phase.theory.is_some()))
+        .collect();
+    let worked_out: Vec<_> = phases.iter().filter_map(|phase| yield_of(&yields, *phase)).collect();
+    let mut people: Vec<i64> = entries.iter().map(|one| one.account).collect();
+    people.sort_unstable();
+    people.dedup();
+    Ok(Some(ExecutedRecord {
+        path: format!("/batches/{}/record", record.id),
+        is_closed: record.is_closed,
+        from_to: from_to(&entries),
+        weighings: of_kind(EntryKind::Weighing),
+        values: of_kind(EntryKind::Value),
+        clearances: ended(StepKind::LineClearance),
+        samplings: ended(StepKind::Sample),
+        examinations: 0,
+        phases: phases.len(),
+        yields: worked_out.len(),
+        checked_yields: worked_out.iter().filter(|one| one.checked.is_some()).count(),
+        people: people.len(),
+        number: record.number,
+    }))
+}
+
+/// The days of the first and the last entry.
+fn from_to(entries: &[Entry]) -> String {
+    let on = |one: &Entry| one.instant().get(..10).and_then(date_from_stored).map(date_shown);
+    let (first, last) = (entries.first().and_then(on), entries.last().and_then(on));
+    match (first, last) {
+        (Some(first), Some(last)) if first != last => format!("{first} to {last}"),
+        (Some(first), _) => first,
+        _ => String::new(),
+    }
 }
 
 /// The reference to a record kept elsewhere that counts.

@@ -17,8 +17,8 @@ pub struct Correction {
     pub at: String,
 }
 
-/// The corrections that a release of the lot rests on, oldest first: readings of its samples outside the studies, and
-/// counts of its containers and labels.
+/// The corrections that a release of the lot rests on, oldest first: readings of its samples outside the studies,
+/// counts of its containers and labels, entries of its record.
 pub fn corrections(reader: &Reader<'_>, lot: i64) -> Answer<Vec<Correction>> {
     let mut found = reader.all(
         "select s.number || ', ' || t.title || ', ' || r.field, o.typed, r.typed, coalesce(a.reason, ''), a.full_name,
@@ -40,6 +40,18 @@ pub fn corrections(reader: &Reader<'_>, lot: i64) -> Answer<Vec<Correction>> {
          join packaging_entry o on o.id = e.supersedes
          join trail_act a on a.id = e.act
          where i.lot = :lot
+         order by e.id",
+        named_params! { ":lot": lot },
+        from_row,
+    )?);
+    found.extend(reader.all(
+        "select b.number || ', step ' || e.step || ', ' || e.kind || case e.name when '' then '' else ' ' || e.name end,
+             o.typed || ' ' || o.unit, e.typed || ' ' || e.unit, coalesce(a.reason, ''), a.full_name, a.at
+         from batch_record b
+         join step_entry e on e.record = b.id
+         join step_entry o on o.id = e.supersedes
+         join trail_act a on a.id = e.act
+         where b.lot in (:lot, (select bulk_lot from lot where id = :lot))
          order by e.id",
         named_params! { ":lot": lot },
         from_row,

@@ -4,16 +4,19 @@ use super::bench::Twist;
 use super::player::{Player, Scene, working_day};
 use crate::acts;
 use crate::acts::signature::{Rejection, Release};
-use crate::domain::completeness::statement::NewElsewhere;
+use crate::domain::completeness::statement::{NewAnswer, NewElsewhere};
+use crate::domain::completeness::{AnswerKind, judge};
 use crate::domain::failure::Failure;
 use crate::domain::lot::NewDistribution;
 use crate::domain::lot_decision::Looked;
 use crate::domain::moment::plus_days;
+use crate::domain::packaging::{CountKind, LABEL, NewCount, NewPackagingItem};
 use crate::domain::protocol::ProtocolContent;
 use crate::domain::sample::{NewSample, Purpose};
 use crate::domain::study::NewStudy;
 use crate::domain::version::Versioned;
 use crate::store;
+use rust_decimal::Decimal;
 
 impl Player<'_> {
     pub fn make_lot(&mut self, at: usize) -> Result<(), Failure> {
@@ -85,7 +88,7 @@ impl Player<'_> {
             return acts::lot_decision::reject(self.db, &actor, lot, &signed.stating(why));
         }
         let signed = self.sign::<Release>(&actor)?;
-        self.refer_to_record(lot, &row.number)?;
+        self.complete_record(lot, &row.number)?;
         let newest_act = self.db.read(|reader| store::lot_review::newest_act(reader, lot))?;
         let looked = Looked { up_to_act: newest_act, is_reviewed: true };
         acts::lot_decision::release(self.db, &actor, lot, looked, &signed)?;
@@ -99,17 +102,52 @@ impl Player<'_> {
         Ok(())
     }
 
+    /// What the rows of the making do not show: labels counted and checked, the specimen and the examination stated.
     /// A lot that was not carried out here says where its executed record is kept.
-    fn refer_to_record(&mut self, lot: i64, number: &str) -> Result<(), Failure> {
-        if self.db.read(|reader| store::completeness::evidence(reader, lot))?.record.is_some() {
-            return Ok(());
+    fn complete_record(&mut self, lot: i64, number: &str) -> Result<(), Failure> {
+        let manager = self.person("maren.oddy")?;
+        let evidence = self.db.read(|reader| store::completeness::evidence(reader, lot))?;
+        if evidence.record.is_none() {
+            let new = NewElsewhere {
+                reference: format!("BR-{number}"),
+                place: "paper archive, room 2".to_string(),
+                why: "carried out on paper before this program was in use".to_string(),
+            };
+            return acts::completeness::refer(self.db, &manager, lot, &new);
         }
-        let new = NewElsewhere {
-            reference: format!("BR-{number}"),
-            place: "paper archive, room 2".to_string(),
-            why: "carried out on paper before this program was in use".to_string(),
+        self.count_labels(lot)?;
+        let stated = [
+            (6, "Filling room 2 inspected before and after use, line book page 41"),
+            (8, "Specimen on page 3 of the packing sheet, kept in the label folder"),
+            (13, "20 packed bottles examined at the end of filling, no fault, packing sheet page 5"),
+        ];
+        let evidence = self.db.read(|reader| store::completeness::evidence(reader, lot))?;
+        let open: Vec<u8> =
+            judge(&evidence).iter().filter(|item| item.is_missing()).map(|item| item.number).collect();
+        for (item, text) in stated.into_iter().filter(|(item, _)| open.contains(item)) {
+            let new = NewAnswer { item, kind: AnswerKind::Present, text: text.to_string() };
+            acts::completeness::answer(self.db, &manager, lot, &new)?;
+        }
+        Ok(())
+    }
+
+    fn count_labels(&mut self, lot: i64) -> Result<(), Failure> {
+        let (operator, manager) = (self.person("bea.skelton")?, self.person("maren.oddy")?);
+        let new = NewPackagingItem {
+            kind: LABEL.to_string(),
+            name: "label 60 × 40, version 3".to_string(),
+            material_lot: None,
+            least_percent: Decimal::from(98),
+            most_percent: Decimal::ONE_HUNDRED,
         };
-        acts::completeness::refer(self.db, &self.person("maren.oddy")?, lot, &new)
+        let item = acts::packaging::add(self.db, &operator, lot, &new)?;
+        for (kind, count) in [(CountKind::Issued, 2600), (CountKind::Used, 2480), (CountKind::Destroyed, 112)]
+        {
+            let new = NewCount { kind, count, supersedes: None, why: String::new() };
+            acts::packaging::count(self.db, &operator, item, &new)?;
+        }
+        acts::packaging::check(self.db, &manager, item)?;
+        Ok(())
     }
 
     pub fn start_study(&mut self, at: usize) -> Result<(), Failure> {
