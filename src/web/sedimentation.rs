@@ -173,7 +173,7 @@ fn planned_cell(
     let there = in_slot(&loaded.readings, key);
     let early = (due.utc - visit.at.utc).num_seconds();
     if there.is_none() && is_too_early(minute, early) {
-        return Cell::Words(format!("due {}", due.shown()));
+        return Cell::Words("not due yet".to_string());
     }
     match loaded.closed(slot) {
         Some(why) => Cell::Words(why),
