@@ -78,6 +78,7 @@ fn first_content(reader: &Reader<'_>, new: &NewProtocol) -> Result<ProtocolConte
         follow_through_containers: 0,
         why_no_intermediate: None,
         worst_orientation: None,
+        trend_promise_percent: None,
     })
 }
 

@@ -5,7 +5,6 @@ use crate::domain::act::Act;
 use crate::domain::actor::Actor;
 use crate::domain::failure::Failure;
 use crate::domain::judgement::Judged;
-use crate::domain::method::RoundTo;
 use crate::domain::reason::Reason;
 use crate::domain::specification::{Limit, LimitSet};
 use crate::domain::subject::{Kind, Subject};
@@ -13,7 +12,7 @@ use crate::domain::trend::declare::{NewEquivalence, may_declare, may_leave_out};
 use crate::domain::trend::history::{Alike, Candidate, History, Scale, Wanted, choose};
 use crate::domain::trend::judge::{Case, Life, Seen, judge};
 use crate::domain::trend::sealed::Sealing;
-use crate::domain::trend::{NewVerdict, TrendLevels};
+use crate::domain::trend::{NewVerdict, TrendLevels, reported_decimals};
 use crate::store;
 use crate::store::bench::{BenchSample, BenchTest};
 use crate::store::door::{Change, Db};
@@ -26,7 +25,8 @@ pub(in crate::acts) struct Judge {
     place: Place,
     candidates: Vec<Candidate>,
     alike: Alike,
-    sealed: Vec<Sealed>,
+    /// Each with the history it rested on.
+    sealed: Vec<(Sealed, Option<History>)>,
     is_interval: bool,
 }
 
@@ -47,7 +47,7 @@ impl Judge {
         Ok(Some(Judge {
             candidates: store::trend::candidates(change, &place, &test.test, taken_on)?,
             alike: store::trend::alike::pairs(change)?,
-            sealed: store::trend::forecast::of_test(change, test.id)?,
+            sealed: sealed(change, test.id)?,
             is_interval: sample.readings_of(test.id).iter().any(|reading| reading.inspected_every.is_some()),
             place,
         }))
@@ -70,16 +70,16 @@ impl Judge {
             days: (taken_on - place.started_on).num_days(),
             seen: Seen::of(result.value, result.qualifier, self.is_interval),
             levels: TrendLevels::of_promise(place.promise_percent, place.planned),
-            decimals: decimals(test),
+            decimals: reported_decimals(&test.content),
             unit: &result.unit,
             life: place.is_labelled.then(|| life(place, sample, test, &result.component)),
         };
         let mut verdicts = judge(&case);
-        let sealed = self.sealed.iter().find(|one| one.component == result.component);
+        let sealed = self.sealed.iter().find(|(one, _)| one.component == result.component);
         if let Some(first) = verdicts.first_mut() {
             say_how_sealed(first, sealed, &history);
         }
-        let (forecast, days) = (sealed.map(|one| one.id), case.days);
+        let (forecast, days) = (sealed.map(|(one, _)| one.id), case.days);
         Judgement { history, days, verdicts, forecast }
     }
 }
@@ -98,22 +98,26 @@ impl Judgement {
     }
 }
 
-/// Whether the forecast was sealed before the reading, and what has come to the history since.
-fn say_how_sealed(verdict: &mut NewVerdict, sealed: Option<&Sealed>, history: &History) {
-    let sealing =
-        sealed.map_or(Sealing::NotBeforeReading, |one| Sealing::BeforeReading { days_late: one.days_late });
-    verdict.detail["sealed"] = sealing.words().into();
-    if let Some(one) = sealed {
-        verdict.detail["sealed_digest"] = one.digest.clone().into();
-        verdict.detail["history_is_as_sealed"] = (one.forecast.history == history.digest()).into();
+/// The sealed forecasts of a test with the histories they rested on.
+fn sealed(change: &Change<'_>, test: i64) -> Result<Vec<(Sealed, Option<History>)>, Failure> {
+    let mut found = Vec::new();
+    for one in store::trend::forecast::of_test(change, test)? {
+        let history = one.history.map(|row| store::trend::history(change, row)).transpose()?.flatten();
+        found.push((one, history));
     }
+    Ok(found)
 }
 
-fn decimals(test: &BenchTest) -> u32 {
-    match test.content.rounding.to {
-        RoundTo::Decimals(decimals) => decimals,
-        RoundTo::Nearest(_) => 0,
-        RoundTo::SignificantFigures(_) => test.content.reading_decimals,
+/// Whether the forecast was sealed before the reading, and what has come to the history or left it since.
+fn say_how_sealed(verdict: &mut NewVerdict, sealed: Option<&(Sealed, Option<History>)>, history: &History) {
+    let sealing = sealed
+        .map_or(Sealing::NotBeforeReading, |(one, _)| Sealing::BeforeReading { days_late: one.days_late });
+    verdict.detail["sealed"] = sealing.words().into();
+    let Some((one, before)) = sealed else { return };
+    verdict.detail["sealed_digest"] = one.digest.clone().into();
+    if let Some(before) = before {
+        verdict.detail["came_after_sealing"] = history.beyond(before).into();
+        verdict.detail["gone_since_sealing"] = before.beyond(history).into();
     }
 }
 

@@ -47,7 +47,8 @@ pub fn of_lot(reader: &Reader<'_>, lot: i64) -> Answer<LotFacts> {
 
 const RESULTS: &str =
     "select a.id, a.condition, a.orientation, a.is_labelled_condition, c.use = 'accelerated', s.id,
-        y.started_on, e.happened_on, t.test, m.kind, t.method_version, r.value, r.qualifier, r.detail
+        y.started_on, e.happened_on, t.test, m.kind, t.method_version, r.value, r.qualifier, r.detail,
+        c.name || case a.orientation when 'not stated' then '' else ' ' || a.orientation end
     from study y
     join study_arm a on a.study = y.id
     join condition c on c.id = a.condition
@@ -83,6 +84,7 @@ fn result_from_row(row: &Row<'_>) -> rusqlite::Result<ResultFact> {
     Ok(ResultFact {
         arm: row.get(0)?,
         condition: row.get(1)?,
+        place: row.get(14)?,
         orientation: row.get(2)?,
         is_labelled: row.get(3)?,
         is_accelerated: row.get(4)?,

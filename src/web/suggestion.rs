@@ -12,7 +12,7 @@ use crate::domain::act::Act;
 use crate::domain::failure::Failure;
 use crate::domain::role::Role;
 use crate::domain::suggestion::threshold::{ALL, settings};
-use crate::domain::suggestion::{Suggestion, SuggestionLevel, of_lot};
+use crate::domain::suggestion::{Suggestion, SuggestionLevel, of_arm};
 use crate::store::{self, Answer, Reader};
 
 pub const ROUTES: &[Route] =
@@ -23,6 +23,7 @@ pub const ROUTES: &[Route] =
 pub struct Line {
     rule: &'static str,
     name: &'static str,
+    place: String,
     level: &'static str,
     suggests: &'static str,
     evidence: String,
@@ -36,6 +37,8 @@ pub struct Line {
 pub struct Suggestions {
     speaking: Vec<Line>,
     silent: Vec<Line>,
+    /// The arm whose silent rules are listed.
+    first: String,
 }
 
 impl askama::filters::HtmlSafe for Suggestions {}
@@ -48,19 +51,34 @@ impl Suggestions {
             return Ok(None);
         }
         let stored = store::setting::of_prefix(reader, "suggest.")?;
-        let found = of_lot(&facts, &settings(&stored));
-        let (speaking, silent): (Vec<_>, Vec<_>) =
-            found.iter().partition(|one| one.level > SuggestionLevel::Quiet);
-        let lines = |found: Vec<&Suggestion>| found.into_iter().map(line).collect();
-        Ok(Some(Suggestions { speaking: lines(speaking), silent: lines(silent) }))
+        let settings = settings(&stored);
+        let mut shown = Suggestions { speaking: Vec::new(), silent: Vec::new(), first: String::new() };
+        let arms = facts.arms();
+        for (at, (arm, place)) in arms.iter().enumerate() {
+            let place_words = if arms.len() > 1 { place.as_str() } else { "" };
+            for one in of_arm(&facts, *arm, &settings) {
+                match (one.level > SuggestionLevel::Quiet, at) {
+                    // Orientations are compared once, not by each of them.
+                    (true, _) if at == 0 || one.rule != "R13" => shown.speaking.push(line(&one, place_words)),
+                    (false, 0) => shown.silent.push(line(&one, place_words)),
+                    _ => {}
+                }
+            }
+            if at == 0 {
+                shown.first = place.clone();
+            }
+        }
+        shown.speaking.sort_by_key(|line| !line.is_raised);
+        Ok(Some(shown))
     }
 }
 
-fn line(one: &Suggestion) -> Line {
+fn line(one: &Suggestion, place: &str) -> Line {
     let evidence = one.evidence.join("; ");
     Line {
         rule: one.rule,
         name: one.name,
+        place: place.to_string(),
         level: one.level.words(),
         suggests: one.suggests,
         evidence: if evidence.is_empty() { evidence } else { format!("{evidence}.") },

@@ -422,7 +422,7 @@ fn what_the_tests_suggest_together_stands_with_its_evidence_and_what_is_missing(
     for path in &pages {
         let page = lab.reviewer().sees(path, "What the tests suggest together").text();
         for words in [
-            "R14 Point passes, bound does not (note): suggests that the claimed expiry is not yet proven",
+            "R14 Point passes, bound does not : suggests that the claimed expiry is not yet proven",
             "last result 96.7 at 9.0 months",
             "sedimentation ratio at two ages; shake count missing",
         ] {
@@ -442,4 +442,23 @@ fn what_the_tests_suggest_together_stands_with_its_evidence_and_what_is_missing(
     admin.does(settings, settings, &[("suggest.r10-first", "100"), ("reason", "stricter for this site")]);
     let page = lab.reviewer().get(&pages[0]).text();
     assert!(page.contains("suggests a fault of sampling or mixing"), "{page}");
+}
+
+#[test]
+fn a_promise_for_the_lot_is_spread_over_its_planned_pulls() {
+    let lab = Lab::new();
+    let ageing = Ageing::promising(&lab, "5");
+    let lot = new_lot(&ageing);
+    let sample = ageing.reads(&lot, 6, "98.0");
+    let page =
+        lab.analyst().sees(&format!("/tests/{}", ageing.bench.test(sample, "assay")), "the 99.36 % forecast");
+    assert!(
+        page.text().contains("Promised for the lot: 5 % false actions over 8 planned pulls."),
+        "{}",
+        page.text()
+    );
+    let line = lab.reviewer().sees("/trend", "results judged at their own levels").text();
+    assert!(line.contains("false actions expected, 1 found"), "{line}");
+    // 0.639 % of eight judged results is 0.1, of which up to one is ordinary.
+    assert!(line.contains("up to 1 is ordinary (99 %)"), "{line}");
 }

@@ -168,6 +168,12 @@ impl<'a> Bench<'a> {
 
     /// A person records the readings of a test, keeps what is questioned, and completes it.
     pub fn completes(&self, user_name: &str, sample: i64, code: &str, values: &[&str]) {
+        self.records(user_name, sample, code, values);
+        self.completes_again(user_name, sample, code);
+    }
+
+    /// A person records the readings of a test and keeps what is questioned.
+    pub fn records(&self, user_name: &str, sample: i64, code: &str, values: &[&str]) {
         let (db, actor) = (&self.lab.app.db, self.lab.actor(user_name));
         let test = self.test(sample, code);
         for (place, value) in values.iter().enumerate() {
@@ -176,11 +182,10 @@ impl<'a> Bench<'a> {
             let how = self.how(&found, test);
             acts::reading::record(db, &actor, &how, &[entry], &Reason::none()).unwrap();
         }
-        self.completes_again(user_name, sample, code);
+        self.keeps(user_name, sample, code);
     }
 
-    /// A person completes a test from the readings that stand.
-    pub fn completes_again(&self, user_name: &str, sample: i64, code: &str) {
+    fn keeps(&self, user_name: &str, sample: i64, code: &str) {
         let (db, actor) = (&self.lab.app.db, self.lab.actor(user_name));
         let test = self.test(sample, code);
         let readings = self.sample(sample).readings_of(test);
@@ -189,6 +194,13 @@ impl<'a> Bench<'a> {
                 acts::reading::keep(db, &actor, test, reading.id).unwrap();
             }
         }
+    }
+
+    /// A person completes a test from the readings that stand.
+    pub fn completes_again(&self, user_name: &str, sample: i64, code: &str) {
+        self.keeps(user_name, sample, code);
+        let (db, actor) = (&self.lab.app.db, self.lab.actor(user_name));
+        let test = self.test(sample, code);
         acts::result::complete(db, &actor, test).unwrap();
     }
 

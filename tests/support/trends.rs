@@ -44,12 +44,12 @@ const SCATTER: [[i64; 8]; 6] = [
 
 impl<'a> Ageing<'a> {
     pub fn new(lab: &'a Lab) -> Ageing<'a> {
-        Ageing::over(Bench::new(lab))
+        Ageing::promising(lab, "")
     }
 
-    /// The same over a bench that exists.
-    pub fn over(bench: Bench<'a>) -> Ageing<'a> {
-        let lab = bench.lab;
+    /// The same with a promise per lot in the protocol, in percent; empty is none.
+    pub fn promising(lab: &'a Lab, promise: &str) -> Ageing<'a> {
+        let bench = Bench::new(lab);
         bench.assigns_shelf_life();
         world::chambers(lab);
         let specification = lab
@@ -66,6 +66,10 @@ impl<'a> Ageing<'a> {
             specification_version: specification.id,
         };
         let protocol_version = acts::protocol::add(&lab.app.db, &lab.actor("maren.oddy"), &new).unwrap();
+        if !promise.is_empty() {
+            let page = format!("/protocol-versions/{protocol_version}/arms");
+            lab.manager().does(&page, &page, &[("trend_promise", promise)]);
+        }
         world::approve(lab, Versioned::Protocol, protocol_version, "maren.oddy", "ada.whitlock");
         Ageing { bench, protocol_version }
     }

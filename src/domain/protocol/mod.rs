@@ -5,6 +5,7 @@ pub mod generator;
 pub mod preset;
 pub mod rules;
 
+use rust_decimal::Decimal;
 use serde::{Deserialize, Serialize};
 
 use super::age::Age;
@@ -29,6 +30,10 @@ pub struct ProtocolContent {
     pub why_no_intermediate: Option<String>,
     /// For a routine study in one orientation: which was the worst and why (requirement C11).
     pub worst_orientation: Option<String>,
+    /// Percent of good lots that may ever see a false trend action over the planned pulls of an arm; versions that
+    /// fix none are judged at 1 % a pull.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub trend_promise_percent: Option<Decimal>,
 }
 
 /// Left out of the document, so that versions from before the field stay the same text.

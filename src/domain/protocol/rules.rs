@@ -284,6 +284,7 @@ mod tests {
             follow_through_containers: 0,
             why_no_intermediate: None,
             worst_orientation: None,
+            trend_promise_percent: None,
         }
     }
 

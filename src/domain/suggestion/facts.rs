@@ -16,6 +16,8 @@ use crate::science::warning_rules::facts::{
 pub struct ResultFact {
     pub arm: i64,
     pub condition: i64,
+    /// "25 °C/60 % RH inverted".
+    pub place: String,
     pub orientation: String,
     pub is_labelled: bool,
     pub is_accelerated: bool,
@@ -53,29 +55,38 @@ pub struct LotFacts {
 }
 
 impl LotFacts {
-    /// The lot as the rules see it.
-    pub fn lot(&self) -> Lot {
-        let main = self.main_arm();
+    /// The arms that the rules are asked about: those of the labelled condition, upright first, else the first there
+    /// is; each with its words.
+    pub fn arms(&self) -> Vec<(i64, String)> {
+        let rank = |one: &&ResultFact| (!one.is_labelled, one.orientation != "upright", one.arm);
+        let mut found: Vec<&ResultFact> = self.results.iter().collect();
+        found.sort_by_key(rank);
+        let mut arms: Vec<(i64, String)> = Vec::new();
+        for one in found {
+            let is_known = arms.iter().any(|(arm, _)| *arm == one.arm);
+            if !is_known && (one.is_labelled || arms.is_empty()) {
+                arms.push((one.arm, one.place.clone()));
+            }
+        }
+        arms
+    }
+
+    /// The lot as the rules see it by one arm.
+    pub fn lot(&self, arm: i64) -> Lot {
         let warm = self.results.iter().find(|one| one.is_accelerated).map(|one| one.arm);
         Lot {
-            pulls: main.map(|arm| self.pulls(arm)).unwrap_or_default(),
+            pulls: self.pulls(arm),
             warm: warm.map(|arm| self.pulls(arm)).unwrap_or_default(),
-            first_day: self.first_day(main),
+            first_day: self.first_day(arm),
             limits: self.limits(),
             repeatability: self.repeatability(),
             expiry_days: self.expiry_days.map(|days| days as f64),
             arms: self.pairs(),
-            attributes: main.map(|arm| self.attributes(arm)).unwrap_or_default(),
-            doubts: self.doubts(),
+            attributes: self.attributes(arm),
+            doubts: self.doubts(arm),
             falling_boundary: self.reads_falling_boundary(),
             ..Lot::default()
         }
-    }
-
-    /// The labelled condition upright, else any labelled arm, else the first.
-    fn main_arm(&self) -> Option<i64> {
-        let rank = |one: &&ResultFact| (!one.is_labelled, one.orientation != "upright");
-        self.results.iter().min_by_key(rank).map(|one| one.arm)
     }
 
     fn of_arm(&self, arm: i64) -> impl Iterator<Item = &ResultFact> {
@@ -148,8 +159,8 @@ impl LotFacts {
     }
 
     /// The first cylinder of the arm after a day.
-    fn first_day(&self, main: Option<i64>) -> FirstDay {
-        let first = main.and_then(|arm| self.of_arm(arm).find(|one| one.kind == TestKind::Sedimentation));
+    fn first_day(&self, arm: i64) -> FirstDay {
+        let first = self.of_arm(arm).find(|one| one.kind == TestKind::Sedimentation);
         let Some(first) = first else { return FirstDay::default() };
         let clarity =
             self.readings.iter().find(|one| one.sample == first.sample && one.field == "clarity@1440");
@@ -229,8 +240,13 @@ impl LotFacts {
         attributes.into_values().collect()
     }
 
-    fn doubts(&self) -> Vec<Doubt> {
-        let torque = self.readings.iter().filter(|one| one.field == "torque_percent");
+    fn doubts(&self, arm: i64) -> Vec<Doubt> {
+        let is_here = |sample: i64| self.of_arm(arm).any(|one| one.sample == sample);
+        let torque = self
+            .readings
+            .iter()
+            .filter(|one| one.field == "torque_percent")
+            .filter(|one| is_here(one.sample));
         torque.filter_map(|one| one.value.and_then(|value| value.to_f64())).map(Doubt::Torque).collect()
     }
 

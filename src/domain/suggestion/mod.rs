@@ -36,18 +36,18 @@ pub enum SuggestionLevel {
 impl SuggestionLevel {
     pub fn words(self) -> &'static str {
         match self {
-            SuggestionLevel::NotEvaluable => "not evaluable",
-            SuggestionLevel::Quiet => "nothing found",
-            SuggestionLevel::Note => "note",
-            SuggestionLevel::Watch => "watch",
-            SuggestionLevel::Fail => "a limit or the label is missed",
+            SuggestionLevel::NotEvaluable => "Not evaluable",
+            SuggestionLevel::Quiet => "Nothing found",
+            SuggestionLevel::Note => "Note",
+            SuggestionLevel::Watch => "Watch",
+            SuggestionLevel::Fail => "Limit or label missed",
         }
     }
 }
 
-/// All rules on a lot, R1 to R15.
-pub fn of_lot(facts: &LotFacts, settings: &Settings) -> Vec<Suggestion> {
-    warning_rules::all(&facts.lot(), settings).into_iter().map(suggestion).collect()
+/// All rules on one arm of a lot, R1 to R15.
+pub fn of_arm(facts: &LotFacts, arm: i64, settings: &Settings) -> Vec<Suggestion> {
+    warning_rules::all(&facts.lot(arm), settings).into_iter().map(suggestion).collect()
 }
 
 fn suggestion(finding: Finding) -> Suggestion {
@@ -103,6 +103,7 @@ mod tests {
         ResultFact {
             arm: 1,
             condition: 1,
+            place: "25 °C/60 % RH upright".to_string(),
             orientation: "upright".to_string(),
             is_labelled: true,
             is_accelerated: false,
@@ -138,7 +139,7 @@ mod tests {
 
     #[test]
     fn a_packing_bed_suggests_caking_with_its_evidence() {
-        let found = of_lot(&packing(true), &Settings::default());
+        let found = of_arm(&packing(true), 1, &Settings::default());
         let caking = of(&found, "R1");
         assert_eq!((caking.level, caking.name), (SuggestionLevel::Watch, "Early caking"));
         assert!(caking.suggests.starts_with("suggests"));
@@ -149,7 +150,7 @@ mod tests {
 
     #[test]
     fn f_alone_never_suggests_caking_and_what_is_missing_is_named() {
-        let found = of_lot(&packing(false), &Settings::default());
+        let found = of_arm(&packing(false), 1, &Settings::default());
         assert_eq!(of(&found, "R1").level, SuggestionLevel::NotEvaluable);
         assert_eq!(of(&found, "R1").missing, ["shake count missing"]);
         assert_eq!(found.len(), 15);
@@ -170,7 +171,7 @@ mod tests {
         inverted.arm = 2;
         inverted.detail = r#"{"values":[{"of":"3","value":"0.50"},{"of":"4","value":"0.51"}]}"#.to_string();
         facts.results.push(inverted);
-        let found = of_lot(&facts, &Settings::default());
+        let found = of_arm(&facts, 1, &Settings::default());
         assert_eq!(of(&found, "R1").level, SuggestionLevel::Fail);
         assert_eq!(of(&found, "R13").level, SuggestionLevel::Watch);
     }

@@ -383,3 +383,142 @@ fn letter(rule: ContextRule) -> &'static str {
 pub fn is_outside(band: &Band, value: Decimal) -> bool {
     value.to_f64().is_some_and(|value| value < band.lower || value > band.upper)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::domain::trend::history::{Entry, HistoryLot};
+
+    /// Six lots of six pulls, falling by 0.1 a month with a small fixed scatter.
+    fn history() -> History {
+        let entry = |lot: i64, at: i64| Entry {
+            result: lot * 10 + at,
+            days: at * 91,
+            value: Decimal::new(1000 - 3 * at + (lot * 7 + at * at * 3) % 5 - 2, 1),
+        };
+        let lot = |lot: i64| HistoryLot {
+            lot,
+            number: format!("L{lot}"),
+            entries: (0..6).map(|at| entry(lot, at)).collect(),
+        };
+        History {
+            lots: (1..=6).map(lot).collect(),
+            own: (0..3).map(|at| entry(9, at)).collect(),
+            ..History::default()
+        }
+    }
+
+    fn case<'a>(history: &'a History, seen: Seen) -> Case<'a> {
+        Case {
+            history,
+            scale: Scale::AsMeasured,
+            days: 273,
+            seen,
+            levels: TrendLevels::of_promise(None, 0),
+            decimals: 1,
+            unit: "%",
+            life: None,
+        }
+    }
+
+    fn exactly(text: &str) -> Seen {
+        Seen::Exactly(text.parse().unwrap())
+    }
+
+    #[test]
+    fn what_has_no_number_is_not_evaluable_and_says_why() {
+        let history = history();
+        let bounds = History { has_bounds: true, ..history.clone() };
+        let table = [
+            (&history, Seen::Nothing, "needs a reportable value"),
+            (&history, Seen::Words, "needs numbers: grades have an order but no distance"),
+            (&history, Seen::Interval, "needs counts known exactly"),
+            (&bounds, exactly("99.0"), "needs values known exactly: some of the history"),
+        ];
+        for (history, seen, words) in table {
+            let verdicts = judge(&case(history, seen));
+            assert_eq!(verdicts.len(), 1, "{words}");
+            assert_eq!(verdicts[0].verdict, TrendVerdict::NotEvaluable);
+            assert!(verdicts[0].needs.as_ref().unwrap().starts_with(words), "{:?}", verdicts[0].needs);
+            assert_eq!(verdicts[0].flag.as_ref().unwrap().level, FlagLevel::Context);
+        }
+    }
+
+    /// A value known only to lie above a bound stands out where its bound does, and is not judged elsewhere.
+    #[test]
+    fn a_bound_stands_out_or_is_not_judged() {
+        let history = history();
+        let of = |seen: Seen| judge(&case(&history, seen)).remove(0);
+        assert_eq!(of(Seen::Above(Decimal::from(120))).verdict, TrendVerdict::Action);
+        assert_eq!(of(Seen::Below(Decimal::from(80))).verdict, TrendVerdict::Action);
+        let inside = of(Seen::Above(Decimal::from(98)));
+        assert_eq!(inside.verdict, TrendVerdict::NotEvaluable);
+        assert!(inside.needs.unwrap().contains("values known exactly"));
+    }
+
+    #[test]
+    fn alert_is_a_mark_action_an_exception_and_in_trend_no_flag() {
+        let history = history();
+        let of = |value: &str| {
+            let found = judge(&case(&history, exactly(value))).remove(0);
+            (found.verdict, found.flag.map(|flag| flag.level))
+        };
+        let band = judge(&case(&history, exactly("99.0")))[0].band.unwrap();
+        let alert = format!("{:.3}", (band.upper + band.action_upper) / 2.0);
+        assert_eq!(of("99.1"), (TrendVerdict::InTrend, None));
+        assert_eq!(of(&alert), (TrendVerdict::Alert, Some(FlagLevel::Mark)));
+        assert_eq!(of("105"), (TrendVerdict::Action, Some(FlagLevel::Exception)));
+    }
+
+    /// Counts are judged on their logarithm: doubling means the same everywhere, so the unit does not matter.
+    #[test]
+    fn counts_are_judged_on_the_logarithm_and_zero_is_not() {
+        let mut counts = history();
+        let count = |entry: &mut Entry| entry.value = Decimal::from(5 + entry.result % 3);
+        counts.lots.iter_mut().flat_map(|lot| &mut lot.entries).for_each(count);
+        counts.own.iter_mut().for_each(count);
+        let of = |value: &str| judge(&Case { scale: Scale::Ln, ..case(&counts, exactly(value)) }).remove(0);
+        assert_eq!(of("6").verdict, TrendVerdict::InTrend);
+        assert_eq!(of("40").verdict, TrendVerdict::Action);
+        assert!(of("6").band.unwrap().lower > 0.0);
+        counts.own[0].value = Decimal::ZERO;
+        let zero = judge(&Case { scale: Scale::Ln, ..case(&counts, exactly("6")) }).remove(0);
+        assert!(zero.needs.unwrap().contains("values above zero"));
+    }
+
+    /// A history that the method's resolution makes constant says only whether the result lies on its line.
+    #[test]
+    fn a_constant_history_says_whether_the_result_lies_on_its_line() {
+        let mut constant = history();
+        constant
+            .lots
+            .iter_mut()
+            .flat_map(|lot| &mut lot.entries)
+            .for_each(|one| one.value = Decimal::from(7));
+        constant.own.iter_mut().for_each(|one| one.value = Decimal::from(7));
+        for (value, words) in [("7.0", "lies on the line of the history, 7.00"), ("7.1", "lies off the line")]
+        {
+            let found = judge(&case(&constant, exactly(value))).remove(0);
+            assert_eq!(found.verdict, TrendVerdict::NotEvaluable);
+            assert!(found.sentence.contains(words), "{}", found.sentence);
+        }
+    }
+
+    #[test]
+    fn an_early_warning_names_what_it_lacks() {
+        let history = history();
+        let started_on = NaiveDate::from_ymd_opt(2026, 12, 1).unwrap();
+        let life = Life { lower: Some(Decimal::from(95)), upper: None, expires_on: None, started_on };
+        let of = |life: Life| {
+            let found = judge(&Case { life: Some(life), ..case(&history, exactly("99.1")) });
+            found.into_iter().find(|one| one.rule == "HS").unwrap()
+        };
+        assert!(of(life.clone()).needs.unwrap().contains("no shelf life is assigned"));
+        assert_eq!(of(Life { lower: None, ..life.clone() }).needs.unwrap(), "needs a shelf-life limit");
+        let past = Life { expires_on: Some(started_on), ..life.clone() };
+        assert!(of(past).needs.unwrap().contains("this one lies after it"));
+        let fine = of(Life { expires_on: NaiveDate::from_ymd_opt(2028, 12, 1), ..life });
+        assert_eq!(fine.verdict, TrendVerdict::NoWarning, "{}", fine.sentence);
+        assert!(fine.flag.is_none());
+    }
+}

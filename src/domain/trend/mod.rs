@@ -15,6 +15,7 @@ use rust_decimal::Decimal;
 use rust_decimal::prelude::ToPrimitive;
 
 use super::judgement::NewFlag;
+use super::method::{MethodContent, RoundTo};
 use crate::science::trend::early_warning::State;
 use crate::science::trend::promise::per_pull;
 use crate::science::trend::{Levels, Verdict};
@@ -94,6 +95,15 @@ impl TrendLevels {
 
     pub fn levels(&self) -> Levels {
         Levels { alert: self.alert, action: self.action }
+    }
+}
+
+/// Decimals of a reported value; limits of forecasts are shown with one more.
+pub fn reported_decimals(content: &MethodContent) -> u32 {
+    match content.rounding.to {
+        RoundTo::Decimals(decimals) => decimals,
+        RoundTo::Nearest(_) => 0,
+        RoundTo::SignificantFigures(_) => content.reading_decimals,
     }
 }
 

@@ -14,6 +14,7 @@ use crate::domain::protocol::{
     Arm, LimitsDo, Orientation, PlannedAge, PlannedTest, Programme, ProtocolContent,
 };
 use crate::domain::role::Role;
+use crate::domain::typed::NumberRule;
 use crate::domain::version::{VersionRefusal, VersionState, Versioned};
 use crate::store;
 
@@ -78,7 +79,7 @@ fn arms_form(visit: &Visit, id: i64, loaded: &Loaded) -> Result<Form, Failure> {
         "Days before",
         "Days after",
     ];
-    Ok(Form::new(visit, &format!("{}/arms", path(id)), "Save the draft")?
+    let form = Form::new(visit, &format!("{}/arms", path(id)), "Save the draft")?
         .field(Field::new("reason", "Why this version", Entry::Text).value(loaded.version.reason.clone()))
         .field(
             Field::new("programme", "Programme", Entry::Select)
@@ -98,18 +99,28 @@ fn arms_form(visit: &Visit, id: i64, loaded: &Loaded) -> Result<Form, Failure> {
             count("follow_through", "Followed unopened in each arm", content.follow_through_containers).hint(
                 "Weighed at loading, then weighed, measured and photographed at each age; never opened.",
             ),
-        )
-        .field(
-            Field::new("why_no_intermediate", "Why there is no contingent intermediate arm", Entry::Text)
-                .value(content.why_no_intermediate.clone().unwrap_or_default())
-                .hint("Only for long-term 25/60 without one."),
-        )
-        .field(
-            Field::new("worst_orientation", "Which orientation is the worst, and why", Entry::Text)
-                .value(content.worst_orientation.clone().unwrap_or_default())
-                .hint("Only for a routine study in one orientation."),
-        )
-        .hide("seen", loaded.version.digest()))
+        );
+    Ok(reasons(form, content).hide("seen", loaded.version.digest()))
+}
+
+/// What a protocol gives reasons for, and what it promises.
+fn reasons(form: Form, content: &ProtocolContent) -> Form {
+    form.field(
+        Field::new("why_no_intermediate", "Why there is no contingent intermediate arm", Entry::Text)
+            .value(content.why_no_intermediate.clone().unwrap_or_default())
+            .hint("Only for long-term 25/60 without one."),
+    )
+    .field(
+        Field::new("worst_orientation", "Which orientation is the worst, and why", Entry::Text)
+            .value(content.worst_orientation.clone().unwrap_or_default())
+            .hint("Only for a routine study in one orientation."),
+    )
+    .field(
+        Field::new("trend_promise", "Trend: good lots that may ever see a false action, %", Entry::Decimal)
+            .width(8)
+            .value(content.trend_promise_percent.map(|percent| percent.to_string()).unwrap_or_default())
+            .hint("Spread over the planned pulls of an arm. Empty: each pull is judged at 1 %."),
+    )
 }
 
 fn count(name: &str, label: &str, value: u32) -> Field {
@@ -210,6 +221,7 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
     let follow_through = typed.count("follow_through", 0, 200);
     let why_no_intermediate = typed.maybe_text("why_no_intermediate", 300);
     let worst_orientation = typed.maybe_text("worst_orientation", 300);
+    let promise = typed.maybe_decimal("trend_promise", &NumberRule::between("The promise", 0, 20).unit("%"));
     Some(ProtocolContent {
         programme: programme?,
         specification_version: specification_version?,
@@ -220,6 +232,7 @@ fn read(typed: &mut Typed<'_>, old: &ProtocolContent) -> Option<ProtocolContent>
         follow_through_containers: u32::try_from(follow_through?).ok()?,
         why_no_intermediate: why_no_intermediate?,
         worst_orientation: worst_orientation?,
+        trend_promise_percent: promise?.map(|percent| percent.value).filter(|percent| !percent.is_zero()),
     })
 }
 

@@ -149,6 +149,7 @@ struct VersionPage {
     followed: u32,
     why_no_intermediate: Option<String>,
     worst_orientation: Option<String>,
+    promise: String,
     tests: Vec<(String, bool)>,
     arms: Vec<ArmView>,
     faults: Vec<String>,
@@ -194,6 +195,12 @@ fn version_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) -> Ou
         followed: content.follow_through_containers,
         why_no_intermediate: content.why_no_intermediate.clone(),
         worst_orientation: content.worst_orientation.clone(),
+        promise: match content.trend_promise_percent {
+            Some(percent) => format!(
+                "at most {percent} % of good lots see a false action over the planned pulls of an arm"
+            ),
+            None => "each pull is judged at 1 %".to_string(),
+        },
         tests: content.tests.iter().map(|test| (test.title.clone(), test.is_information)).collect(),
         arms,
         faults: found.iter().map(ToString::to_string).collect(),

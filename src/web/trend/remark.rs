@@ -80,14 +80,16 @@ fn remarks_of(sealed: &[Sealed], one: &Verdict) -> Vec<String> {
             screen["without"].as_str().unwrap_or_default(),
         ));
     }
-    if detail["history_is_as_sealed"].as_bool() == Some(false) {
-        said.push(after_sealing(sealed, one));
+    let count = |name: &str| detail[name].as_u64().unwrap_or_default();
+    let (came, gone) = (count("came_after_sealing"), count("gone_since_sealing"));
+    if came + gone > 0 {
+        said.push(after_sealing(sealed, one, came, gone));
     }
     said
 }
 
 /// Results that came after the forecast was sealed entered the verdict; both are shown.
-fn after_sealing(sealed: &[Sealed], one: &Verdict) -> String {
+fn after_sealing(sealed: &[Sealed], one: &Verdict, came: u64, gone: u64) -> String {
     let was_inside = sealed
         .iter()
         .find(|sealed| sealed.component == one.component)
@@ -99,7 +101,14 @@ fn after_sealing(sealed: &[Sealed], one: &Verdict) -> String {
         Some(false) => " By the sealed forecast it lies outside the alert limits.",
         None => "",
     };
+    let results = |count: u64, words: &str| match count {
+        0 => String::new(),
+        1 => format!(" 1 result {words}."),
+        many => format!(" {many} results {words}."),
+    };
     format!(
-        "The history has changed since the forecast was sealed; the verdict uses it as it is now.{sealed}"
+        "The history has changed since the forecast was sealed; the verdict uses it as it is now.{}{}{sealed}",
+        results(came, "came after it"),
+        results(gone, "left it")
     )
 }

@@ -49,7 +49,7 @@ fn load(visit: &Visit, id: i64) -> Result<Loaded, Failure> {
         let test = sample.test(id).ok_or_else(|| Failure::missing("test with this number"))?;
         Ok(Loaded {
             title: test.title.clone(),
-            decimals: test.content.reading_decimals,
+            decimals: crate::domain::trend::reported_decimals(&test.content),
             sealed: store::trend::forecast::of_test(reader, id)?,
             exclusions: store::trend::alike::exclusions(reader, id)?,
             verdicts,
