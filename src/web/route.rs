@@ -57,6 +57,11 @@ impl Route {
 
 /// Every route of the program, one noun after the other.
 pub fn all() -> Vec<Route> {
+    [site_and_definitions(), records()].concat()
+}
+
+/// People, settings, and what is defined once.
+fn site_and_definitions() -> Vec<Route> {
     [
         super::static_file::ROUTES,
         super::session::ROUTES,
@@ -85,6 +90,13 @@ pub fn all() -> Vec<Route> {
         super::label::ROUTES,
         super::qualification::ROUTES,
         super::stop::ROUTES,
+    ]
+    .concat()
+}
+
+/// Lots and everything that happens to them.
+fn records() -> Vec<Route> {
+    [
         super::lot::ROUTES,
         super::batch::ROUTES,
         super::lot_decision::ROUTES,
