@@ -43,7 +43,7 @@ fn main() -> Result<(), Failure> {
         computed.push(timed(|| evaluate(&db).map(|one| found = one))?);
     }
     println!(
-        "{rows} rows; {} results in {} series of {} lots; {} roots, {} months proposed in all",
+        "{rows} rows; {} results in {} series of {} lots; {} roots; at most {} months by all caps together",
         found.results, found.series, found.lots, found.roots, found.months
     );
     let (alone, all, computed) = (median(alone), median(all), median(computed));
@@ -64,13 +64,16 @@ fn evaluate(db: &Db) -> Result<Found, Failure> {
         let ground = sweep::ground(reader)?;
         let width = ground.tests.len();
         let mut sums = vec![Sums::NONE; ground.arms.len() * width];
+        let mut last_months = vec![0.0_f32; ground.arms.len() * width];
         // The last value of each test that has a later version, so that it can be taken out again.
         let mut kept: std::collections::HashMap<i64, Point> = std::collections::HashMap::new();
         let mut found = Found::default();
         sweep::results(reader, &ground, |place, sample_test, version, value| {
             let Ok(y) = value.parse::<f64>() else { return };
             let point = Point { x: f64::from(place.age_months), y };
-            let sum = &mut sums[place.arm as usize * width + usize::from(place.test)];
+            let at = place.arm as usize * width + usize::from(place.test);
+            last_months[at] = last_months[at].max(place.age_months);
+            let sum = &mut sums[at];
             if version > 1
                 && let Some(before) = kept.insert(sample_test, point)
             {
@@ -79,28 +82,29 @@ fn evaluate(db: &Db) -> Result<Found, Failure> {
             sum.add(point);
             found.results += 1;
         })?;
-        let mut series: Vec<Vec<Sums>> = vec![Vec::new(); ground.groups * width];
+        let mut series: Vec<(Vec<Sums>, f32)> = vec![(Vec::new(), f32::INFINITY); ground.groups * width];
         for (arm, place) in ground.arms.iter().enumerate().filter(|(_, place)| place.lot > 0) {
             for test in 0..width {
                 let sum = sums[arm * width + test];
                 if sum.n > 0 {
-                    series[place.group as usize * width + test].push(sum);
+                    let (lots, covered) = &mut series[place.group as usize * width + test];
+                    lots.push(sum);
+                    *covered = covered.min(last_months[arm * width + test]);
                 }
             }
         }
-        drop(sums);
-        for lots in series.into_iter().filter(|lots| !lots.is_empty()) {
-            conclude(lots, &mut found);
+        drop((sums, last_months));
+        for (lots, covered) in series.into_iter().filter(|(lots, _)| !lots.is_empty()) {
+            conclude(lots, f64::from(covered), &mut found);
         }
         Ok(found)
     })
 }
 
 /// Fits, tests, the root of the chosen model and what the tree would allow at best.
-fn conclude(lots: Vec<Sums>, found: &mut Found) {
+fn conclude(lots: Vec<Sums>, covered: f64, found: &mut Found) {
     found.series += 1;
     found.lots += lots.len();
-    let covered = lots.iter().map(|lot| lot.mean_x + lot.mean_x).fold(f64::INFINITY, f64::min);
     let Ok(pooling) = Pooling::of_sums(lots, 0.25) else { return };
     let lower = Some(pooling.all.mean_y * LIMIT_SHARE);
     let specification = Specification { lower, upper: None, direction: Direction::Decreasing };

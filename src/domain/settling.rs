@@ -56,7 +56,7 @@ pub fn curves(volumes: &[Volume]) -> Vec<Curve> {
     samples.sort_unstable();
     samples.dedup();
     let mut found: Vec<Curve> = samples.into_iter().filter_map(|sample| curve(volumes, sample)).collect();
-    found.sort_by(|one, other| (one.arm, one.age_months).cmp(&(other.arm, other.age_months)));
+    found.sort_by_key(|one| (one.arm, one.age_months));
     found
 }
 

@@ -288,6 +288,33 @@ mod tests {
         assert_eq!(line.se_slope(), Some(0.0));
     }
 
+    /// Welford's sums against the two-pass ones, and a point taken in and out again.
+    #[test]
+    fn sums_taken_point_by_point_are_those_of_all() {
+        let all = points(&[(0.0, 100.1), (3.0, 99.6), (6.0, 99.2), (9.0, 98.4), (12.0, 97.9)]);
+        let whole = Sums::of(&all).unwrap();
+        let mut one_by_one = Sums::NONE;
+        one_by_one.add(all[0]);
+        let mistyped = Point { x: 3.0, y: 9.96 };
+        one_by_one.add(mistyped);
+        all[1..].iter().for_each(|point| one_by_one.add(*point));
+        one_by_one.take_out(mistyped);
+        assert_eq!(one_by_one.n, whole.n);
+        for (got, wanted) in [
+            (one_by_one.mean_x, whole.mean_x),
+            (one_by_one.mean_y, whole.mean_y),
+            (one_by_one.sxx, whole.sxx),
+            (one_by_one.sxy, whole.sxy),
+            (one_by_one.syy, whole.syy),
+        ] {
+            assert!((got - wanted).abs() <= 1e-10 * wanted.abs(), "{got} {wanted}");
+        }
+        let mut single = Sums::NONE;
+        single.add(mistyped);
+        single.take_out(mistyped);
+        assert_eq!(single, Sums::NONE);
+    }
+
     #[test]
     fn ages_that_differ_by_rounding_are_one_age() {
         assert_eq!(Line::fit(&points(&[(0.1 + 0.2, 1.0), (0.3, 2.0)])), Err(NoLine::OneAge));

@@ -1,7 +1,7 @@
 //! Analysis of covariance: textbook examples and the check values of the Q1E requirement table.
 
 use supernate::science::pooling::{Model, Pooling};
-use supernate::science::regression::{Line, Point};
+use supernate::science::regression::{Line, Point, Sums};
 use supernate::science::shelf_life::{Direction, Outcome, Specification, of_model};
 
 use crate::support::{agree, rows};
@@ -131,4 +131,30 @@ fn bolton_tablets() {
     let two = of_model(&pooling, Model::CommonLine, &specification(Direction::Either), 0.95);
     let Outcome::Crosses(months) = two.outcome else { panic!("{two:?}") };
     assert!((months - 19.8377).abs() < 5e-5, "two-sided root {months}");
+}
+
+/// Lots whose points are not kept: sums taken point by point give the same tests and model.
+#[test]
+fn sums_alone_give_the_tests_of_the_points() {
+    for (name, group, x, y) in
+        [("worked/snedecor_cochran_leprosy.csv", 0, 1, 2), ("worked/mass_whiteside.csv", 0, 1, 2)]
+    {
+        let groups = grouped(name, group, x, y);
+        let whole = pool(&groups);
+        let sums = groups.iter().map(|points| {
+            let mut sums = Sums::NONE;
+            points.iter().for_each(|point| sums.add(*point));
+            sums
+        });
+        let streamed = Pooling::of_sums(sums.collect(), 0.25).unwrap();
+        assert_eq!(streamed.model, whole.model, "{name}");
+        agree(streamed.common_line_residuals.sse, whole.common_line_residuals.sse, 1e-10, "SSE common line");
+        agree(streamed.separate_residuals.sse, whole.separate_residuals.sse, 1e-10, "SSE separate");
+        if let (Some(got), Some(wanted)) = (streamed.slopes, whole.slopes) {
+            agree(got.p, wanted.p, 1e-9, "p slopes");
+        }
+        if let (Some(got), Some(wanted)) = (streamed.intercepts, whole.intercepts) {
+            agree(got.p, wanted.p, 1e-9, "p intercepts");
+        }
+    }
 }

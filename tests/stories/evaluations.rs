@@ -312,3 +312,21 @@ fn a_formulation_version_is_compared_with_another_on_stability() {
     assert!(alone.text().contains("made to F-1 version 2"), "what is left out is named: {}", alone.text());
     formulator.sees("/evaluations/1/density/versions", "F-1 version 2 against F-1 version 1");
 }
+
+/// Decision B17: imported results are charted and computed, and no signed conclusion rests on them.
+#[test]
+fn imported_results_are_computed_and_barred_from_a_conclusion() {
+    let lab = Lab::new();
+    let manager = lab.manager();
+    crate::imports::imports(&manager, "zno.csv", &crate::imports::zno());
+    let list = manager.sees("/evaluations", "imported, not observed here");
+    let page = list.links().into_iter().find(|link| link.starts_with("/evaluations/")).expect("a series");
+    let seen = manager.sees(&page, "no signed conclusion can rest on them");
+    assert!(seen.text().contains("Ring with a dot: imported"), "{}", seen.text());
+    assert!(!list.html().contains("/conclusions/new"), "nothing to conclude is offered");
+    let arm: i64 = page.split('/').nth(2).unwrap().parse().unwrap();
+    let lots = lots_of(&lab);
+    let every: Vec<(i64, &str)> = lots.iter().map(|lot| (*lot, "")).collect();
+    let barred = manager.sees(&asked(arm, &every, &[]), "These results were imported, not observed here.");
+    assert!(!barred.html().contains("Sign this conclusion"));
+}

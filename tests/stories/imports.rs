@@ -46,7 +46,7 @@ pub fn upload(person: &Person<'_>, name: &str, bytes: &[u8]) -> Seen {
 }
 
 /// Uploads, previews and imports a file; answers with the page of the import.
-fn imports(person: &Person<'_>, name: &str, bytes: &[u8]) -> Seen {
+pub fn imports(person: &Person<'_>, name: &str, bytes: &[u8]) -> Seen {
     let seen = upload(person, name, bytes);
     assert_eq!(seen.status, 303, "{}", seen.text());
     let preview = seen.location.unwrap();

@@ -33,7 +33,8 @@ pub fn drawn(chart: &Chart) -> Drawn {
     let frame = frame(chart);
     let y = scale::values(chart, frame.bottom, frame.top);
     let (x, unit) = scale::time(chart, frame.left, frame.right);
-    let mut canvas = Canvas { x, y, unit, shapes: Vec::new(), texts: Vec::new(), ends: Vec::new() };
+    let mut canvas =
+        Canvas { x, y, unit, shapes: Vec::new(), texts: Vec::new(), ends: Vec::new(), taken: Vec::new() };
     canvas.curves(chart, CurveKind::Band);
     canvas.axes(chart, &frame);
     canvas.limits(chart, &frame);
@@ -68,6 +69,8 @@ struct Canvas {
     texts: Vec<Text>,
     /// Words at the right edge: wanted height and text. Moved apart before they are written.
     ends: Vec<(Decimal, String)>,
+    /// Heights that the words of limits have taken, which names of lots go around.
+    taken: Vec<Decimal>,
 }
 
 impl Canvas {
@@ -114,7 +117,13 @@ impl Canvas {
             let Some(limit) = limit else { continue };
             let y = self.y.at(limit);
             self.shape("limit", format!("M{} {}H{}", frame.left, plain(y), frame.right));
-            self.ends.push((y, format!("{words} {limit}")));
+            if chart.is_group {
+                let at = Decimal::from(frame.right + 8);
+                self.text("", at, y + Decimal::from(4), "start", format!("{words} {limit}"));
+                self.taken.push(y);
+            } else {
+                self.ends.push((y, format!("{words} {limit}")));
+            }
         }
         if let Some(months) = chart.life_months {
             let x = self.x.at(self.unit.of_months(months));
@@ -247,7 +256,10 @@ impl Canvas {
         let gap = Decimal::from(WORD_GAP);
         let mut free = Decimal::from(frame.top);
         for (y, words) in ends {
-            let at = y.max(free);
+            let mut at = y.max(free);
+            while let Some(taken) = self.taken.iter().find(|taken| (**taken - at).abs() < gap) {
+                at = *taken + gap;
+            }
             free = at + gap;
             self.text("", Decimal::from(frame.right + 8), at + Decimal::from(4), "start", words);
         }

@@ -176,6 +176,9 @@ pub fn lot_fields(found: &Prepared, proposal: &Proposal) -> Vec<Vec<Field>> {
             )
             .value(left.map(|(_, why)| why.clone()).unwrap_or_default()),
         ]
+        .into_iter()
+        .map(|field| Field { is_in_grid: field.entry == Entry::Text, ..field })
+        .collect()
     };
     found.lots.iter().map(row).collect()
 }
