@@ -12,6 +12,7 @@ mod driver;
 mod imports;
 mod journeys;
 mod keyboard;
+mod makings;
 mod pages;
 mod people;
 mod print;

@@ -523,3 +523,35 @@ fn a_lot_is_started_only_as_the_master_record_allows() {
     assert!(other.text().contains("The master record has the batch sizes 500 L"), "{}", other.text());
     assert_eq!(lab.analyst().get("/batches/new").status, 403);
 }
+
+/// From the first step to the release: what was made here is complete without a reference to paper.
+#[test]
+fn a_small_lot_goes_from_its_start_to_its_release() {
+    let lab = Lab::new();
+    let bench = crate::support::samples::Bench::new(&lab);
+    bench.assigns_shelf_life();
+    lab.later_days(1);
+    let product =
+        lab.app.db.read(|reader| supernate::store::lot::product_of_presentation(reader, bench.presentation));
+    let floor = Floor::of(&lab, product.unwrap(), bench.presentation);
+    let record = floor.makes("TW-104-0720");
+    let found =
+        lab.app.db.read(|reader| supernate::store::lot::by_number(reader, "TW-104-0720")).unwrap().unwrap();
+    let page = format!("/lots/{}/decision", found.id);
+    let qa = lab.reviewer();
+    qa.sees(&page, "Release is not possible now.");
+    let sample = bench.ready(found.id, supernate::domain::sample::Purpose::Release);
+    let review = format!("/review/{sample}");
+    qa.does(&review, &format!("{review}/agree"), &[]);
+    qa.signs("/review/sign", "/review/sign", &[]);
+    floor.completes_the_record(found.id);
+    let released = qa.signs(&page, &format!("/lots/{}/release", found.id), &[("is_reviewed", "yes")]);
+    assert!(released.text().contains("TW-104-0720 is released."), "{}", released.text());
+    qa.sees(&record, "The lot is released. Nothing is added to its record.");
+    let note = lab.operator().get(&format!("{record}/steps/3"));
+    assert!(
+        note.text().contains("The lot is released, so nothing is added to its record"),
+        "{}",
+        note.text()
+    );
+}

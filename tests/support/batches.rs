@@ -214,9 +214,15 @@ impl<'a> Floor<'a> {
     /// Everything ready: `ML-1` hydroxide (assay 98.5 %, water 2.0 %), `ML-2` gum, both released.
     pub fn new(lab: &'a Lab) -> Floor<'a> {
         let product = product(lab, "TW-104");
-        let presentation = presentation(lab, product, "TW-104-100");
+        Floor::of(lab, product, presentation(lab, product, "TW-104-100"))
+    }
+
+    /// The same for a product and presentation that exist.
+    pub fn of(lab: &'a Lab, product: i64, presentation: i64) -> Floor<'a> {
         let version = approved_master(lab, product);
-        let active = material_lot(lab, 1, "ML-1", "200.00", "2028-06-30");
+        let materials = lab.app.db.read(supernate::store::material::all).unwrap();
+        let of = |code: &str| materials.iter().find(|one| one.code == code).unwrap().id;
+        let active = material_lot(lab, of("M-01"), "ML-1", "200.00", "2028-06-30");
         let assay = NewAssay {
             assay: Some(decimal("98.5")),
             assay_unit: "%".to_string(),
@@ -227,7 +233,7 @@ impl<'a> Floor<'a> {
         };
         acts::material_lot::record_assay(&lab.app.db, &lab.actor("maren.oddy"), active, &assay).unwrap();
         release_material_lot(lab, active);
-        release_material_lot(lab, material_lot(lab, 2, "ML-2", "25.000", "2028-06-30"));
+        release_material_lot(lab, material_lot(lab, of("M-02"), "ML-2", "25.000", "2028-06-30"));
         Floor {
             lab,
             version,
@@ -363,5 +369,34 @@ impl<'a> Floor<'a> {
         self.yields(&record, 3, "4930", "98.6");
         self.lab.operator().signs(&record, &format!("{record}/close"), &[]);
         record
+    }
+
+    /// Labels counted and checked, and every other item that rows do not show stated as present.
+    pub fn completes_the_record(&self, lot: i64) {
+        use supernate::domain::completeness::statement::NewAnswer;
+        use supernate::domain::completeness::{AnswerKind, judge};
+        use supernate::domain::packaging::{CountKind, LABEL, NewCount, NewPackagingItem};
+        let db = &self.lab.app.db;
+        let (bea, maren) = (self.lab.actor("bea.skelton"), self.lab.actor("maren.oddy"));
+        let new = NewPackagingItem {
+            kind: LABEL.to_string(),
+            name: "label, version 3".to_string(),
+            material_lot: None,
+            least_percent: decimal("99.5"),
+            most_percent: decimal("100.5"),
+        };
+        let item = acts::packaging::add(db, &bea, lot, &new).unwrap();
+        for (kind, count) in [(CountKind::Issued, 5000), (CountKind::Used, 4930), (CountKind::Destroyed, 70)]
+        {
+            let new = NewCount { kind, count, supersedes: None, why: String::new() };
+            acts::packaging::count(db, &bea, item, &new).unwrap();
+        }
+        acts::packaging::check(db, &maren, item).unwrap();
+        let evidence = db.read(|reader| supernate::store::completeness::evidence(reader, lot)).unwrap();
+        for item in judge(&evidence).into_iter().filter(|item| item.is_missing()) {
+            let text = "stands on sheet 1 of the annex".to_string();
+            let new = NewAnswer { item: item.number, kind: AnswerKind::Present, text };
+            acts::completeness::answer(db, &maren, lot, &new).unwrap();
+        }
     }
 }

@@ -127,7 +127,7 @@ pub fn in_slot<'a>(planned: &Planned<'_>, entries: &'a [Entry], slot: &Slot) -> 
 }
 
 /// Entries of the present run outside their limits that no deviation answers yet.
-pub fn unanswered<'a>(entries: &'a [Entry], step: usize) -> Vec<&'a Entry> {
+pub fn unanswered(entries: &[Entry], step: usize) -> Vec<&Entry> {
     let present = present(entries, step);
     let is_answered =
         |id: i64| entries.iter().any(|one| one.kind == EntryKind::Answered && one.answers == Some(id));

@@ -67,16 +67,33 @@ pub fn next_words(content: &RecordContent, entries: &[Entry], yields: &[PhaseYie
     }
 }
 
-/// The end of the address at which the record goes on.
-fn next_path(loaded: &Loaded) -> Option<String> {
+/// The end of the address at which this person goes on: who did a step does not check it, so it leads them to the next
+/// one that may begin.
+fn next_path(loaded: &Loaded, account: i64) -> Option<String> {
     if loaded.record.is_closed || loaded.record.lot_decision.is_some() {
         return None;
     }
-    match next(&loaded.record.content, &loaded.entries, &loaded.yields) {
+    let content = &loaded.record.content;
+    match next(content, &loaded.entries, &loaded.yields) {
+        Next::Check(number) if loaded.facts(number).is_ok_and(|facts| facts.doers().contains(&account)) => {
+            let states = states(content, &loaded.entries, &loaded.yields);
+            let ready = states.iter().position(|state| *state == StepState::Ready);
+            Some(format!("steps/{}", ready.map_or(number, |at| at + 1)))
+        }
+        Next::Ready(_) if unchecked_of_another(loaded, account).is_some() => {
+            unchecked_of_another(loaded, account).map(|at| format!("yields/{}", at + 1))
+        }
         Next::Running(number) | Next::Check(number) | Next::Ready(number) => Some(format!("steps/{number}")),
         Next::Yield(at) | Next::YieldCheck(at) => Some(format!("yields/{}", at + 1)),
         Next::Nothing => None,
     }
+}
+
+/// The place of a phase whose yield another person worked out and nobody has checked.
+fn unchecked_of_another(loaded: &Loaded, account: i64) -> Option<usize> {
+    let phases = 0..loaded.record.content.master.phases.len();
+    let mut newest = phases.filter_map(|at| yield_of(&loaded.yields, at));
+    newest.find(|found| found.checked.is_none() && found.account != account).map(|found| found.phase)
 }
 
 struct Task {
@@ -252,7 +269,7 @@ pub fn record_page(status: u16, visit: &Visit, id: i64, failed: Option<Form>) ->
         close_note,
         reopen,
         signatures: Signatures::of(&signed, &sha256_hex(canonical.as_bytes()), visit.at.zone),
-        next: next_path(&loaded),
+        next: next_path(&loaded, visit.actor()?.account),
         packs: visit.may(crate::domain::act::Act::MakeLot) && loaded.record.lot_decision.is_none(),
         trail: Trail::of(&lines, visit.at.zone),
     };
