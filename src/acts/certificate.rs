@@ -12,7 +12,7 @@ use crate::domain::lot_decision::results_stand;
 use crate::domain::moment::{Moment, date_from_stored, date_shown};
 use crate::domain::reason::Reason;
 use crate::domain::review::not_own_work;
-use crate::domain::specification::{LimitSet, SpecificationContent};
+use crate::domain::specification::{Limit, LimitSet, SpecificationContent};
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::store::Reader;
@@ -65,7 +65,12 @@ fn row(found: &Certified) -> Result<CertificateRow, Failure> {
     let content: Option<SpecificationContent> =
         found.specification_content.as_deref().map(serde_json::from_str).transpose()?;
     let limits = content.as_ref().and_then(|content| content.of(&found.test));
-    let limit = limits.map(|limits| limit_words(limits.limit(LimitSet::Release), Some(&method)));
+    let limit = limits.map(|limits| match limits.limit(LimitSet::Release) {
+        limit @ Limit::Between { .. } => {
+            format!("{} {}", limit_words(limit, None), limits.unit).trim_end().to_string()
+        }
+        limit => limit_words(limit, Some(&method)),
+    });
     let test = match found.component.is_empty() {
         true => found.title.clone(),
         false => format!("{}, {}", found.title, found.component),

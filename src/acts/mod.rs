@@ -5,6 +5,7 @@ pub mod amendment;
 pub mod attachment;
 pub mod backup;
 pub mod batch;
+pub mod blank_sheet;
 pub mod certificate;
 pub mod chamber;
 pub mod check;

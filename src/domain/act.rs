@@ -98,6 +98,8 @@ acts! {
     StateCompleteness, "stated an item of a lot's record", Roles(&[ProductionOperator, LabManager, QaReviewer]);
     StateRecordElsewhere, "stated where a lot's record is kept", Roles(&[LabManager, QaReviewer]);
 
+    IssueBlankSheet, "gave out a blank sheet", Roles(&[LabManager, QaReviewer]);
+    RecordBlankSheet, "accounted for a blank sheet", Roles(&[ProductionOperator, Analyst, LabManager, QaReviewer]);
     SignCertificate, "signed a certificate of analysis", Roles(&[QaReviewer]);
 
     MakeLot, "recorded a lot", Roles(&[ProductionOperator, LabManager]);

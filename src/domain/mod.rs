@@ -7,6 +7,7 @@ pub mod age;
 pub mod amendment;
 pub mod attachment;
 pub mod batch;
+pub mod blank_sheet;
 pub mod certificate;
 pub mod chamber;
 pub mod check;

@@ -5,6 +5,7 @@ pub mod amendment;
 pub mod attachment;
 pub mod batch;
 pub mod bench;
+pub mod blank_sheet;
 pub mod bulk;
 pub mod certificate;
 pub mod chamber;

@@ -43,6 +43,8 @@ struct DecisionPage {
     facts: Vec<(&'static str, String)>,
     results: Vec<ResultRow>,
     items: Items,
+    /// Nobody has decided yet.
+    is_open: bool,
     deviations: Table,
     corrections: Vec<(Correction, String)>,
     /// Why the lot cannot be released now; empty where it can.
@@ -92,6 +94,7 @@ fn decision_page(status: u16, visit: &Visit, failed: Option<Form>) -> Outcome {
         facts: facts(&found),
         results: rows(&found),
         items: Items::of(&found.items),
+        is_open: found.facts.decided.is_none(),
         deviations: deviations_table(&found.deviations),
         corrections: corrections(&found, visit),
         why_not: refusal.map(|refusal| refusal.to_string()).unwrap_or_default(),

@@ -6,6 +6,7 @@ pub mod app;
 pub mod attachment;
 pub mod batch;
 pub mod bench;
+pub mod blank_sheet;
 pub mod certificate;
 pub mod chamber;
 pub mod check;

@@ -57,7 +57,7 @@ impl Route {
 
 /// Every route of the program, one noun after the other.
 pub fn all() -> Vec<Route> {
-    [site_and_definitions(), records()].concat()
+    [site_and_definitions(), of_making(), records()].concat()
 }
 
 /// People, settings, and what is defined once.
@@ -80,14 +80,6 @@ fn site_and_definitions() -> Vec<Route> {
         super::specification::ROUTES,
         super::shelf_life::ROUTES,
         super::instrument::ROUTES,
-        super::material_lot::ROUTES,
-        super::equipment::ROUTES,
-        super::deviation::ROUTES,
-        super::packaging::ROUTES,
-        super::retain::ROUTES,
-        super::completeness::ROUTES,
-        super::certificate::ROUTES,
-        super::label::ROUTES,
         super::qualification::ROUTES,
         super::stop::ROUTES,
     ]
@@ -126,6 +118,22 @@ fn records() -> Vec<Route> {
         super::lot_file::ROUTES,
         super::find::ROUTES,
         super::patterns::ROUTES,
+    ]
+    .concat()
+}
+
+/// What lots are made from and in, and what makes them releasable.
+fn of_making() -> Vec<Route> {
+    [
+        super::material_lot::ROUTES,
+        super::equipment::ROUTES,
+        super::deviation::ROUTES,
+        super::label::ROUTES,
+        super::packaging::ROUTES,
+        super::retain::ROUTES,
+        super::completeness::ROUTES,
+        super::certificate::ROUTES,
+        super::blank_sheet::ROUTES,
     ]
     .concat()
 }

@@ -37,7 +37,7 @@ fn a_certificate_states_results_limits_and_reviewers_and_a_new_version_says_what
     reviewed(&bench, lot);
     let draft = lab.reviewer().sees(&page, "It is a draft until QA signs it.");
     let words = [
-        "Assay AS-01 version 1 97.0 to 103.0 99.9 % conforms TW-104-0640-R1",
+        "Assay AS-01 version 1 97.0 to 103.0 % 99.9 % conforms TW-104-0640-R1",
         "Every result conforms to its release limit.",
         "TW-104-0640-R1 3 Dec 2026 Ada Whitlock",
         "Use by not decided yet",

@@ -76,6 +76,7 @@ fn a_missing_item_blocks_the_release_until_the_record_is_here_or_stated_elsewher
     assert_eq!(releases(&lab, lot, &[("is_reviewed", "yes")]).status, 303);
     let released = lab.reviewer().sees(&decision, "Records kept until 3 Dec 2031");
     assert!(!released.text().contains("does not match"), "{}", released.text());
+    lab.auditor().sees(&format!("/lots/{lot}/file"), "kept elsewhere BR-2026-011, paper archive, room 2");
     let late = lab.manager().get(&page);
     assert!(
         !late.html().contains("<form method=\"post\" action=\"/lots/1/"),

@@ -11,6 +11,7 @@ mod attachments;
 mod backups;
 mod batches;
 mod benches;
+mod blank_sheets;
 mod certificates;
 mod checks;
 mod completeness;

@@ -158,6 +158,9 @@ fn what_a_lot_is_made_from(lab: &Lab) -> Vec<Open> {
         ("location", "retain room"),
     ];
     let retain = lab.operator().does(&page, &page, &kept).location.unwrap();
+    let maren = lab.actor("maren.oddy").account.to_string();
+    let given = [("purpose", "weighing of kaolin"), ("issued_to", maren.as_str())];
+    let sheet = lab.manager().does("/blank-sheets/new", "/blank-sheets/new", &given).location.unwrap();
     let at = |route: &'static str, path: String| (route, path, Vec::new());
     vec![
         at("/material-lots/{id}/status", format!("/material-lots/{delivery}/status")),
@@ -167,6 +170,7 @@ fn what_a_lot_is_made_from(lab: &Lab) -> Vec<Open> {
         at("/deviations/{id}/entries", format!("{deviation}/entries")),
         at("/packaging/{id}/counts", format!("{item}/counts")),
         at("/packaging/{id}/check", format!("{item}/check")),
+        at("/blank-sheets/{id}/events", format!("{sheet}/events")),
         at("/retains/{id}/events", format!("{retain}/events")),
     ]
 }

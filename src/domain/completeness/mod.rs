@@ -185,10 +185,12 @@ pub fn missing(items: &[Item]) -> Vec<String> {
 }
 
 fn answered(number: u8, found: ItemState, evidence: &Evidence) -> ItemState {
-    let ItemState::Missing { may_be_answered: true, .. } = &found else { return found };
+    let ItemState::Missing { may_be_answered: true, proofs, .. } = &found else { return found };
     let answer = evidence.answers.iter().find(|answer| answer.item == number);
     match answer.map(|answer| (answer.kind, format!("{} ({})", answer.text, answer.by))) {
-        Some((AnswerKind::Present, text)) => ItemState::Present(vec![Proof::new(text, "")]),
+        Some((AnswerKind::Present, text)) => {
+            ItemState::Present(proofs.iter().cloned().chain([Proof::new(text, "")]).collect())
+        }
         Some((AnswerKind::NotApplicable, text)) => ItemState::NotApplicable(text),
         _ => found,
     }

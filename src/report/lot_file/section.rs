@@ -37,12 +37,7 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
     let mut sections = vec![maker.tables("identity", "Identity and label", "", &[])];
     maker.identity(&mut sections);
     maker.versions(&mut sections, "formulation", "Formulation", "formulation_versions");
-    sections.push(maker.tables(
-        "release",
-        "Release and distribution",
-        "",
-        &["lot_decisions", "lot_distributions"],
-    ));
+    maker.making(&mut sections);
     sections.push(maker.tables(
         "studies",
         "Studies",
@@ -78,7 +73,7 @@ pub fn by_section(file: &LotFile, place: Place) -> Document {
         "deviations",
         "Deviations",
         "",
-        &["flags", "stage_losses", "investigations", "answers"],
+        &["deviations", "deviation_entries", "flags", "stage_losses", "investigations", "answers"],
     ));
     sections.push(maker.tables("signatures", "Signatures", "", &["signatures"]));
     maker.versions(&mut sections, "methods", "Methods", "method_versions");
@@ -228,6 +223,19 @@ impl Maker<'_> {
                 ..Section::default()
             });
         }
+    }
+
+    /// How the lot was made, and what its release asked for.
+    fn making(&self, sections: &mut Vec<Section>) {
+        let made = ["batch_records", "step_entries", "phase_yields", "stock_entries", "equipment_uses"];
+        let note = "A row that supersedes another is a correction of it; both stand here.";
+        sections.push(self.tables("making", "How it was made", note, &made));
+        let packed = ["packaging_counts", "packaging_checks", "retains", "blank_sheets"];
+        sections.push(self.tables("packing", "Containers, labels and retains", "", &packed));
+        let stated = ["completeness_statements", "certificates"];
+        sections.push(self.tables("completeness", "Completeness and certificates", "", &stated));
+        let decided = ["lot_decisions", "lot_distributions"];
+        sections.push(self.tables("release", "Release and distribution", "", &decided));
     }
 
     /// One part for each sample.

@@ -2,6 +2,7 @@
 
 mod definition;
 mod life;
+mod making;
 mod observation;
 pub mod system;
 
@@ -41,7 +42,9 @@ use of_family;
 pub fn load(reader: &Reader<'_>, id: i64) -> Answer<LotFile> {
     let found = lot::get(reader, id)?;
     let mut tables = Vec::new();
-    for query in definition::QUERIES.iter().chain(life::QUERIES).chain(observation::QUERIES) {
+    for query in
+        definition::QUERIES.iter().chain(making::QUERIES).chain(life::QUERIES).chain(observation::QUERIES)
+    {
         tables.push(table(reader, id, query)?);
     }
     let acts = acts(reader, id, &tables)?;

@@ -247,6 +247,10 @@ pub(super) const QUERIES: &[Query] = &[
              left join sample s on g.kind = 'sample' and s.id = g.subject
              where (g.kind = 'lot' and g.subject in (select id from family))
                  or (g.kind = 'sample' and s.lot in (select id from family))
+                 or (g.kind = 'deviation' and g.subject in (
+                     select id from deviation where lot in (select id from family)))
+                 or (g.kind = 'batch_record' and g.subject in (
+                     select id from batch_record where lot in (select id from family)))
                  or (g.kind = 'formulation_version' and g.subject in (
                      select formulation_version from lot where id in (select id from family)))
                  or (g.kind = 'protocol_version' and g.subject in (
