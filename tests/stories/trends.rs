@@ -180,7 +180,7 @@ fn after_a_stop_the_clock_catches_up_and_says_how_late() {
 fn results_that_arrive_after_the_sealing_enter_the_verdict_and_both_are_shown() {
     let lab = Lab::new();
     let ageing = Ageing::new(&lab);
-    let lot = new_lot(&ageing);
+    new_lot(&ageing);
     let late = began(&ageing, "TW-104-0802", 303);
     let waiting = ageing.takes(&late, 6);
     let third = began(&ageing, "TW-104-0803", 310);
@@ -200,7 +200,6 @@ fn results_that_arrive_after_the_sealing_enter_the_verdict_and_both_are_shown() 
     );
     assert!(page.text().contains("sealed 7 Apr 2028"), "{}", page.text());
     assert!(page.text().contains("at the verdict on version 1"), "{}", page.text());
-    drop(lot);
 }
 
 #[test]
