@@ -91,6 +91,12 @@ pub fn insert(change: &Change<'_>, lot: i64, number: &str, document: &str, diges
     )
 }
 
+/// How many lots are in the making.
+pub fn open_count(reader: &Reader<'_>) -> Answer<usize> {
+    let count: u32 = reader.one("count", "select count(*) from open_batch", [], |row| row.get(0))?;
+    Ok(count as usize)
+}
+
 /// A record in the making with all that says where it stands.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct OpenBatch {

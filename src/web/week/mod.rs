@@ -108,6 +108,7 @@ struct PersonView {
 struct Facts {
     counts: Counts,
     to_check: usize,
+    in_making: usize,
     urgent: Vec<Line>,
     pulls: Vec<Line>,
     sums: Vec<DaySum>,
@@ -124,6 +125,7 @@ fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
         Ok(Facts {
             counts: store::open_pull::counts(reader, today)?,
             to_check: store::check::count_waiting(reader)?,
+            in_making: store::batch::open_count(reader)?,
             urgent: store::open_pull::urgent(reader, today, MOST_ROWS)?,
             pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS as i64)?,
             sums: store::week::days(reader, today, last)?,
@@ -145,6 +147,8 @@ struct WeekPage<'a> {
     closing: String,
     in_test: String,
     to_check: String,
+    /// Lots in the making; empty without one.
+    in_making: String,
     may_assign: bool,
     may_set_days: bool,
     is_idle: bool,
@@ -183,6 +187,11 @@ fn the_week(visit: &Visit) -> Outcome {
         to_check: match facts.to_check {
             1 => "1 result waits for a check".to_string(),
             count => format!("{count} results wait for a check"),
+        },
+        in_making: match facts.in_making {
+            0 => String::new(),
+            1 => "1 lot is in the making".to_string(),
+            count => format!("{count} lots are in the making"),
         },
         may_assign: visit.may(Act::AssignPull),
         may_set_days: visit.may(Act::SetWorkingDays),
