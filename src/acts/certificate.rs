@@ -16,7 +16,7 @@ use crate::domain::specification::{Limit, LimitSet, SpecificationContent};
 use crate::domain::subject::{Kind, Subject};
 use crate::store;
 use crate::store::Reader;
-use crate::store::certificate::Certified;
+use crate::store::certificate::{Certified, ReviewedSample};
 use crate::store::door::Db;
 
 /// What a certificate of the lot would state now; `at` tells the zone its instants are written in.
@@ -33,16 +33,12 @@ pub fn draft(reader: &Reader<'_>, lot: i64, at: Moment) -> Result<CertificateCon
         results.iter().filter_map(|one| one.specification.clone()).collect();
     specifications.dedup();
     let on = |stored: &str| date_from_stored(stored).map(date_shown).unwrap_or_default();
-    let sample =
-        |(number, received_on, reviewed_by, reviewed_at): (String, Option<String>, String, String)| {
-            let instant = Moment::from_stored(&reviewed_at, at.zone).map(|moment| moment.shown());
-            CertifiedSample {
-                number,
-                received_on: received_on.as_deref().map(on).unwrap_or_default(),
-                reviewed_by,
-                reviewed_at: instant.unwrap_or_default(),
-            }
-        };
+    let sample = |one: ReviewedSample| CertifiedSample {
+        received_on: one.received_on.as_deref().map(on).unwrap_or_default(),
+        reviewed_at: Moment::from_stored(&one.reviewed_at, at.zone).map(|at| at.shown()).unwrap_or_default(),
+        number: one.number,
+        reviewed_by: one.reviewed_by,
+    };
     Ok(CertificateContent {
         product: format!("{} {}", found.product_code, found.product_name),
         presentation: found.presentation_words.clone(),

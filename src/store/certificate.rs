@@ -55,8 +55,19 @@ pub fn results(reader: &Reader<'_>, lot: i64) -> Answer<Vec<Certified>> {
     )
 }
 
-/// A release sample with its newest review: number, day received, reviewer, instant as stored.
-pub fn samples(reader: &Reader<'_>, lot: i64) -> Answer<Vec<(String, Option<String>, String, String)>> {
+/// A release sample with its newest review.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct ReviewedSample {
+    pub number: String,
+    /// As stored: a calendar date.
+    pub received_on: Option<String>,
+    pub reviewed_by: String,
+    /// As stored: UTC; empty where nobody has reviewed it.
+    pub reviewed_at: String,
+}
+
+/// The release samples of a lot, oldest first.
+pub fn samples(reader: &Reader<'_>, lot: i64) -> Answer<Vec<ReviewedSample>> {
     reader.all(
         "select s.number, s.received_on, coalesce(g.signer_name, ''), coalesce(a.at, '')
          from sample s
@@ -66,7 +77,14 @@ pub fn samples(reader: &Reader<'_>, lot: i64) -> Answer<Vec<(String, Option<Stri
          where s.lot = :lot and s.purpose = 'release'
          order by s.id",
         named_params! { ":lot": lot },
-        |row| Ok((row.get(0)?, row.get(1)?, row.get(2)?, row.get(3)?)),
+        |row| {
+            Ok(ReviewedSample {
+                number: row.get(0)?,
+                received_on: row.get(1)?,
+                reviewed_by: row.get(2)?,
+                reviewed_at: row.get(3)?,
+            })
+        },
     )
 }
 
