@@ -80,20 +80,15 @@ impl Asked {
     }
 }
 
+/// What can be accounted for, with the parts it is made of beside the actual yield.
+fn accountable(one: &PhaseYield) -> Cell {
+    let parts =
+        format!("samples {}, rejects {}, waste {}\u{202f}{}", one.samples, one.rejects, one.waste, one.unit);
+    Cell::noted(format!("{}\u{202f}%", one.accountable_percent), parts)
+}
+
 fn table(visit: &Visit, yields: &[&PhaseYield]) -> Table {
-    let heads = [
-        "When",
-        "Actual#",
-        "Samples#",
-        "Rejects#",
-        "Waste#",
-        "Theoretical#",
-        "Yield#",
-        "Accountable#",
-        "Limits",
-        "By",
-        "Checked by",
-    ];
+    let heads = ["When", "Actual#", "Theoretical#", "Yield#", "Accountable", "Limits", "By", "Checked by"];
     Table::new("Oldest first; the last one counts", &heads, "No yield is recorded yet.").rows(
         yields.iter().map(|one| {
             let with = |value: rust_decimal::Decimal| Cell::number(format!("{value}\u{202f}{}", one.unit));
@@ -109,12 +104,9 @@ fn table(visit: &Visit, yields: &[&PhaseYield]) -> Table {
             vec![
                 Cell::text(show::instant(&one.at, visit.at.zone)),
                 with(one.actual),
-                with(one.samples),
-                with(one.rejects),
-                with(one.waste),
                 with(one.theoretical),
                 percent(one.percent),
-                percent(one.accountable_percent),
+                accountable(one),
                 limits,
                 Cell::text(&one.by),
                 Cell::or_missing(one.checked.as_ref().map(|(by, _)| by.clone()), "not checked yet"),
