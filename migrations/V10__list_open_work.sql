@@ -74,9 +74,13 @@ from pull_test
 group by pull, sample;
 
 create table open_line (
+    words text not null,
+    -- What changes, in the order in which the lists read it; one text is one column to read.
+    state text not null generated always as (
+        containers_taken || ' ' || minutes || ' ' || tests || ' ' || started || ' ' || complete || ' ' || checked
+        || ' ' || sent_back || ' ' || out_of_specification || ' ' || coalesce(taken_on, '')) stored,
     pull integer primary key references pull (id),
     study_arm integer not null,
-    words text not null,
     account integer references account (id), -- who has it
     minutes integer not null default 0,     -- at the bench, from the methods of its tests
     taken_on text,                          -- null until it is taken

@@ -3,6 +3,9 @@
 //! The rooms, in reading order; `tests/house` holds which room may name which.
 #![forbid(unsafe_code)]
 
+#[global_allocator]
+static ALLOCATOR: mimalloc::MiMalloc = mimalloc::MiMalloc;
+
 /// What people do: one function per act, each loads, decides and stores through the one door.
 pub mod acts;
 /// The commands of the program, one file each.

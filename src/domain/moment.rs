@@ -175,6 +175,16 @@ pub fn until_shown(today: NaiveDate, last_day: NaiveDate) -> String {
     text
 }
 
+/// `opens in 3 days`, for a first day to come.
+pub fn opens_shown(today: NaiveDate, first_day: NaiveDate) -> String {
+    let days = (first_day - today).num_days();
+    let mut text = String::with_capacity(24);
+    text.push_str("opens in ");
+    push_number(&mut text, u32::try_from(days).unwrap_or_default());
+    text.push_str(if days == 1 { " day" } else { " days" });
+    text
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

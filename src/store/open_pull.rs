@@ -37,8 +37,7 @@ struct Words {
 impl Words {
     fn new(text: String) -> Words {
         let mut ends = [text.len(); PARTS];
-        let separators = text.bytes().enumerate().filter(|(_, byte)| *byte == 0x1f);
-        for (end, (at, _)) in ends.iter_mut().zip(separators) {
+        for (end, at) in ends.iter_mut().zip(memchr::memchr_iter(0x1f, text.as_bytes())) {
             *end = at;
         }
         Words { text, ends }
@@ -201,9 +200,7 @@ fn dates(today: NaiveDate) -> [Day; 4] {
     [0, 1, 6, 34].map(|days| Day(plus_days(today, days)))
 }
 
-const LINE: &str =
-    "select l.words, l.containers_taken, coalesce(k.containers_left, 0), g.full_name, l.minutes,
-        l.tests, l.taken_on, l.started, l.complete, l.checked, l.sent_back, l.out_of_specification
+const LINE: &str = "select l.words, l.state, coalesce(k.containers_left, 0), g.full_name
     from open_pull o
     cross join open_line l on l.pull = o.pull
     left join arm_stock k on k.study_arm = l.study_arm
@@ -243,43 +240,38 @@ pub fn urgent(reader: &Reader<'_>, today: NaiveDate, limit: usize) -> Answer<Vec
 
 fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
     let words = Words::new(row.get(0)?);
+    let mut state = row.get_ref(1)?.as_str()?.split(' ');
+    let mut count = || state.next().and_then(|text| text.parse::<usize>().ok()).unwrap_or_default();
+    let (containers_taken, minutes) = (count(), count());
+    let progress = Progress {
+        tests: count(),
+        started: count(),
+        complete: count(),
+        checked: count(),
+        sent_back: count(),
+        out_of_specification: count(),
+    };
+    let happened_on = state.next().and_then(date_from_stored);
     Ok(Line {
         pull: words.number(13).unwrap_or_default(),
         study: words.number(14).unwrap_or_default(),
         test_within_days: words.number(15),
-        containers_taken: row.get(1)?,
+        containers_taken: i64::try_from(containers_taken).unwrap_or_default(),
         containers_left: row.get(2)?,
         assigned_name: row.get(3)?,
-        minutes: row.get(4)?,
-        facts: facts_from_row(row, &words)?,
+        minutes: u32::try_from(minutes).unwrap_or_default(),
+        // An open pull is neither imported nor signed.
+        facts: PullFacts {
+            event: happened_on.map(|_| Event::Pulled),
+            happened_on,
+            due_on: date_from_stored(words.part(9)),
+            earliest_on: date_from_stored(words.part(10)),
+            latest_on: date_from_stored(words.part(11)),
+            containers_needed: words.number(12).and_then(|count| count.try_into().ok()).unwrap_or_default(),
+            progress,
+            ..PullFacts::default()
+        },
         words,
-    })
-}
-
-/// An open pull is neither imported nor signed; before it is taken nothing of it was read.
-fn facts_from_row(row: &Row<'_>, words: &Words) -> rusqlite::Result<PullFacts> {
-    let count = |at: usize| Ok::<_, rusqlite::Error>(usize::try_from(row.get::<_, i64>(at)?).unwrap_or(0));
-    let taken_on: Option<Day> = row.get(6)?;
-    let mut progress = Progress { tests: count(5)?, ..Progress::default() };
-    if taken_on.is_some() {
-        progress = Progress {
-            tests: progress.tests,
-            started: count(7)?,
-            complete: count(8)?,
-            checked: count(9)?,
-            sent_back: count(10)?,
-            out_of_specification: count(11)?,
-        };
-    }
-    Ok(PullFacts {
-        event: taken_on.map(|_| Event::Pulled),
-        happened_on: taken_on.map(|day| day.0),
-        due_on: date_from_stored(words.part(9)),
-        earliest_on: date_from_stored(words.part(10)),
-        latest_on: date_from_stored(words.part(11)),
-        containers_needed: words.number(12).unwrap_or_default() as usize,
-        progress,
-        ..PullFacts::default()
     })
 }
 
@@ -325,8 +317,6 @@ pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
              where stage = 'to take' and due_on <= :week_end and latest_on >= :today),
             (select sum(pulls) from open_day where stage = 'in test'),
             (select sum(pulls) from open_day
-             where stage = 'to take' and due_on <= :tomorrow and latest_on <= :tomorrow),
-            (select sum(pulls) from open_day
              where stage = 'in test' and due_on <= :tomorrow and latest_on <= :tomorrow),
             (select sum(pulls) from open_day
              where stage = 'to take' and due_on > :week_end and due_on <= :coming_end)",
@@ -334,13 +324,15 @@ pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
             ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
         },
         |row| {
+            let (late, closing) = (count(row, 0)?, count(row, 1)?);
             Ok(Counts {
-                late: count(row, 0)?,
-                closing: count(row, 1)?,
+                late,
+                closing,
                 week: count(row, 2)?,
                 in_test: count(row, 3)?,
-                urgent: count(row, 4)? + count(row, 5)?,
-                coming: count(row, 6)?,
+                // What is to be taken by tomorrow or before is either late or closing.
+                urgent: late + closing + count(row, 4)?,
+                coming: count(row, 5)?,
             })
         },
     )

@@ -17,7 +17,7 @@ use super::visit::Visit;
 use crate::acts;
 use crate::domain::act::Act;
 use crate::domain::failure::Failure;
-use crate::domain::moment::{date_shown, until_shown};
+use crate::domain::moment::{date_shown, opens_shown, until_shown};
 use crate::domain::protocol::cost::minutes_words;
 use crate::domain::pull::{self, Event, PullFacts};
 use crate::domain::role::Role;
@@ -90,10 +90,7 @@ pub(in crate::web) fn left_words(facts: &PullFacts, today: chrono::NaiveDate) ->
     let Some(window) = facts.window() else { return "imported, without a due date".to_string() };
     match (facts.event, facts.happened_on) {
         (Some(event), Some(on)) => format!("{} on {}", event.words(), date_shown(on)),
-        _ if today < window.earliest_on => {
-            let days = (window.earliest_on - today).num_days();
-            format!("opens in {}", show::counted(days.unsigned_abs() as usize, "day", "days"))
-        }
+        _ if today < window.earliest_on => opens_shown(today, window.earliest_on),
         _ => until_shown(today, window.latest_on),
     }
 }
