@@ -31,21 +31,22 @@ const PARTS: usize = 16;
 #[derive(Clone, Debug)]
 struct Words {
     text: String,
-    ends: [usize; PARTS],
+    ends: [u16; PARTS],
 }
 
 impl Words {
     fn new(text: String) -> Words {
-        let mut ends = [text.len(); PARTS];
+        let place = |at: usize| u16::try_from(at).unwrap_or(u16::MAX);
+        let mut ends = [place(text.len()); PARTS];
         for (end, at) in ends.iter_mut().zip(memchr::memchr_iter(0x1f, text.as_bytes())) {
-            *end = at;
+            *end = place(at);
         }
         Words { text, ends }
     }
 
     fn part(&self, number: usize) -> &str {
-        let start = if number == 0 { 0 } else { self.ends[number - 1] + 1 };
-        self.text.get(start..self.ends[number]).unwrap_or_default()
+        let start = if number == 0 { 0 } else { usize::from(self.ends[number - 1]) + 1 };
+        self.text.get(start..usize::from(self.ends[number])).unwrap_or_default()
     }
 
     fn number(&self, part: usize) -> Option<i64> {
@@ -240,8 +241,8 @@ pub fn urgent(reader: &Reader<'_>, today: NaiveDate, limit: usize) -> Answer<Vec
 
 fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
     let words = Words::new(row.get(0)?);
-    let mut state = row.get_ref(1)?.as_str()?.split(' ');
-    let mut count = || state.next().and_then(|text| text.parse::<usize>().ok()).unwrap_or_default();
+    let mut state = row.get_ref(1)?.as_str()?;
+    let mut count = || count_of(&mut state);
     let (containers_taken, minutes) = (count(), count());
     let progress = Progress {
         tests: count(),
@@ -251,7 +252,7 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
         sent_back: count(),
         out_of_specification: count(),
     };
-    let happened_on = state.next().and_then(date_from_stored);
+    let happened_on = date_from_stored(state);
     Ok(Line {
         pull: words.number(13).unwrap_or_default(),
         study: words.number(14).unwrap_or_default(),
@@ -275,6 +276,14 @@ fn from_row(row: &Row<'_>) -> rusqlite::Result<Line> {
     })
 }
 
+/// Takes one count and the space after it from the start of a stored state.
+fn count_of(state: &mut &str) -> usize {
+    let digits = state.bytes().take_while(u8::is_ascii_digit).count();
+    let (number, rest) = state.split_at(digits);
+    *state = rest.strip_prefix(' ').unwrap_or(rest);
+    number.bytes().fold(0, |sum, digit| sum * 10 + usize::from(digit - b'0'))
+}
+
 /// How many rows the lists have without a limit.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
 pub struct Counts {
@@ -287,6 +296,11 @@ pub struct Counts {
 }
 
 impl Counts {
+    /// Nothing to take this week, nothing late, nothing in testing.
+    pub fn is_idle(&self) -> bool {
+        self.week + self.late + self.closing + self.in_test == 0
+    }
+
     /// Of one list; none for those that no page counts by themselves.
     pub fn of(&self, show: Show) -> Option<usize> {
         match show {

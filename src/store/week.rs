@@ -24,15 +24,27 @@ fn count(value: i64) -> usize {
 /// The days from today to `last` on which something is to be taken. What is due earlier and still has an open
 /// window stands under today.
 pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Vec<DaySum>> {
-    reader.all(
-        "select max(due_on, :today), sum(pulls), sum(minutes)
+    let due_days = reader.all(
+        "select due_on, sum(pulls), sum(minutes)
          from open_day
          where stage = 'to take' and due_on <= :last and latest_on >= :today
-         group by 1
-         order by 1",
+         group by due_on
+         order by due_on",
         named_params! { ":today": Day(today), ":last": Day(last) },
         |row| Ok(DaySum { on: row.get::<_, Day>(0)?.0, pulls: count(row.get(1)?), minutes: row.get(2)? }),
-    )
+    )?;
+    let mut days: Vec<DaySum> = Vec::with_capacity(due_days.len());
+    for sum in due_days {
+        let on = sum.on.max(today);
+        match days.last_mut().filter(|day| day.on == on) {
+            Some(day) => {
+                day.pulls += sum.pulls;
+                day.minutes += sum.minutes;
+            }
+            None => days.push(DaySum { on, ..sum }),
+        }
+    }
+    Ok(days)
 }
 
 /// Pulls due in each of four weeks and their minutes, each week by its first and last day.

@@ -122,18 +122,30 @@ struct Facts {
 fn facts(visit: &Visit, today: NaiveDate) -> Result<Facts, Failure> {
     let last = plus_days(today, week::DAYS - 1);
     visit.read(|reader| {
+        // What the counts say is empty is not asked for.
+        let counts = store::open_pull::counts(reader, today)?;
+        let some = |count: usize| MOST_ROWS.min(count);
         Ok(Facts {
-            counts: store::open_pull::counts(reader, today)?,
+            counts,
             to_check: store::check::count_waiting(reader)?,
             in_making: store::batch::open_count(reader)?,
-            urgent: store::open_pull::urgent(reader, today, MOST_ROWS)?,
-            pulls: store::open_pull::list(reader, Show::Week, today, None, MOST_ROWS as i64)?,
+            urgent: match some(counts.urgent) {
+                0 => Vec::new(),
+                most => store::open_pull::urgent(reader, today, most)?,
+            },
+            pulls: match some(counts.week) {
+                0 => Vec::new(),
+                most => store::open_pull::list(reader, Show::Week, today, None, most as i64)?,
+            },
             sums: store::week::days(reader, today, last)?,
             people: store::week::people(reader, today, last)?,
             coming: store::week::weeks(reader, week::coming_weeks(today))?,
-            cylinders: store::week::cylinders(reader, visit.at.zone)?,
+            cylinders: match counts.in_test {
+                0 => Vec::new(),
+                _ => store::week::cylinders(reader, visit.at.zone)?,
+            },
             working: store::setting::working_days(reader)?,
-            next: store::week::next(reader, last)?,
+            next: if counts.is_idle() { store::week::next(reader, last)? } else { None },
         })
     })
 }
@@ -195,7 +207,7 @@ fn the_week(visit: &Visit) -> Outcome {
         },
         may_assign: visit.may(Act::AssignPull),
         may_set_days: visit.may(Act::SetWorkingDays),
-        is_idle: in_week + late + closing + in_test == 0,
+        is_idle: facts.counts.is_idle(),
         next: facts.next.clone().map(|(on, pull, number)| (date_shown(on), pull, number)),
         now: visit.at.shown(),
         urgent: facts.urgent.iter().map(|pull| row(pull, today)).collect(),
