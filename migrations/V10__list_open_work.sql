@@ -184,6 +184,34 @@ join pull p on p.id = o.pull
 join pull_words w on w.pull = p.id;
 update open_line set counted = 1 where taken_on is not null;
 
+-- The sums of open_day by due date alone: the weeks ahead and their count.
+create table open_due (
+    stage text not null,
+    due_on text not null,
+    pulls integer not null,
+    minutes integer not null,
+    primary key (stage, due_on)
+) strict, without rowid;
+insert into open_due (stage, due_on, pulls, minutes)
+select stage, due_on, sum(pulls), sum(minutes) from open_day group by stage, due_on;
+create trigger open_due_more after insert on open_day
+begin
+    insert or ignore into open_due (stage, due_on, pulls, minutes) values (new.stage, new.due_on, 0, 0);
+    update open_due set pulls = pulls + new.pulls, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on;
+end;
+create trigger open_due_moved after update of pulls, minutes on open_day
+begin
+    update open_due set pulls = pulls + new.pulls - old.pulls, minutes = minutes + new.minutes - old.minutes
+    where stage = new.stage and due_on = new.due_on;
+end;
+create trigger open_due_fewer after delete on open_day
+begin
+    update open_due set pulls = pulls - old.pulls, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on;
+    delete from open_due where stage = old.stage and due_on = old.due_on and pulls = 0;
+end;
+
 -- The week goes by due dates.
 drop index open_pull_by_due;
 create index open_pull_by_due on open_pull (stage, due_on, pull, latest_on);

@@ -329,10 +329,10 @@ pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
              where stage = 'to take' and due_on <= :tomorrow and latest_on between :today and :tomorrow),
             (select sum(pulls) from open_day
              where stage = 'to take' and due_on <= :week_end and latest_on >= :today),
-            (select sum(pulls) from open_day where stage = 'in test'),
+            (select sum(pulls) from open_due where stage = 'in test'),
             (select sum(pulls) from open_day
              where stage = 'in test' and due_on <= :tomorrow and latest_on <= :tomorrow),
-            (select sum(pulls) from open_day
+            (select sum(pulls) from open_due
              where stage = 'to take' and due_on > :week_end and due_on <= :coming_end)",
         named_params! {
             ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,

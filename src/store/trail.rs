@@ -26,6 +26,7 @@ pub const TECHNICAL_TABLES: [&str; 18] = [
     "open_pull",
     "open_day",
     "open_line",
+    "open_due",
     "arm_stock",
     "open_sample",
     "open_check",

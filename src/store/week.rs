@@ -51,16 +51,16 @@ pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Ve
 pub fn weeks(reader: &Reader<'_>, weeks: [(NaiveDate, NaiveDate); 4]) -> Answer<Vec<(usize, u32)>> {
     let [first, second, third, fourth] = weeks.map(|(first, last)| (Day(first), Day(last)));
     reader.all(
-        "select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+        "select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_due
          where stage = 'to take' and due_on between :first and :first_end
          union all
-         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_due
          where stage = 'to take' and due_on between :second and :second_end
          union all
-         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_due
          where stage = 'to take' and due_on between :third and :third_end
          union all
-         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_day
+         select coalesce(sum(pulls), 0), coalesce(sum(minutes), 0) from open_due
          where stage = 'to take' and due_on between :fourth and :fourth_end",
         named_params! {
             ":first": first.0, ":first_end": first.1, ":second": second.0, ":second_end": second.1,

@@ -26,7 +26,7 @@ pub const ROUTES: &[Route] = &[get("/patterns", patterns)];
 struct PatternsPage {
     shell: Shell,
     panes: Vec<Pane>,
-    photo: String,
+    photo: &'static str,
 }
 
 /// The components of one theme. Names and ids end in the theme's word, so that they stay unique on the page.

@@ -43,14 +43,17 @@ pub fn signed_in(
     is_background: bool,
 ) -> Result<Option<SignedIn>, Failure> {
     let digest = sha256_hex(token.as_bytes());
+    let is_bench = route.is_some_and(|route| route.access == Access::Bench);
+    let setting = if is_bench { BENCH_IDLE_MINUTES } else { IDLE_MINUTES };
     let found = visit.read(|reader| {
         let Some(session) = store::session::find(reader, &digest)? else { return Ok(None) };
         let account = store::account::get(reader, session.account)?;
-        Ok(Some((session, account)))
+        let idle = setting.value(store::setting::get(reader, setting.name)?.as_deref());
+        Ok(Some((session, account, idle)))
     })?;
-    let Some((session, account)) = found.filter(|(_, account)| account.is_enabled) else { return Ok(None) };
-    let is_bench = route.is_some_and(|route| route.access == Access::Bench);
-    let idle = super::setting::value(visit, if is_bench { BENCH_IDLE_MINUTES } else { IDLE_MINUTES })?;
+    let Some((session, account, idle)) = found.filter(|(_, account, _)| account.is_enabled) else {
+        return Ok(None);
+    };
     if is_older(&session.last_seen, visit.at, idle) || is_older(&session.started_at, visit.at, WHOLE_MINUTES)
     {
         visit.db().housekeeping(|work| store::session::end(work, &digest, visit.at))?;

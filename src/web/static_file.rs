@@ -17,15 +17,17 @@ const FILES: [(&str, &str, &str); 4] = [
     ("supernate.mjs", "text/javascript; charset=utf-8", include_str!("../../templates/static/supernate.mjs")),
 ];
 
-static DIGESTS: LazyLock<Vec<String>> = LazyLock::new(|| {
-    FILES.iter().map(|(_, _, text)| sha256_hex(text.as_bytes())[..16].to_string()).collect()
+static ADDRESSES: LazyLock<Vec<String>> = LazyLock::new(|| {
+    let address = |(name, _, text): &(&str, &str, &str)| {
+        format!("/static/{}/{name}", &sha256_hex(text.as_bytes())[..16])
+    };
+    FILES.iter().map(address).collect()
 });
 
-/// The address of a file: `/static/<digest>/<name>`, cached for ever.
-pub fn address(name: &str) -> String {
-    let digest =
-        FILES.iter().zip(DIGESTS.iter()).find(|((known, _, _), _)| *known == name).map(|(_, digest)| digest);
-    format!("/static/{}/{name}", digest.map(String::as_str).unwrap_or_default())
+/// The address of a file: `/static/<digest>/<name>`, cached for ever; empty for a file that is not there.
+pub fn address(name: &str) -> &'static str {
+    let found = FILES.iter().zip(ADDRESSES.iter()).find(|((known, _, _), _)| *known == name);
+    found.map(|(_, address)| address.as_str()).unwrap_or_default()
 }
 
 fn file(visit: &Visit) -> Outcome {
