@@ -11,7 +11,7 @@ use crate::domain::reason::Reason;
 use crate::domain::subject::{Kind, Subject};
 
 /// Tables without a trail of their own (decision B3); `tests/house` holds the list.
-pub const TECHNICAL_TABLES: [&str; 18] = [
+pub const TECHNICAL_TABLES: [&str; 19] = [
     "trail_act",
     "trail_change",
     "trail_seal",

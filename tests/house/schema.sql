@@ -646,6 +646,14 @@ CREATE TABLE open_day (
     primary key (stage, due_on, latest_on)
 ) strict, without rowid;
 
+CREATE TABLE open_due (
+    stage text not null,
+    due_on text not null,
+    pulls integer not null,
+    minutes integer not null,
+    primary key (stage, due_on)
+) strict, without rowid;
+
 CREATE TABLE open_line (
     words text not null,
     -- What changes, in the order in which the lists read it; one text is one column to read.
@@ -1509,6 +1517,26 @@ begin
     where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on;
     delete from open_day
     where stage = old.stage and due_on = old.due_on and latest_on = old.latest_on and pulls = 0;
+end;
+
+CREATE TRIGGER open_due_fewer after delete on open_day
+begin
+    update open_due set pulls = pulls - old.pulls, minutes = minutes - old.minutes
+    where stage = old.stage and due_on = old.due_on;
+    delete from open_due where stage = old.stage and due_on = old.due_on and pulls = 0;
+end;
+
+CREATE TRIGGER open_due_more after insert on open_day
+begin
+    insert or ignore into open_due (stage, due_on, pulls, minutes) values (new.stage, new.due_on, 0, 0);
+    update open_due set pulls = pulls + new.pulls, minutes = minutes + new.minutes
+    where stage = new.stage and due_on = new.due_on;
+end;
+
+CREATE TRIGGER open_due_moved after update of pulls, minutes on open_day
+begin
+    update open_due set pulls = pulls + new.pulls - old.pulls, minutes = minutes + new.minutes - old.minutes
+    where stage = new.stage and due_on = new.due_on;
 end;
 
 CREATE TRIGGER open_line_asked after insert on sample_test
