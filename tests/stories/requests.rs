@@ -8,6 +8,7 @@ use supernate::store::trail;
 use supernate::web::route::{self, Access, Route};
 
 use crate::attachments::{photo, uploads};
+use crate::support::batches::Floor;
 use crate::support::{Lab, ORIGIN, PEOPLE, form_body, post_request, world};
 
 /// A laboratory in which the first record of every kind exists.
@@ -135,6 +136,56 @@ fn where_something_is_open(lab: &Lab) -> Vec<Open> {
     let held = held.split('?').next().unwrap().to_string();
     open.push(("/imports/held/{digest}", held, Vec::new()));
     open.extend(what_a_lot_is_made_from(lab));
+    open.extend(a_lot_in_the_making(lab));
+    let typed = [("code", "R-1"), ("title", "Two gums"), ("started_on", "1 Dec 2026")];
+    let rack = lab.formulator().does("/rack/new", "/rack/new", &typed).location.unwrap();
+    open.push(("/rack/{id}/lots", format!("{rack}/lots"), Vec::new()));
+    let arm = vec![("arm", pull.study_arm.to_string())];
+    open.push(("/conclusions/new", "/conclusions/new".to_string(), arm));
+    open
+}
+
+/// A record in the making: its first substance is weighed, to be weighed again by a second person. And the draft of
+/// another master record.
+fn a_lot_in_the_making(lab: &Lab) -> Vec<Open> {
+    let product = world::product(lab, "TW-905");
+    let floor = Floor::of(lab, product, world::presentation(lab, product, "TW-905-100"));
+    let record = floor.starts("TW-905-0001");
+    floor.begins(&record, 1);
+    let balance = floor.balance.to_string();
+    let weighed = [("material_lot", "ML-1"), ("balance", balance.as_str()), ("net", "41.44")];
+    floor.does(&lab.operator(), &record, 1, "weighing", &weighed);
+    floor.does(&lab.operator(), &record, 1, "end", &[]);
+    let (entry, _) = floor.second_form(&lab.manager(), &record);
+    let step = |number: usize, what: &str| format!("{record}/steps/{number}/{what}");
+    let mut open: Vec<Open> = Vec::new();
+    let mut at = |route: &'static str, path: String| open.push((route, path, Vec::new()));
+    at("/batches/{id}/steps/{step}/start", step(2, "start"));
+    at("/batches/{id}/steps/{step}/weighing", step(1, "weighing"));
+    at("/batches/{id}/steps/{step}/values/{value}", step(3, "values/1"));
+    at("/batches/{id}/steps/{step}/stop", step(7, "stop"));
+    at("/batches/{id}/steps/{step}/resume", step(7, "resume"));
+    at("/batches/{id}/steps/{step}/note", step(1, "note"));
+    at("/batches/{id}/steps/{step}/answers/{entry}", step(1, &format!("answers/{entry}")));
+    at("/batches/{id}/steps/{step}/end", step(1, "end"));
+    at("/batches/{id}/steps/{step}/skip", step(2, "skip"));
+    at("/batches/{id}/steps/{step}/repeat", step(3, "repeat"));
+    at("/batches/{id}/steps/{step}/check", step(1, "check"));
+    at("/batches/{id}/steps/{step}/second/{entry}", step(1, &format!("second/{entry}")));
+    at("/batches/{id}/steps/{step}/entries/{entry}", step(1, &format!("entries/{entry}")));
+    at("/batches/{id}/yields/{phase}", format!("{record}/yields/2"));
+    at("/batches/{id}/yields/{phase}/check", format!("{record}/yields/2/check"));
+    at("/batches/{id}/close", format!("{record}/close"));
+    let formulations = lab.app.db.read(|reader| {
+        Ok(supernate::store::version::get(reader, Versioned::Formulation, floor.version)?.parent)
+    });
+    let draft = format!("/formulations/{}/draft", formulations.unwrap());
+    let reason = [("reason", "a larger batch")];
+    let made = lab.formulator().does(&draft, &draft, &reason).location.unwrap();
+    let version = made.split(['/', '?']).take(3).collect::<Vec<_>>().join("/");
+    at("/formulation-versions/{id}/master", format!("{version}/master"));
+    at("/formulation-versions/{id}/phases/{phase}", format!("{version}/phases/1"));
+    at("/formulation-versions/{id}/phases/{phase}/steps/{step}", format!("{version}/phases/1/steps/1"));
     open
 }
 
