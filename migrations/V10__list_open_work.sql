@@ -212,6 +212,9 @@ begin
     delete from open_due where stage = old.stage and due_on = old.due_on and pulls = 0;
 end;
 
+-- What is late or closes is few days by the last day, and many by the due date.
+create index open_day_by_latest on open_day (stage, latest_on, due_on, pulls);
+
 -- The week goes by due dates.
 drop index open_pull_by_due;
 create index open_pull_by_due on open_pull (stage, due_on, pull, latest_on);

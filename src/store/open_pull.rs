@@ -324,14 +324,14 @@ pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
         "counts",
         "select
             (select sum(pulls) from open_day
-             where stage = 'to take' and due_on < :today and latest_on < :today),
+             where stage = 'to take' and +due_on < :today and latest_on < :today),
             (select sum(pulls) from open_day
-             where stage = 'to take' and due_on <= :tomorrow and latest_on between :today and :tomorrow),
+             where stage = 'to take' and +due_on <= :tomorrow and latest_on between :today and :tomorrow),
             (select sum(pulls) from open_day
              where stage = 'to take' and due_on <= :week_end and latest_on >= :today),
             (select sum(pulls) from open_due where stage = 'in test'),
             (select sum(pulls) from open_day
-             where stage = 'in test' and due_on <= :tomorrow and latest_on <= :tomorrow),
+             where stage = 'in test' and +due_on <= :tomorrow and latest_on <= :tomorrow),
             (select sum(pulls) from open_due
              where stage = 'to take' and due_on > :week_end and due_on <= :coming_end)",
         named_params! {

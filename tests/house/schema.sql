@@ -56,6 +56,8 @@ CREATE INDEX material_lot_by_material on material_lot (material);
 
 CREATE INDEX material_lot_status_by_lot on material_lot_status (material_lot);
 
+CREATE INDEX open_day_by_latest on open_day (stage, latest_on, due_on, pulls);
+
 CREATE INDEX open_pull_by_due on open_pull (stage, due_on, pull, latest_on);
 
 CREATE INDEX open_pull_by_latest on open_pull (stage, latest_on, pull, due_on);

@@ -4,6 +4,7 @@ use rust_decimal::Decimal;
 use rust_decimal::prelude::ToPrimitive;
 
 use super::super::method::MethodContent;
+use super::super::moment::push_number;
 
 /// What one method needs of a pull.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -58,11 +59,20 @@ fn containers_for_ml(needs: &[&Need], fill_ml: Option<Decimal>) -> u32 {
 
 /// `3 h 20 min`, `45 min`.
 pub fn minutes_words(minutes: u32) -> String {
-    match (minutes / 60, minutes % 60) {
-        (0, minutes) => format!("{minutes} min"),
-        (hours, 0) => format!("{hours} h"),
-        (hours, minutes) => format!("{hours} h {minutes} min"),
+    let mut text = String::with_capacity(16);
+    let (hours, rest) = (minutes / 60, minutes % 60);
+    if hours > 0 {
+        push_number(&mut text, hours);
+        text.push_str(" h");
     }
+    if hours > 0 && rest > 0 {
+        text.push(' ');
+    }
+    if hours == 0 || rest > 0 {
+        push_number(&mut text, rest);
+        text.push_str(" min");
+    }
+    text
 }
 
 #[cfg(test)]
