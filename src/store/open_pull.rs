@@ -292,7 +292,6 @@ pub struct Counts {
     pub week: usize,
     pub in_test: usize,
     pub urgent: usize,
-    pub coming: usize,
 }
 
 impl Counts {
@@ -308,46 +307,56 @@ impl Counts {
             Show::Closing => Some(self.closing),
             Show::Week => Some(self.week),
             Show::InTest => Some(self.in_test),
-            Show::Coming => Some(self.coming),
-            Show::ToTake | Show::UrgentToTake | Show::UrgentInTest => None,
+            Show::Coming | Show::ToTake | Show::UrgentToTake | Show::UrgentInTest => None,
         }
     }
 }
 
 /// All counts in one statement, from the sums by day.
 pub fn counts(reader: &Reader<'_>, today: NaiveDate) -> Answer<Counts> {
-    let [today, tomorrow, week_end, coming_end] = dates(today);
+    let [today, tomorrow, week_end, _] = dates(today);
     let count = |row: &Row<'_>, at: usize| -> rusqlite::Result<usize> {
         Ok(usize::try_from(row.get::<_, Option<i64>>(at)?.unwrap_or_default()).unwrap_or_default())
     };
     reader.one(
         "counts",
+        // A last day never comes before its due date: what is late is due before today, what closes by tomorrow
+        // is due by then. So the week is all that is due by its end, less what is late.
         "select
+            (select sum(pulls) from open_day where stage = 'to take' and latest_on < :today),
             (select sum(pulls) from open_day
-             where stage = 'to take' and +due_on < :today and latest_on < :today),
-            (select sum(pulls) from open_day
-             where stage = 'to take' and +due_on <= :tomorrow and latest_on between :today and :tomorrow),
-            (select sum(pulls) from open_day
-             where stage = 'to take' and due_on <= :week_end and latest_on >= :today),
+             where stage = 'to take' and latest_on between :today and :tomorrow),
+            (select sum(pulls) from open_due where stage = 'to take' and due_on <= :week_end),
             (select sum(pulls) from open_due where stage = 'in test'),
             (select sum(pulls) from open_day
-             where stage = 'in test' and +due_on <= :tomorrow and latest_on <= :tomorrow),
-            (select sum(pulls) from open_due
-             where stage = 'to take' and due_on > :week_end and due_on <= :coming_end)",
-        named_params! {
-            ":today": today, ":tomorrow": tomorrow, ":week_end": week_end, ":coming_end": coming_end,
-        },
+             where stage = 'in test' and +due_on <= :tomorrow and latest_on <= :tomorrow)",
+        named_params! { ":today": today, ":tomorrow": tomorrow, ":week_end": week_end },
         |row| {
             let (late, closing) = (count(row, 0)?, count(row, 1)?);
             Ok(Counts {
                 late,
                 closing,
-                week: count(row, 2)?,
+                week: count(row, 2)?.saturating_sub(late),
                 in_test: count(row, 3)?,
                 // What is to be taken by tomorrow or before is either late or closing.
                 urgent: late + closing + count(row, 4)?,
-                coming: count(row, 5)?,
             })
         },
     )
+}
+
+/// How many rows a list has without a limit.
+pub fn count(reader: &Reader<'_>, show: Show, today: NaiveDate) -> Answer<usize> {
+    if let Some(count) = counts(reader, today)?.of(show) {
+        return Ok(count);
+    }
+    let [_, _, week_end, coming_end] = dates(today);
+    let count: i64 = reader.one(
+        "count",
+        "select coalesce(sum(pulls), 0) from open_due
+         where stage = 'to take' and due_on > :week_end and due_on <= :coming_end",
+        named_params! { ":week_end": week_end, ":coming_end": coming_end },
+        |row| row.get(0),
+    )?;
+    Ok(usize::try_from(count).unwrap_or_default())
 }

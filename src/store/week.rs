@@ -24,27 +24,32 @@ fn count(value: i64) -> usize {
 /// The days from today to `last` on which something is to be taken. What is due earlier and still has an open
 /// window stands under today.
 pub fn days(reader: &Reader<'_>, today: NaiveDate, last: NaiveDate) -> Answer<Vec<DaySum>> {
-    let due_days = reader.all(
-        "select due_on, sum(pulls), sum(minutes)
-         from open_day
-         where stage = 'to take' and due_on <= :last and latest_on >= :today
-         group by due_on
-         order by due_on",
+    // All that was due before today and is not late has an open window.
+    let mut sums = reader.all(
+        "select due_on, pulls, minutes from open_due
+         where stage = 'to take' and due_on between :today and :last
+         union all
+         select null, sum(pulls), sum(minutes) from (
+             select pulls, minutes from open_due where stage = 'to take' and due_on < :today
+             union all
+             select -pulls, -minutes from open_day where stage = 'to take' and latest_on < :today)",
         named_params! { ":today": Day(today), ":last": Day(last) },
-        |row| Ok(DaySum { on: row.get::<_, Day>(0)?.0, pulls: count(row.get(1)?), minutes: row.get(2)? }),
+        |row| {
+            let on = row.get::<_, Option<Day>>(0)?.map_or(today, |day| day.0);
+            let minutes = row.get::<_, Option<u32>>(2)?.unwrap_or_default();
+            Ok(DaySum { on, pulls: count(row.get::<_, Option<i64>>(1)?.unwrap_or_default()), minutes })
+        },
     )?;
-    let mut days: Vec<DaySum> = Vec::with_capacity(due_days.len());
-    for sum in due_days {
-        let on = sum.on.max(today);
-        match days.last_mut().filter(|day| day.on == on) {
-            Some(day) => {
-                day.pulls += sum.pulls;
-                day.minutes += sum.minutes;
-            }
-            None => days.push(DaySum { on, ..sum }),
+    let earlier = sums.pop().filter(|sum| sum.pulls > 0);
+    match (earlier, sums.iter_mut().find(|sum| sum.on == today)) {
+        (Some(earlier), Some(now)) => {
+            now.pulls += earlier.pulls;
+            now.minutes += earlier.minutes;
         }
+        (Some(earlier), None) => sums.insert(0, earlier),
+        (None, _) => {}
     }
-    Ok(days)
+    Ok(sums)
 }
 
 /// Pulls due in each of four weeks and their minutes, each week by its first and last day.

@@ -94,6 +94,12 @@ fn the_lists_agree_with_the_facts_of_every_pull() {
             let expected: Vec<&Pull> = all.iter().filter(|pull| is_on(show, pull, today)).collect();
             let count = lab.app.db.read(|reader| counts(reader, today)).unwrap().of(show);
             let list = lab.app.db.read(|reader| list(reader, show, today, None, 500)).unwrap();
+            let count = match show {
+                Show::Coming => {
+                    Some(lab.app.db.read(|reader| store::open_pull::count(reader, show, today)).unwrap())
+                }
+                _ => count,
+            };
             assert_eq!(count.unwrap_or(list.len()), expected.len(), "{show:?} on {today}");
             assert_eq!(list.len(), expected.len(), "{show:?} on {today}");
             assert!(list.iter().all(|line| expected.iter().any(|pull| pull.id == line.pull)), "{show:?}");
