@@ -70,9 +70,10 @@ fn residual(name: &str, residuals: Residuals) -> Vec<String> {
         words::number(residuals.sse),
         residuals.df.to_string(),
         residuals.mse().map_or("–".to_string(), words::number),
-        String::new(),
-        String::new(),
-        String::new(),
+        // A residual has no test of its own.
+        "–".to_string(),
+        "–".to_string(),
+        "–".to_string(),
     ]
 }
 
