@@ -16,7 +16,7 @@ fn a_person_comes_and_goes(script: Script) {
     browser.open("/me");
     browser.sees("Signed in as Rafe Tolland");
     assert_eq!(browser.has_module(), script == Script::On);
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
     browser.open("/me");
     assert_eq!(browser.path(), "/sign-in", "the session has ended");
     assert_eq!(browser.console_errors(), Vec::<String>::new());
