@@ -98,21 +98,21 @@ fn the_main_job(script: Script) {
     let browser = Browser::new(&site, script);
     takes_the_pull(&browser, &due);
     records_and_completes(&browser, &due);
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 
     browser.signs_in("ilse.brandt");
     browser.open(&check);
     browser.fill("Send back, because …", "the first value is not the one on the meter's printout");
     browser.presses_on("Send back");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 
     corrects_and_completes(&browser, &due, script);
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 
     browser.signs_in("ilse.brandt");
     browser.open(&check);
     browser.presses_on("Checked");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 
     reviews_and_signs(&browser, &due);
     browser.open(&format!("/lots/{}/file", due.lot));

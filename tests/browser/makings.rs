@@ -41,7 +41,7 @@ fn weighs_again_and_checks(browser: &Browser<'_>) {
     browser.presses_on("Record what the balance shows");
     browser.presses_on("Checked: done as it is recorded");
     browser.sees("checked by Maren Oddy");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 }
 
 fn begins_in(browser: &Browser<'_>, class: &str, equipment: &str) {
@@ -61,7 +61,7 @@ fn compounds(browser: &Browser<'_>, lab: &Lab) {
         browser.presses_on("Record");
     }
     // The tablet is left for longer than a bench page stays open: the operator signs in again and goes on.
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
     lab.later_minutes(40);
     browser.signs_in("bea.skelton");
     browser.open("/batches/1");
@@ -80,7 +80,7 @@ fn yields(browser: &Browser<'_>, unit: &str, actual: &str) {
     browser.presses_on("Go on");
     browser.fill(&format!("Actual yield, {unit}"), actual);
     browser.presses_on("Record the yield");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 }
 
 fn checks_the_yield(browser: &Browser<'_>, percent: &str) {
@@ -89,7 +89,7 @@ fn checks_the_yield(browser: &Browser<'_>, percent: &str) {
     browser.presses_on("Go on");
     browser.fill("Yield that you worked out, %", percent);
     browser.presses_on("Checked: the calculation is right");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 }
 
 fn clears_and_fills(browser: &Browser<'_>) {
@@ -99,11 +99,11 @@ fn clears_and_fills(browser: &Browser<'_>) {
     browser.press("conforms");
     browser.presses_on("Record");
     browser.presses_on("End this step");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
     browser.signs_in("maren.oddy");
     browser.open("/batches/1/steps/6");
     browser.presses_on("Checked: done as it is recorded");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
     browser.signs_in("bea.skelton");
     browser.open("/batches/1");
     begins_in(browser, "filling line", "FL-1 filling line, 500 L: clean until 9 Dec 2026");
@@ -136,7 +136,7 @@ fn a_lot_is_made_and_released(script: Script) {
     starts(&browser, floor.version);
     weighs(&browser, "ML-1", "41.44");
     weighs(&browser, "ML-2", "2.000");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
     weighs_again_and_checks(&browser);
     compounds(&browser, lab);
     checks_the_yield(&browser, "99.2");
@@ -146,7 +146,7 @@ fn a_lot_is_made_and_released(script: Script) {
     browser.open("/batches/1");
     signs(&browser, "bea.skelton", "Close the record");
     browser.sees("The record is closed.");
-    browser.press("Sign out");
+    browser.presses_on("Sign out");
 
     let lot = lab.app.db.read(|reader| store::lot::by_number(reader, NUMBER)).unwrap().unwrap().id;
     let sample = bench.ready(lot, Purpose::Release);
