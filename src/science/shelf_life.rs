@@ -54,6 +54,17 @@ pub enum Outcome {
 }
 
 impl Outcome {
+    /// The word that files and frozen conclusions carry.
+    pub fn code(self) -> &'static str {
+        match self {
+            Self::Crosses(_) => "crosses",
+            Self::NoCrossing => "no_crossing",
+            Self::FailsAtZero => "fails_at_zero",
+            Self::NotEstimable => "not_estimable",
+            Self::NoLimit => "no_limit",
+        }
+    }
+
     /// The age as a number: 0 where it fails at zero; none where there is no age to name.
     pub fn months(self) -> Option<f64> {
         match self {

@@ -5,7 +5,7 @@ use serde::Serialize;
 use crate::domain::evaluation::assess::Assessment;
 use crate::domain::evaluation::trend::TrendRow;
 use crate::science::pooling::{FTest, Model, Pooling};
-use crate::science::shelf_life::{Direction, Outcome, Side};
+use crate::science::shelf_life::{Direction, Side};
 use crate::science::transform::Scale;
 use crate::science::trend::context::Rule;
 use crate::science::trend::early_warning::State;
@@ -198,7 +198,7 @@ fn intercepts(pooling: &Pooling, test: FTest) -> InterceptsJson {
 fn shelf_life(found: &Assessment) -> ShelfLifeJson {
     let (life, lots) = (&found.life, &found.series.lots);
     ShelfLifeJson {
-        status: status(life.outcome),
+        status: life.outcome.code(),
         months: life.outcome.months(),
         months_floor: life.months_floor,
         side: life.side.filter(|_| life.outcome.months().is_some()).map(side),
@@ -208,7 +208,7 @@ fn shelf_life(found: &Assessment) -> ShelfLifeJson {
             .zip(&life.per_lot)
             .map(|(lot, life)| LotLifeJson {
                 lot: lot.name.clone(),
-                status: status(life.outcome),
+                status: life.outcome.code(),
                 months: life.outcome.months(),
             })
             .collect(),
@@ -291,16 +291,6 @@ pub(super) fn scale(scale: Scale) -> &'static str {
         Scale::Ln => "ln",
         Scale::Anscombe => "anscombe",
         Scale::Logit => "logit",
-    }
-}
-
-fn status(outcome: Outcome) -> &'static str {
-    match outcome {
-        Outcome::Crosses(_) => "crosses",
-        Outcome::NoCrossing => "no_crossing",
-        Outcome::FailsAtZero => "fails_at_zero",
-        Outcome::NotEstimable => "not_estimable",
-        Outcome::NoLimit => "no_limit",
     }
 }
 

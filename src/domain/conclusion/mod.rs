@@ -13,7 +13,6 @@ use super::digest::sha256_hex;
 use super::evaluation::group::Computed;
 use super::evaluation::record::{Record, scale_code};
 use crate::science::pooling::Model;
-use crate::science::shelf_life::Outcome;
 
 /// What a person hands in to conclude.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -156,7 +155,7 @@ pub fn test_of(one: &Computed) -> Test {
         limits: super::specification::range_words(series.lower_limit, series.upper_limit),
         scale: scale_code(series.scale).to_string(),
         model: found.and_then(|found| found.pooling.as_ref()).map(|one| model(one.model)).unwrap_or_default(),
-        status: life.map_or("not_estimable", |life| status(life.outcome)).to_string(),
+        status: life.map_or("not_estimable", |life| life.outcome.code()).to_string(),
         months: months.map(|months| format!("{months:.10}")),
         lot: found.and_then(|found| Some(found.series.lots.get(found.life.binding_lot?)?.name.clone())),
         inputs: one.built.records().map(input).collect(),
@@ -182,14 +181,4 @@ fn model(model: Model) -> String {
         Model::CommonLine => "common_line",
     }
     .to_string()
-}
-
-fn status(outcome: Outcome) -> &'static str {
-    match outcome {
-        Outcome::Crosses(_) => "crosses",
-        Outcome::NoCrossing => "no_crossing",
-        Outcome::FailsAtZero => "fails_at_zero",
-        Outcome::NotEstimable => "not_estimable",
-        Outcome::NoLimit => "no_limit",
-    }
 }
